@@ -1,0 +1,1 @@
+"""The desktop window (tkinter only); started by `digitise window` or `python -m gui`."""
