@@ -1,0 +1,217 @@
+"""Where circles share a centre: votes of image gradients, and the centre and stretch that explain them.
+
+The gradient at a pixel on a ring points through the ring's centre, whatever the radius, so all rings of a grid
+agree on one point while letters, traces and frames do not (gradient-directed circle voting: Kimme, Ballard &
+Sklansky 1975). The votes are kept as a histogram of lines (direction, distance from the origin) and summed back
+at every candidate centre, which costs the same however many pixels vote.
+For rings stretched to concentric ellipses (p - c)' M (p - c) = const the gradient is parallel to M (p - c): one
+linear equation a pixel in M and c, whatever the ring; a spoke's gradient is square to p - c.
+"""
+
+from dataclasses import dataclass
+
+import cv2
+import numpy as np
+
+__all__ = ["Edges", "Hub", "centre_candidates", "find_edges", "fit_hub", "ring_shares", "spoke_count"]
+
+WORK_PIXELS = 0.6e6  # size of the reduced picture that votes
+FLOOR_LEVELS = 1.0  # weakest gradient that votes, grey levels per px: a pale ring, smoothed, on clean paper
+NOISE_FACTOR = 4.0  # and this many times the noise of the gradient
+MAX_VOTERS = 40_000
+N_DIRECTIONS = 90
+VOTE_CAP = 4.0  # one direction cannot count for more than this many standard deviations
+CENTRE_STEP_PX = 4.0  # spacing of the candidate centres on the reduced picture
+N_SECTORS = 72  # of a circle, each drawn or not
+RING_MISS = 0.09  # radians between gradient and radius of a ring pixel
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Edges:
+    """Edge pixels of a (reduced) picture.
+
+    x, y : (n,) float32, px of the reduced picture; gx, gy : (n,) unit gradient; shape : of the reduced picture
+    zoom : reduced px per picture px
+    """
+
+    x: np.ndarray
+    y: np.ndarray
+    gx: np.ndarray
+    gy: np.ndarray
+    shape: tuple
+    zoom: float
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Hub:
+    """A centre and stretch that edge pixels agree on, px of the reduced picture.
+
+    x, y : centre; a, b : stretch, M = [[1 + a, b], [b, 1 - a]]
+    """
+
+    x: float
+    y: float
+    a: float = 0.0
+    b: float = 0.0
+
+    def metric(self, dx, dy):
+        """M (dx, dy)."""
+        return (1 + self.a) * dx + self.b * dy, self.b * dx + (1 - self.a) * dy
+
+    def radius(self, dx, dy):
+        """Elliptical radius of offsets from the centre, px."""
+        mx, my = self.metric(dx, dy)
+        return np.sqrt(np.maximum(dx * mx + dy * my, 0))
+
+
+def find_edges(gray, *, work_pixels=WORK_PIXELS):
+    """Reduce a grey picture (h, w) uint8 and list its edge pixels as `Edges`."""
+    h, w = gray.shape
+    zoom = min(1.0, float(np.sqrt(work_pixels / (h * w))))
+    small = gray.astype(np.float32)
+    if zoom < 1:
+        small = cv2.resize(small, (max(8, round(w * zoom)), max(8, round(h * zoom))), interpolation=cv2.INTER_AREA)
+    zoom = small.shape[1] / w
+    small = cv2.GaussianBlur(small, (0, 0), 1.0)
+    gx = cv2.Scharr(small, cv2.CV_32F, 1, 0, scale=1 / 32)
+    gy = cv2.Scharr(small, cv2.CV_32F, 0, 1, scale=1 / 32)
+    size = cv2.magnitude(gx, gy)
+    noise = float(np.median(size[::3, ::3])) / 1.177  # the median of a Rayleigh distribution is 1.177 sigma
+    y, x = np.nonzero(size > max(FLOOR_LEVELS, NOISE_FACTOR * noise))
+    if len(x) > MAX_VOTERS:
+        keep = np.random.default_rng(20240611).permutation(len(x))[:MAX_VOTERS]
+        y, x = y[keep], x[keep]
+    norm = size[y, x]
+    return Edges(
+        x=x.astype(np.float32),
+        y=y.astype(np.float32),
+        gx=gx[y, x] / norm,
+        gy=gy[y, x] / norm,
+        shape=small.shape,
+        zoom=zoom,
+    )
+
+
+def centre_candidates(edges, *, n_max=8):
+    """Points that many gradients point through: list of (x, y, votes), strongest first, px of the reduced picture."""
+    if len(edges.x) < 50:
+        return []
+    h, w = edges.shape
+    bin_px = 2.0
+    reach = float(np.hypot(h, w))
+    n_rho = int(2 * reach / bin_px) + 8
+    angle = np.arctan2(edges.gy, edges.gx) % np.pi
+    k = np.minimum((angle * (N_DIRECTIONS / np.pi)).astype(np.int64), N_DIRECTIONS - 1)
+    # The line through the pixel along its gradient, as distance from the origin along the line's normal.
+    rho = -edges.gy * edges.x + edges.gx * edges.y
+    rho = np.where(edges.gy < 0, -rho, rho)
+    j = ((rho + reach) / bin_px).astype(np.int64)
+    count = np.bincount(k * n_rho + j, minlength=N_DIRECTIONS * n_rho).reshape(N_DIRECTIONS, n_rho)
+    count = count.astype(np.float32)
+    near = cv2.blur(count, (5, 1))
+    wide = cv2.blur(count, (61, 1))
+    score = np.clip((near - wide) / np.sqrt(wide / 5 + 0.04), -1, VOTE_CAP).astype(np.float32)
+    mid = (np.arange(N_DIRECTIONS) + 0.5) * np.pi / N_DIRECTIONS
+    xs = np.arange(0, w, CENTRE_STEP_PX)
+    ys = np.arange(0, h, CENTRE_STEP_PX)
+    total = np.zeros((len(ys), len(xs)), np.float32)
+    for row, c, s in zip(score, np.cos(mid), np.sin(mid)):
+        at = ((-s * xs)[None, :] + (c * ys)[:, None] + reach) / bin_px
+        total += row[at.astype(np.int32)]
+    total /= N_DIRECTIONS
+    total = cv2.GaussianBlur(total, (0, 0), 1.0)
+    top = cv2.dilate(total, np.ones((9, 9), np.uint8))
+    peak_y, peak_x = np.nonzero((total >= top) & (total > 0.25 * total.max()))
+    order = np.argsort(-total[peak_y, peak_x])[:n_max]
+    return [(float(xs[peak_x[i]]), float(ys[peak_y[i]]), float(total[peak_y[i], peak_x[i]])) for i in order]
+
+
+def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=(0.15, 0.10, 0.06, 0.04, 0.03)):
+    """Refine a centre candidate and its stretch from all gradients that agree with it, as a `Hub`.
+
+    Robust Gauss-Newton on the angle between gradient and M (p - c) for ring pixels, and on its departure from a
+    right angle for spoke pixels; tolerances in radians, falling.
+    """
+    for tolerance in tolerances:
+        dx, dy = edges.x - x, edges.y - y
+        r = np.hypot(dx, dy)
+        near = r > 4
+        if reach_px is not None:
+            near &= r < reach_px
+        dx, dy, r = dx[near], dy[near], r[near]
+        gx, gy = edges.gx[near], edges.gy[near]
+        mx, my = (1 + a) * dx + b * dy, b * dx + (1 - a) * dy
+        ring = (gx * my - gy * mx) / r
+        spoke = (gx * dx + gy * dy) / r
+        on_ring, on_spoke = np.abs(ring) < tolerance, np.abs(spoke) < tolerance
+        if on_ring.sum() < 20:
+            return None
+        weight_ring = (1 - (ring[on_ring] / tolerance) ** 2) ** 2
+        weight_spoke = (1 - (spoke[on_spoke] / tolerance) ** 2) ** 2
+        gxr, gyr, rr = gx[on_ring], gy[on_ring], r[on_ring]
+        rows = np.stack(
+            [
+                (gxr * b - gyr * (1 + a)) / -rr,
+                (gxr * (1 - a) - gyr * b) / -rr,
+                (-gxr * dy[on_ring] - gyr * dx[on_ring]) / rr,
+                (gxr * dx[on_ring] - gyr * dy[on_ring]) / rr,
+            ],
+            axis=1,
+        )
+        zero = np.zeros(int(on_spoke.sum()))
+        rs = r[on_spoke]
+        more = np.stack([-gx[on_spoke] / rs, -gy[on_spoke] / rs, zero, zero], axis=1)
+        jac = np.concatenate([rows, more])
+        weight = np.concatenate([weight_ring, weight_spoke])
+        error = np.concatenate([ring[on_ring], spoke[on_spoke]])
+        normal = (jac * weight[:, None]).T @ jac
+        # Weak pull towards no stretch and no move: matters only when few pixels agree.
+        scale = 0.02**2
+        normal[0, 0] += scale / 30.0**2
+        normal[1, 1] += scale / 30.0**2
+        normal[2, 2] += scale / 0.08**2
+        normal[3, 3] += scale / 0.08**2
+        step = np.linalg.solve(normal, -(jac * weight[:, None]).T @ error - np.array([0, 0, a, b]) * scale / 0.08**2)
+        x, y, a, b = x + step[0], y + step[1], float(a + step[2]), float(b + step[3])
+        if not (abs(a) < 0.3 and abs(b) < 0.3 and np.isfinite(x) and np.isfinite(y)):
+            return None
+    return Hub(x=float(x), y=float(y), a=a, b=b)
+
+
+def ring_shares(edges, hub):
+    """Share of every circle about a hub that is drawn.
+
+    Returns
+    -------
+    share : (n,) for radius 0, 1, 2 ... px of the reduced picture, 0 to 1
+    half : (n,) the same of the better half circle
+    """
+    dx, dy = edges.x - hub.x, edges.y - hub.y
+    mx, my = hub.metric(dx, dy)
+    r = np.sqrt(np.maximum(dx * mx + dy * my, 0))
+    miss = np.abs(edges.gx * my - edges.gy * mx) / (np.hypot(mx, my) + 1e-6)
+    ok = (miss < RING_MISS) & (r > 6)
+    sector = (np.arctan2(dy, dx)[ok] % (2 * np.pi) * (N_SECTORS / (2 * np.pi))).astype(np.int64) % N_SECTORS
+    row = np.round(r[ok]).astype(np.int64)
+    n = int(row.max(initial=0)) + 2
+    count = np.bincount(row * N_SECTORS + sector, minlength=n * N_SECTORS).reshape(n, N_SECTORS)
+    drawn = (count + np.roll(count, 1, axis=0)) > 0
+    wrapped = np.concatenate([drawn, drawn[:, : N_SECTORS // 2]], axis=1).cumsum(axis=1)
+    half = (wrapped[:, N_SECTORS // 2 :] - wrapped[:, : -(N_SECTORS // 2)]).max(axis=1) / (N_SECTORS / 2)
+    return drawn.mean(axis=1), half
+
+
+def spoke_count(edges, hub, outer):
+    """Number of directions, out of 180, in which a line runs most of the way from the hub to the rim."""
+    dx, dy = edges.x - hub.x, edges.y - hub.y
+    r = np.hypot(dx, dy)
+    near = (r > 0.2 * outer) & (r < 0.97 * outer)
+    dx, dy, r = dx[near], dy[near], r[near]
+    square = np.abs(edges.gx[near] * dx + edges.gy[near] * dy) / r
+    ok = square < RING_MISS
+    direction = (np.degrees(np.arctan2(dy, dx)[ok]) % 360 / 2).astype(np.int64) % 180
+    part = np.minimum(((r[ok] / outer - 0.2) / 0.77 * 12).astype(np.int64), 11)
+    count = np.bincount(direction * 12 + part, minlength=180 * 12).reshape(180, 12)
+    drawn = (count + np.roll(count, 1, axis=0)) > 0
+    full = drawn.mean(axis=1) > 0.8
+    return int(np.sum(full & ~np.roll(full, 1)))
