@@ -1,6 +1,7 @@
 """What the user asks of a reading: every option of `digitise read` that shapes the result, checked."""
 
 import math
+import re
 from dataclasses import dataclass, fields
 
 from .exceptions import UsageError
@@ -9,6 +10,7 @@ __all__ = ["LAWS", "Mark", "Settings"]
 
 LAWS = ("even", "field", "power", "log-periodic", "rings")
 ZERO_WORDS = {"top": 0.0, "right": 90.0, "bottom": 180.0, "left": 270.0}
+INK_FORM = re.compile(r"#[0-9a-fA-F]{6}")
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -36,6 +38,8 @@ class Settings:
     crop : (x, y, w, h), px
     page : 1-based page of a PDF
     step_deg : step of the table, degrees
+    scale, bearing : a Scale and a Bearing taken over from an earlier record, used in place of finding them
+    chart : read only this one of the picture's charts, counted from 1 in reading order
     """
 
     outer_db: float | None = None
@@ -51,6 +55,9 @@ class Settings:
     crop: tuple | None = None
     page: int | None = None
     step_deg: float = 1.0
+    scale: object = None
+    bearing: object = None
+    chart: int | None = None
 
     def __post_init__(self):
         """Refuse what cannot be right for any picture, naming the option."""
@@ -76,6 +83,13 @@ class Settings:
             raise UsageError("--mark and --ring-levels replace --outer and --centre; give one or the other", stage="settings")
         if self.marks and self.ring_levels:
             raise UsageError("--mark and --ring-levels both give levels; give one or the other", stage="settings")
+        for ink in self.inks:
+            if not INK_FORM.fullmatch(ink):
+                raise UsageError(f"--ink {ink} is not a colour", remedy="write it as '#rrggbb'", stage="settings")
+        for box in (*self.covers, *([self.crop] if self.crop else [])):
+            if box[2] <= 0 or box[3] <= 0:
+                cause = f"{'--crop' if box is self.crop else '--cover'} {','.join(f'{v:g}' for v in box)} has no size"
+                raise UsageError(cause, remedy="give X,Y,WIDTH,HEIGHT in pixels", stage="settings")
         for name, value in self._numbers():
             if not math.isfinite(value):
                 raise UsageError(f"{name} is not a finite number", stage="settings")
