@@ -114,7 +114,7 @@ def settings_from_record(path, *, sha256=None):
             step_deg=told.get("step_deg", 1.0),
             pins=_tuples(told.get("pins", ())) if same else (),
             page=told.get("page") if same else None,
-            chart=record["chart"]["number"] if same and record["chart"]["of"] > 1 else None,
+            chart=(record["chart"]["number"], record["chart"]["of"]) if same and record["chart"]["of"] > 1 else None,
         )
     except DigitiseError as error:
         raise _refusal(path, f"holds settings that cannot be right: {error.cause}", "make the record anew") from None

@@ -39,7 +39,7 @@ class Settings:
     page : 1-based page of a PDF
     step_deg : step of the table, degrees
     scale, bearing : a Scale and a Bearing taken over from an earlier record, used in place of finding them
-    chart : read only this one of the picture's charts, counted from 1 in reading order
+    chart : (k, n), read only the k-th, from 1 in reading order, of the n charts on the picture
     """
 
     outer_db: float | None = None
@@ -57,7 +57,7 @@ class Settings:
     step_deg: float = 1.0
     scale: object = None
     bearing: object = None
-    chart: int | None = None
+    chart: tuple | None = None
 
     def __post_init__(self):
         """Refuse what cannot be right for any picture, naming the option."""
