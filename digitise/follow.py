@@ -1,0 +1,222 @@
+"""Follow one trace: the cheapest closed path over its ink in the unwrapped plane, then sub-pixel along the normal.
+
+The unwrapped plane has a column an angle (about 1 px apart on the rim) and a row a pixel of radius. Ink is cheap,
+paper dear, what hides ink nearly as dear as paper; a path that leaves ink of its own unexplained above it pays, since
+a pattern has a single level a bearing and its lines merge towards the centre: there the outer edge tells the level.
+"""
+
+from dataclasses import dataclass
+
+import cv2
+import numpy as np
+
+from ._path import cheapest_path
+from ._refine import refine_course
+from .frozen import lock_arrays
+
+__all__ = ["Trace", "follow_trace"]
+
+HIDDEN_WORTH = 0.15  # how much better than paper a hidden place is
+TOO_DEEP = 0.5  # cost of running deeper in solid ink than the line is wide
+LEFT_ABOVE = 0.4  # cost of leaving ink above the path
+FLOOR_COST = 0.8  # cost of the centre: dearer than dashes, cheaper than bare paper
+SAMPLES_PER_DEG = 20  # of the level curve that rows are read from
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Trace:
+    """One followed trace, on evenly spaced plane angles.
+
+    plane_deg : (n,) plane angles
+    rho : (n,) radius, NaN where missing
+    u_px : (n,) standard uncertainty of the line's place along its normal, sheet px
+    slope : (n,) d rho / d plane angle, per degree
+    radial_share : (n,) how much of a shift along the normal is radial, 0 to 1 (cosine of the line's slant)
+    u_rho_bridge : (n,) extra standard uncertainty of rho where the ink is hidden or merged
+    state : (n,) str, one of table.STATES
+    support : share of the path that runs on ink
+    width_px : drawn line width, sheet px; sheet_outer_px : sheet px per unit rho
+    """
+
+    plane_deg: np.ndarray
+    rho: np.ndarray
+    u_px: np.ndarray
+    slope: np.ndarray
+    radial_share: np.ndarray
+    u_rho_bridge: np.ndarray
+    state: np.ndarray
+    support: float
+    width_px: float
+    sheet_outer_px: float
+
+    def __post_init__(self):
+        lock_arrays(self)
+
+
+def follow_trace(layer, sheet, grid, *, fill=0.0, pins=()):
+    """Follow the strongest trace of a `Layer`.
+
+    Parameters
+    ----------
+    layer : ink.Layer; sheet : _sheet.Sheet; grid : grid.Grid
+    fill : coverage of the trace's own filled area, 0 when not filled
+    pins : tuple of (rho, plane_deg) that the trace goes through
+
+    Returns
+    -------
+    Trace on SAMPLES_PER_DEG samples a degree, or None when there is no ink to follow
+    """
+    angles, evidence, hidden = _unwrapped(layer, sheet, grid)
+    reference = _line_peak(layer, sheet)
+    if reference is None:
+        return None
+    lifted = np.clip((evidence - fill) / (1 - fill), 0, 1) if fill else evidence
+    ink = np.clip((lifted - 0.15 * reference) / (0.5 * reference), 0, 1).astype(np.float32)
+    _apply_pins(ink, hidden, angles, sheet, pins)
+    whole = _is_whole(grid)
+    cost, paper, floor_rows = _costs(ink, hidden)
+    enter, leave = cheapest_path(cost, paper, closed=whole)
+    return _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows, fill)
+
+
+def _is_whole(grid):
+    start, end = grid.arc_deg
+    return (end - start) >= 359.0
+
+
+def _unwrapped(layer, sheet, grid):
+    """Angles, cover and hidden on the unwrapped plane, (n_columns, n_rows), one row a sheet px."""
+    start, end = float(grid.arc_deg[0]), float(grid.arc_deg[1])
+    extent = end - start if end > start else end - start + 360.0
+    n = int(np.ceil(2 * np.pi * sheet.outer_px * extent / 360.0))
+    angles = start + (np.arange(n) + 0.5) * extent / n
+    rows = np.arange(int(sheet.outer_px * 1.04) + 2) / sheet.outer_px
+    x, y = sheet.to_sheet(rows[None, :], angles[:, None])
+    x, y = x.astype(np.float32), y.astype(np.float32)
+    evidence = cv2.remap(layer.cover, x, y, cv2.INTER_LINEAR, borderValue=0)
+    hidden = cv2.remap(layer.hidden, x, y, cv2.INTER_LINEAR, borderValue=0)
+    return angles, evidence, hidden
+
+
+def _line_peak(layer, sheet):
+    """Typical coverage on the line's crest: below 1 for lines thinner than a pixel or blurred; None without ink."""
+    c = layer.cover
+    crest = (c >= np.roll(c, 1, 0)) & (c >= np.roll(c, -1, 0)) | (c >= np.roll(c, 1, 1)) & (c >= np.roll(c, -1, 1))
+    strong = c[crest & (c > 0.2) & (sheet.rho < 1.03)]
+    if strong.size < 0.2 * sheet.outer_px:
+        return None
+    return float(np.clip(np.percentile(strong, 60), 0.3, 1.0))
+
+
+def _apply_pins(ink, hidden, angles, sheet, pins):
+    """Make a pinned place certain and the rest of its columns bare."""
+    for rho, plane_deg in pins:
+        column = int(np.argmin(np.abs((angles - plane_deg + 180) % 360 - 180)))
+        row = int(np.clip(round(rho * sheet.outer_px), 0, ink.shape[1] - 1))
+        near = slice(max(column - 1, 0), column + 2)
+        ink[near] = 0
+        hidden[near] = 0
+        ink[near, max(row - 2, 0) : row + 3] = 1
+
+
+def _costs(ink, hidden):
+    """Cost of crossing each cell, bareness for climbing, and how many rows count as the centre."""
+    solid = ink > 0.5
+    n, rows = ink.shape
+    run = np.zeros((n, rows), np.float32)
+    above = np.zeros((n, rows), np.float32)
+    length = np.zeros(n, np.float32)
+    seen = np.zeros(n, np.float32)
+    for r in range(rows - 1, -1, -1):
+        above[:, r] = seen
+        here = solid[:, r]
+        length = np.where(here, length + 1, 0)
+        run[:, r] = length
+        # Ink counts as left above only once the path is below a whole line, with paper between.
+        seen = np.maximum(seen, here)
+    begins = solid[:, 1:] & ~solid[:, :-1]
+    lengths = run[:, 1:][begins]
+    width = float(np.percentile(lengths, 35)) if lengths.size else 2.0
+    deep = np.clip((run - 1.2 * width - 1) / width, 0, 1)
+    paper = 1 - np.maximum(ink, HIDDEN_WORTH * hidden)
+    cost = paper + TOO_DEEP * deep + LEFT_ABOVE * above
+    floor_rows = int(width / 2 + 2)
+    cost[:, :floor_rows] = np.maximum(cost[:, :floor_rows], FLOOR_COST)
+    return cost.astype(np.float32), paper.astype(np.float32), floor_rows
+
+
+def _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows, fill):
+    columns, rows = _walk(enter, leave)
+    on_ink = ink[columns, np.clip(rows, 0, ink.shape[1] - 1)]
+    support = float(np.mean(np.maximum(ink[np.arange(len(enter)), enter], ink[np.arange(len(leave)), leave])))
+    step = (angles[-1] - angles[0]) / max(len(angles) - 1, 1)
+    plane = angles[0] + columns * step
+    x, y = sheet.to_sheet(rows / sheet.outer_px, plane)
+    x, y, floor, plane = _evenly(x, y, rows < floor_rows, plane)
+    course = refine_course(x, y, layer.cover, fill=fill)
+    u, v = sheet.to_plane(course.x, course.y)
+    rho = np.hypot(u, v)
+    # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.
+    bearing = plane + ((np.degrees(np.arctan2(u, -v)) - plane + 180) % 360 - 180)
+    return _resample(course, rho, bearing, floor, angles, sheet, whole, support)
+
+
+def _walk(enter, leave):
+    """Cells of the path in order: (columns, rows) with every row of a climb."""
+    count = np.abs(leave - enter) + 1
+    columns = np.repeat(np.arange(len(enter)), count)
+    first = np.repeat(np.cumsum(count) - count, count)
+    direction = np.repeat(np.sign(leave - enter), count)
+    rows = np.repeat(enter, count) + direction * (np.arange(count.sum()) - first)
+    return columns, rows
+
+
+def _evenly(x, y, floor, plane):
+    """Resample the path about 1 px apart along its smoothed course."""
+    kernel = np.ones(5) / 5
+    xs = np.convolve(np.pad(x, 2, mode="edge"), kernel, mode="valid")
+    ys = np.convolve(np.pad(y, 2, mode="edge"), kernel, mode="valid")
+    length = np.concatenate([[0], np.cumsum(np.hypot(np.diff(xs), np.diff(ys)))])
+    keep = np.concatenate([[True], np.diff(length) > 1e-9])
+    at = np.arange(0, length[-1], 1.0)
+    index = np.clip(np.searchsorted(length, at), 0, len(x) - 1)
+    return (
+        np.interp(at, length[keep], xs[keep]), np.interp(at, length[keep], ys[keep]), floor[index],
+        np.interp(at, length[keep], plane[keep]),
+    )  # fmt: skip
+
+
+def _resample(course, rho, bearing, floor, angles, sheet, whole, support):
+    """Level curve on an even angle grid, from the samples in order along the path."""
+    step = 1.0 / SAMPLES_PER_DEG
+    start = np.ceil(angles[0] / step) * step
+    grid_deg = np.arange(start, angles[-1] + 1e-9, step) if not whole else np.arange(0, 360, step)
+    order = _forward(bearing, course.u_px)
+    b = bearing[order]
+    if whole:
+        b = np.concatenate([b[-400:] - 360, b, b[:400] + 360]) if len(b) > 400 else np.concatenate([b - 360, b, b + 360])
+        wrap = (lambda v: np.concatenate([v[-400:], v, v[:400]])) if len(order) > 400 else (lambda v: np.tile(v, 3))
+    else:
+        wrap = lambda v: v  # noqa: E731
+    b, first = np.unique(b, return_index=True)
+
+    def at(values):
+        return np.interp(grid_deg, b, wrap(values[order])[first])
+
+    seen = course.kind.astype(float)
+    curve = at(rho)
+    slope = np.gradient(curve, step)
+    kind = at(seen)
+    bridge = np.where(kind > 0.5, at(np.where(course.kind > 0, course.u_px, 0.0)), 0.0) / sheet.outer_px
+    state = np.where(at(floor.astype(float)) > 0.5, "floor", np.where(kind > 1.5, "bridged", "seen"))
+    slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
+    return Trace(
+        plane_deg=grid_deg, rho=curve, u_px=np.minimum(at(course.u_px), 0.2), slope=slope, radial_share=slant,
+        u_rho_bridge=bridge, state=state, support=support, width_px=course.width_px / sheet.reduction,
+        sheet_outer_px=sheet.outer_px,
+    )  # fmt: skip
+
+
+def _forward(bearing, u_px):
+    """Indices of the samples that go forward in angle: a noisy flank may step back by a hair."""
+    return np.argsort(bearing, kind="stable")
