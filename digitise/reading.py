@@ -1,14 +1,30 @@
 """One whole reading: the flow from picture to tables, and the frozen result that everything else uses.
 
-Stub: the flow follows; the result classes are settled.
+A stage that a told value makes needless is not run: with levels and bearing told, no label is read.
 """
 
 from dataclasses import dataclass, field
 
-from .budget import Budget
+import numpy as np
+
+from . import bearing as bearing_stage
+from . import scale as scale_stage
+from ._sheet import cut_sheet
+from .budget import PARTS, Budget, make_budget
+from .exceptions import DigitiseError, NotReadError
+from .find import find_charts
+from .grid import find_grid
+from .labels import Labels, read_labels
+from .review import reason
 from .table import Table
+from .traces import find_traces
 
 __all__ = ["Reading", "TraceReading", "read_charts"]
+
+MUCH_BRIDGED = 0.35  # share of rows
+MANY_MISSING = 0.1
+WIDE_ERROR_DB = 1.0
+LEAVES_CHART_RHO = 1.015
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -65,6 +81,110 @@ def read_charts(picture, *, settings):
     """Read every chart on a `Picture` with `Settings`; a tuple of `Reading` in reading order.
 
     Raises `NotReadError` when a chart needs help (no grid, no levels, no ink), `UsageError` for settings that
-    do not fit this picture (a mark far from any ring, contradictory marks).
+    do not fit this picture (a mark far from any ring, contradictory marks). With several charts, those that can be
+    read are, and an error is raised only when none can.
     """
-    raise NotImplementedError
+    boxes = find_charts(picture, crop=settings.crop)
+    if not boxes:
+        raise NotReadError(
+            "no polar chart was found on the picture", stage="find", remedy="cut the chart out with --crop X,Y,W,H"
+        )
+    readings, failures = [], []
+    for box in boxes:
+        try:
+            readings.append(read_chart(picture, box, settings=settings))
+        except DigitiseError as error:
+            failures.append(error)
+    if not readings:
+        raise failures[0]
+    return tuple(readings)
+
+
+def read_chart(picture, box, *, settings):
+    """Read the chart at one `Box`; raises as `read_charts` does."""
+    grid = find_grid(picture, box)
+    labels = read_labels(picture, box, grid) if _needs_labels(settings) else Labels()
+    scale = scale_stage.make_scale(grid, settings=settings, labels=labels)
+    bearing = bearing_stage.make_bearing(grid, settings=settings, labels=labels)
+    sheet = cut_sheet(picture, grid)
+    found = find_traces(sheet, grid, settings=settings)
+    traces = tuple(_trace_reading(item, grid, scale, bearing, settings) for item in found)
+    reasons = (*grid.reasons, *scale.reasons, *bearing.reasons)
+    caption = " ".join(label.text for label in labels.with_role("caption"))
+    return Reading(
+        picture=picture, box=box, settings=settings, grid=grid, labels=labels, scale=scale, bearing=bearing,
+        traces=traces, caption=caption, reasons=reasons,
+    )  # fmt: skip
+
+
+def _needs_labels(settings):
+    levels_told = (
+        len(settings.marks) >= 2
+        or bool(settings.ring_levels)
+        or (settings.outer_db is not None and (settings.centre_db is not None or settings.law not in (None, "even")))
+    )
+    return not (levels_told and settings.zero_deg is not None and settings.turn is not None)
+
+
+def _trace_reading(found, grid, scale, bearing, settings):
+    trace = found.trace
+    budget = make_budget(trace, grid, scale, bearing)
+    table, rows_budget = _tabulate(trace, budget, grid, scale, bearing, settings.step_deg)
+    return TraceReading(
+        name="", ink=found.ink, dash="fill" if found.filled else found.dash, table=table, budget=rows_budget,
+        width_px=trace.width_px, reasons=tuple(_trace_reasons(trace, table, scale)),
+    )  # fmt: skip
+
+
+def _tabulate(trace, budget, grid, scale, bearing, step_deg):
+    """Rows at even bearings, with the budget row by row."""
+    angle = np.arange(round(360 / step_deg)) * step_deg
+    plane = bearing.to_plane(angle)
+    rho, state = _at(trace, trace.rho, plane), _state_at(trace, plane)
+    level = scale.level(rho)
+    floor = state == "floor"
+    least = scale.level(np.array([max(trace.width_px / 2, 1.0) / grid.outer_px]))[0]
+    level = np.where(floor | (level < least), np.maximum(least, np.nan_to_num(level, nan=-np.inf)), level)
+    level = np.where(state == "missing", np.nan, level)
+    parts = {part: np.where(state == "missing", np.nan, _at(trace, getattr(budget, part), plane)) for part in PARTS}
+    rows = Budget(**parts, coverage_factor=budget.coverage_factor)
+    peak = np.nanmax(level) if np.isfinite(level).any() else np.nan
+    table = Table(
+        angle_deg=angle, chart_db=level, relative_db=level - peak, error95_db=rows.error95(), state=state
+    )  # fmt: skip
+    return table, rows
+
+
+def _at(trace, values, plane_deg):
+    """Values of the trace's samples at plane angles; NaN outside the angles that the trace covers."""
+    period = np.interp(plane_deg, trace.plane_deg, values, period=360.0)
+    span = trace.plane_deg[-1] - trace.plane_deg[0]
+    if span > 359:
+        return period
+    ahead = (plane_deg - trace.plane_deg[0]) % 360
+    return np.where(ahead <= span + 0.51, period, np.nan)
+
+
+def _state_at(trace, plane_deg):
+    step = trace.plane_deg[1] - trace.plane_deg[0]
+    index = np.round(((plane_deg - trace.plane_deg[0]) % 360) / step).astype(int)
+    outside = index >= len(trace.plane_deg)
+    wraps = trace.plane_deg[-1] - trace.plane_deg[0] > 359
+    state = trace.state[np.where(outside, 0 if wraps else len(trace.plane_deg) - 1, index)]
+    near_end = index <= len(trace.plane_deg) + round(0.51 / step)
+    return state if wraps else np.where(outside & ~near_end, "missing", state)
+
+
+def _trace_reasons(trace, table, scale):
+    """Reasons to look at one trace, each with its number."""
+    state = table.state
+    drawn = state != "missing"
+    bridged = float(np.mean(state[drawn] == "bridged")) if drawn.any() else 1.0
+    if bridged > MUCH_BRIDGED:
+        yield reason("much-bridged", bridged)
+    outside = float(np.mean(np.nan_to_num(scale.rho(table.chart_db)) > LEAVES_CHART_RHO))
+    if outside > 0:
+        yield reason("leaves-chart", outside)
+    half = float(np.nanmedian(table.error95_db)) if np.isfinite(table.error95_db).any() else np.inf
+    if half > WIDE_ERROR_DB:
+        yield reason("wide-error", half)

@@ -1,0 +1,190 @@
+"""All traces of a chart: which inks carry one, and every trace of each ink.
+
+A told ink is followed as told. Otherwise every ink found is tried, and what was followed must look like a trace: it
+runs on ink for most of its way, is long enough, and is not a ring. Several traces may share an ink (a solid and a
+dashed one in black): each is followed with the ink of the earlier ones hidden.
+"""
+
+from dataclasses import dataclass, replace
+
+import cv2
+import numpy as np
+
+from ._grid_cover import remove_grid
+from .exceptions import NotReadError
+from .follow import Trace, follow_trace
+from .ink import Layer, find_inks, separate_ink
+
+__all__ = ["FoundTrace", "find_traces"]
+
+MOST_PER_INK = 4
+LEAST_LENGTH = 0.6  # of the outer radius, drawn length of a trace
+LEAST_ON_INK = 0.30  # share of the path on ink; dotted lines have about a third
+TOLD_REACH_DEG = 30.0  # a told colour may be this far in direction from the ink on the picture (JPEG, scans)
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class FoundTrace:
+    """A trace and its ink.
+
+    ink : "#rrggbb" as found (or as told); dash : "solid", "dashed" or "dotted"; filled : bool
+    trace : follow.Trace; length : drawn length on ink, in outer radii
+    """
+
+    ink: str
+    dash: str
+    filled: bool
+    trace: Trace
+    length: float
+
+
+def find_traces(sheet, grid, *, settings):
+    """Find and follow all traces; raises `NotReadError` when there is none or a told ink is not on the chart."""
+    inks = find_inks(sheet)
+    palette = [ink.rgb for ink in inks]
+    found = []
+    if settings.inks:
+        for told in settings.inks:
+            rgb = _parse(told)
+            traces = _traces_of_ink(rgb, palette, sheet, grid, settings, told)
+            if not traces:
+                there = ", ".join(ink.hex for ink in inks[:6]) or "none"
+                raise NotReadError(
+                    f"no trace was found in the ink {told}", stage="ink",
+                    remedy=f"inks on the chart: {there}; choose one with --ink",
+                )  # fmt: skip
+            found += traces
+        return tuple(found)
+    for ink in inks:
+        if ink.length_px < 0.25 * sheet.outer_px:
+            continue
+        found += _traces_of_ink(ink.rgb, palette, sheet, grid, settings, ink.hex)
+    found = _without_doubles(found)
+    if not found:
+        raise NotReadError("no trace was found on the chart", stage="ink", remedy="name its colour with --ink '#rrggbb'")
+    return tuple(sorted(found, key=lambda f: -f.length))
+
+
+def _parse(told):
+    return np.array([int(told[k : k + 2], 16) for k in (1, 3, 5)], float)
+
+
+def _traces_of_ink(rgb, palette, sheet, grid, settings, name):
+    if np.linalg.norm(rgb - sheet.paper_rgb) < 20:
+        return []
+    layer = remove_grid(separate_ink(sheet, rgb, palette), sheet, grid)
+    layer = _with_covers(layer, sheet, settings.covers)
+    fill = _fill_cover(layer, sheet)
+    pins = tuple(grid.to_plane(np.float64(x), np.float64(y)) for x, y in settings.pins)
+    found = []
+    for _ in range(MOST_PER_INK):
+        trace = follow_trace(layer, sheet, grid, fill=fill, pins=pins)
+        if trace is None:
+            break
+        on_ink, length, dash = _evidence(trace, layer, sheet, fill)
+        if length < LEAST_LENGTH or on_ink < LEAST_ON_INK or _is_ring(trace, grid):
+            break
+        found.append(FoundTrace(ink=name, dash=dash, filled=fill > 0, trace=trace, length=length))
+        if fill:
+            break
+        layer = _erase(layer, trace, sheet)
+        pins = ()
+    return found
+
+
+def _with_covers(layer, sheet, covers):
+    """Hide the regions that the user covers."""
+    if not covers:
+        return layer
+    cover, hidden = layer.cover.copy(), layer.hidden.copy()
+    height, width = cover.shape
+    for x, y, w, h in covers:
+        x0, y0 = sheet.from_picture(x - 0.5, y - 0.5)
+        x1, y1 = sheet.from_picture(x + w - 0.5, y + h - 0.5)
+        area = np.s_[max(0, round(y0)) : min(height, round(y1)), max(0, round(x0)) : min(width, round(x1))]
+        cover[area] = 0
+        hidden[area] = 1
+    return Layer(cover=cover, hidden=hidden)
+
+
+def _fill_cover(layer, sheet):
+    """Coverage of a translucent fill in the trace's ink: a coverage far commoner than its neighbours; else 0."""
+    inside = sheet.rho < 0.98
+    counts = np.histogram(layer.cover[inside], bins=50, range=(0, 1))[0]
+    usual = max(float(np.median(counts[2:45])), 1.0)
+    k = 2 + int(np.argmax(counts[2:43]))
+    around = counts[max(k - 1, 2) : k + 2]
+    if around.sum() < 0.02 * inside.sum() or counts[k] < 6 * usual:
+        return 0.0
+    near = inside & (layer.cover > 0.02 * (k - 1)) & (layer.cover < 0.02 * (k + 2))
+    return float(np.median(layer.cover[near]))
+
+
+def _evidence(trace, layer, sheet, fill):
+    """Share of the path on ink, drawn length in outer radii, and the dash style from the lengths of ink and gap."""
+    x, y, _ = _course(trace, sheet)
+    over = cv2.remap(layer.cover, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
+    under = cv2.remap(layer.hidden, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
+    on = over > max(0.3, 0.5 * (1 + fill)) * np.percentile(over, 85)
+    known = under < 0.4
+    length = float(on.sum()) / sheet.outer_px
+    share = float(np.mean(on[known])) if known.sum() > 10 else 0.0
+    runs = np.diff(np.flatnonzero(np.diff(np.concatenate([[0], (on | ~known).astype(int), [0]]))))[::2]
+    if share > 0.85 or not runs.size:
+        dash = "solid"
+    else:
+        dash = "dotted" if np.median(runs) < 2.2 * max(trace.width_px * sheet.reduction, 1) else "dashed"
+    return share, length, dash
+
+
+def _course(trace, sheet):
+    """The trace's line on the sheet, about 1 px apart, floor and missing rows left out: x, y columns and rho."""
+    keep = np.isin(trace.state, ("seen", "bridged")) & np.isfinite(trace.rho)
+    plane, rho = trace.plane_deg[keep], trace.rho[keep]
+    x, y = sheet.to_sheet(rho, plane)
+    if len(x) < 2:
+        return np.zeros((1, 1), np.float32), np.zeros((1, 1), np.float32), rho
+    step = np.hypot(np.diff(x), np.diff(y))
+    joined = np.concatenate([[True], np.diff(plane) < 0.5])
+    length = np.concatenate([[0], np.cumsum(np.where(joined[1:], step, 0))])
+    distinct = np.concatenate([[True], np.diff(length) > 1e-9])
+    at = np.arange(0, min(length[-1], 30000.0), 1.0)
+    xs, ys = np.interp(at, length[distinct], x[distinct]), np.interp(at, length[distinct], y[distinct])
+    return xs.astype(np.float32)[:, None], ys.astype(np.float32)[:, None], rho
+
+
+def _is_ring(trace, grid):
+    """A path that keeps to one ring's radius all round is that ring."""
+    rho = trace.rho[np.isfinite(trace.rho)]
+    if not rho.size:
+        return True
+    middle = np.median(rho)
+    tolerance = 1.0 / trace.sheet_outer_px
+    return np.mean(np.abs(rho - middle) < tolerance) > 0.9 and np.min(np.abs(grid.ring_rho - middle)) < tolerance
+
+
+def _erase(layer, trace, sheet):
+    """Hide the ink of a followed trace."""
+    x, y, _ = _course(trace, sheet)
+    mask = np.zeros(layer.cover.shape, np.uint8)
+    points = np.round(np.concatenate([x, y], axis=1) * 8).astype(np.int32)
+    thickness = max(1, round(trace.width_px * sheet.reduction + 2.0))
+    gaps = np.flatnonzero(np.hypot(*np.diff(points, axis=0).T) > 8 * 12) + 1
+    for part in np.split(points, gaps):
+        cv2.polylines(mask, [part[:, None]], False, 1, thickness, cv2.LINE_8, 3)
+    hit = mask > 0
+    return replace(layer, cover=np.where(hit, 0, layer.cover), hidden=np.where(hit, 1, layer.hidden).astype(np.float32))
+
+
+def _without_doubles(found):
+    """Drop a trace that runs along a longer one: the blurred edge of one ink seen as another."""
+    kept = []
+    for item in sorted(found, key=lambda f: -f.length):
+        for other in kept:
+            if other.ink != item.ink and len(other.trace.rho) == len(item.trace.rho):
+                gap = np.abs(other.trace.rho - item.trace.rho) * item.trace.sheet_outer_px
+                if np.nanmedian(gap) < max(2.0, item.trace.width_px):
+                    break
+        else:
+            kept.append(item)
+    return kept
