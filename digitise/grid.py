@@ -1,15 +1,29 @@
 """The chart's grid: centre, rings, spokes, skew, stretch and mild perspective, to sub-pixel, with covariance.
 
-Stub: the fit follows.
+The flow: edge gradients give a first centre and stretch (`_ring_votes`); a radial profile in that plane lists the
+rings (`_ring_profile`) and one over angle the spokes (`_spokes`); sub-pixel points on all of them (`_ring_points`)
+are fitted together (`_ring_fit`), and rings whose points do not run true are dropped again.
 """
 
 from dataclasses import dataclass
 
+import cv2
 import numpy as np
 
+from ._ring_fit import fit_plane, homography_of, parameters_of
+from ._ring_points import ring_points, spoke_points
+from ._ring_profile import drawn_arc, ring_profile
+from ._ring_votes import find_edges, fit_hub
+from ._spokes import find_spokes
+from .exceptions import NotReadError
 from .frozen import lock_arrays
+from .review import reason
 
 __all__ = ["Grid", "find_grid"]
+
+WORK_OUTER_PX = 320.0  # rings are looked for on a picture reduced to this outer radius
+HUB_PIXELS = 0.12e6  # and the first centre on one of this many px
+STRONG, WEAK = 0.5, 0.22  # mean vote of the sectors for a ring
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -87,4 +101,140 @@ class Grid:
 
 def find_grid(picture, box):
     """Fit the grid of the chart at `box` on a `Picture`; raises `NotReadError` when there is none."""
-    raise NotImplementedError
+    rgb = np.ascontiguousarray(picture.rgb[box.y : box.y + box.h, box.x : box.x + box.w])
+    gray8 = cv2.cvtColor(rgb, cv2.COLOR_RGB2GRAY)
+    work, zoom = _reduce(gray8, box.outer_px)
+    to_full = _zoom_matrix(1 / zoom)
+    plane = _first_plane(gray8, box)
+    if plane is None:
+        raise _no_grid(picture)
+    plane = np.linalg.inv(to_full) @ plane
+    plane = _align(work, plane / plane[2, 2])
+    if plane is None:
+        raise _no_grid(picture)
+    profile = ring_profile(work, plane)
+    rho, sign, arc = _list_rings(profile, plane)
+    if not len(rho):
+        raise _no_grid(picture)
+    full = gray8.astype(np.float32)
+    plane = _rescale(to_full @ plane, rho[0])
+    rho = rho / rho[0]
+    return _measure(full, plane, rho, sign, arc, (box.x, box.y))
+
+
+def _no_grid(picture):
+    return NotReadError(
+        "no rings about a common centre were found",
+        remedy="give --crop X,Y,W,H around one chart",
+        stage="grid",
+        source=picture.path,
+    )
+
+
+def _zoom_matrix(factor):
+    """Scaling of pixel coordinates whose centres are at integers."""
+    return np.array([[factor, 0, 0.5 * factor - 0.5], [0, factor, 0.5 * factor - 0.5], [0, 0, 1]])
+
+
+def _rescale(homography, rho):
+    """The homography whose radius 1 is the old one's rho."""
+    h = homography @ np.diag([rho, rho, 1.0])
+    return h / h[2, 2]
+
+
+def _reduce(gray8, outer_px):
+    """Float picture with the outer radius brought down to WORK_OUTER_PX, and the zoom."""
+    zoom = min(1.0, WORK_OUTER_PX / outer_px)
+    full = gray8.astype(np.float32)
+    if zoom == 1.0:
+        return full, 1.0
+    h, w = gray8.shape
+    size = max(8, round(w * zoom)), max(8, round(h * zoom))
+    return cv2.resize(full, size, interpolation=cv2.INTER_AREA), size[0] / w
+
+
+def _first_plane(gray8, box):
+    """First homography (crop px) from edge gradients about the box's centre."""
+    edges = find_edges(gray8, work_pixels=HUB_PIXELS)
+    to_small = _zoom_matrix(edges.zoom)
+    x, y, _ = to_small @ [box.centre_x - box.x, box.centre_y - box.y, 1]
+    outer = box.outer_px * edges.zoom
+    hub = fit_hub(edges, x, y, reach_px=1.08 * outer, tolerances=(0.08, 0.06, 0.04, 0.03))
+    if hub is None:
+        return None
+    values, vectors = np.linalg.eigh([[1 + hub.a, hub.b], [hub.b, 1 - hub.a]])
+    if values.min() <= 0.3:
+        return None
+    h = np.eye(3)
+    h[:2, :2] = outer * vectors @ np.diag(values**-0.5) @ vectors.T
+    h[:2, 2] = hub.x, hub.y
+    h = np.linalg.inv(to_small) @ h
+    return h / h[2, 2]
+
+
+def _align(work, plane):
+    """Bring the strong rings into line on the reduced picture; None when there are none."""
+    for reach_px in (6.0, 3.5):
+        rho, score, level = ring_profile(work, plane, reach=1.1).peaks(0.3)
+        order = np.argsort(-np.abs(score) * np.sqrt(np.abs(level)))[:6]
+        if not len(order):
+            return None
+        rho, sign = rho[order], np.sign(score[order])
+        rings = [ring_points(work, plane, r, reach_px=reach_px, sign=s) for r, s in zip(rho, sign)]
+        plane = fit_plane(
+            rings, [], [], start=parameters_of(plane), ring_rho=rho, allow_tilt=False
+        ).homography
+    return plane
+
+
+def _list_rings(profile, plane):
+    """Radii (falling) and polarity of the rings in a radial profile, and the drawn arc."""
+    rho, score, _ = profile.peaks(0.3)
+    blocks, arc = drawn_arc(profile, rho, np.sign(score))
+    rho, score, level = profile.peaks(WEAK, blocks)
+    strong = (np.abs(score) > STRONG) & (rho < 1.04)
+    if not strong.any():
+        return np.zeros(0), np.zeros(0), arc
+    keep = strong & (rho <= rho[strong][0] + 1e-9)
+    return rho[keep], np.sign(score[keep]), arc
+
+
+def _measure(full, plane, rho, sign, arc, origin):
+    """Sub-pixel fit of everything, as a `Grid` in picture px."""
+    outer_px = float(np.sqrt(abs(np.linalg.det(plane[:2, :2]))))
+    spokes = find_spokes(full, plane, arc_deg=arc)
+    parameters = parameters_of(plane)
+    parameters[3] = np.radians(spokes.skew_deg)
+    gap = np.abs(np.diff(rho)).min() * outer_px if len(rho) > 1 else 20.0
+    reach_px = float(np.clip(0.4 * gap, 3.0, 6.0))
+    for _ in range(2):
+        plane = homography_of(parameters)
+        rings = [ring_points(full, plane, r, arc_deg=arc, reach_px=reach_px, sign=s) for r, s in zip(rho, sign)]
+        true = np.array([p.drawn > 0.3 and r * outer_px > 12 for p, r in zip(rings, rho)])
+        true[0] = True
+        rho, sign, rings = rho[true], sign[true], [p for p, ok in zip(rings, true) if ok]
+        lines = [spoke_points(full, plane, a, 0.25, 0.97) for a in spokes.deg]
+        fit = fit_plane(rings, lines, spokes.deg, start=parameters, ring_rho=rho)
+        parameters, rho = fit.parameters, fit.ring_rho
+    shift = np.array([[1, 0, origin[0]], [0, 1, origin[1]], [0, 0, 1.0]])
+    h = shift @ fit.homography
+    move = np.eye(8)
+    move[0, 6], move[1, 7], move[3, 6], move[4, 7] = origin[0], origin[0], origin[1], origin[1]
+    move[0, 6], move[1, 7] = origin[0], origin[0]
+    reasons = ()
+    return Grid(
+        homography=h,
+        covariance=move @ fit.covariance @ move.T,
+        ring_rho=rho,
+        ring_rho_u=fit.ring_rho_u,
+        ring_drawn=np.array([p.drawn for p in rings]),
+        ring_width_px=np.array([p.width_px for p in rings]),
+        spoke_deg=spokes.deg,
+        spoke_step_deg=spokes.step_deg,
+        spoke_width_px=float(np.median([p.width_px for p in lines])) if lines else float("nan"),
+        arc_deg=arc,
+        skew_deg=float(np.degrees(fit.parameters[3])),
+        skew_u_deg=float(np.degrees(fit.turn_u)) if len(spokes.deg) else 5.0,
+        residual_px=fit.residual_px,
+        reasons=reasons,
+    )

@@ -1,0 +1,118 @@
+"""Which radii carry a drawn ring: a radial profile of line contrast, judged sector by sector.
+
+Each sector of a few degrees averages over the dashes of a ring and says whether a thin line, darker or lighter
+than its surroundings, crosses it at a radius. A ring is a radius at which most sectors agree; letters, spokes and
+traces speak for a few sectors only, however black they are, because every sector's vote is limited.
+"""
+
+from dataclasses import dataclass
+
+import cv2
+import numpy as np
+
+from ._unwrap import unwrap
+
+__all__ = ["RingProfile", "drawn_arc", "ring_profile"]
+
+N_BLOCKS = 72
+STEP_PX = 0.5
+LINE_SIGMA_PX = 1.2  # of the line detector
+FLOOR_LEVELS = 0.35  # weakest line, grey levels of the detector's answer
+NOISE_FACTOR = 3.0
+APART_PX = 3.5  # lines closer than this are one
+LOBE_PX = 10.0  # reach of the detector's side lobes
+LOBE_SHARE = 0.6  # and their size, next to the line's own answer
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class RingProfile:
+    """Line contrast about a centre.
+
+    rho : (n,) radii, outermost ring of the first guess 1
+    answer : (N_BLOCKS, n) float32, the line detector's answer of every sector, grey levels, positive for a dark line
+    floor : the answer that counts as a line
+    """
+
+    rho: np.ndarray
+    answer: np.ndarray
+    floor: float
+
+    def score(self, blocks=None):
+        """(n,) mean vote of the sectors (all, or those of a boolean mask), -1 to 1."""
+        answer = self.answer if blocks is None else self.answer[blocks]
+        return np.clip(answer / self.floor, -1, 1).mean(axis=0)
+
+    def level(self, blocks=None):
+        """(n,) mean answer of the sectors with the loudest held back, grey levels."""
+        answer = self.answer if blocks is None else self.answer[blocks]
+        cap = max(float(np.abs(np.median(answer, axis=0)).max()), self.floor)
+        return np.clip(answer, -cap, cap).mean(axis=0)
+
+    def peaks(self, threshold, blocks=None):
+        """Lines on which enough sectors agree: arrays rho (falling), score, level."""
+        score, level = self.score(blocks), self.level(blocks)
+        size = np.where(np.abs(score) > threshold, np.abs(level), 0).astype(np.float32)
+        reach = max(1, round(APART_PX / STEP_PX))
+        top = cv2.dilate(size[None], np.ones((1, 2 * reach + 1), np.uint8))[0]
+        at = np.flatnonzero((size >= top) & (size > 0))
+        at = at[(at > 0) & (at < len(size) - 1)][::-1]
+        left, mid, right = size[at - 1], size[at], size[at + 1]
+        bend = np.minimum(left - 2 * mid + right, -1e-9)
+        step = self.rho[1] - self.rho[0]
+        rho = self.rho[at] + np.clip(0.5 * (left - right) / bend, -0.5, 0.5) * step
+        keep = ~_lobes(rho / step * STEP_PX, level[at])
+        return rho[keep], score[at][keep], level[at][keep]
+
+
+def ring_profile(image, homography, *, reach=1.25, inner_px=5.0):
+    """Measure line contrast about the centre of a chart plane on a float32 picture, as a `RingProfile`."""
+    outer_px = float(np.sqrt(abs(np.linalg.det(homography[:2, :2]))))
+    per_block = int(np.clip(round(2 * np.pi * outer_px / N_BLOCKS / 2.5), 4, 10))
+    angle = np.arange(N_BLOCKS * per_block) * (360.0 / (N_BLOCKS * per_block))
+    rho = np.arange(0, reach * outer_px, STEP_PX) / outer_px
+    polar = unwrap(image, homography, angle, rho)
+    block = polar.reshape(N_BLOCKS, per_block, -1).mean(axis=1)
+    sigma = LINE_SIGMA_PX / STEP_PX
+    smooth = cv2.GaussianBlur(block, (0, 0), sigmaX=sigma, sigmaY=1e-3)
+    wide = cv2.GaussianBlur(block, (0, 0), sigmaX=2.2 * sigma, sigmaY=1e-3)
+    answer = wide - smooth
+    answer[:, rho * outer_px < inner_px] = 0
+    inside = answer[:, (rho * outer_px > inner_px) & (rho < 1)]
+    noise = 1.4826 * float(np.median(np.abs(inside)))
+    return RingProfile(rho=rho, answer=answer, floor=max(NOISE_FACTOR * noise, FLOOR_LEVELS))
+
+
+def _lobes(radius_px, level):
+    """Whether lines are side lobes of the detector, beside a stronger line of the other polarity."""
+    apart = np.abs(radius_px[:, None] - radius_px[None, :])
+    stronger = np.abs(level)[None, :] * LOBE_SHARE > np.abs(level)[:, None]
+    return ((apart < LOBE_PX) & stronger & (level[:, None] * level[None, :] < 0)).any(axis=1)
+
+
+def drawn_arc(profile, rho, sign):
+    """Sectors in which the strong rings are drawn: boolean (N_BLOCKS,), and the arc (first, last) in degrees.
+
+    A gap counts when no ring is drawn over 100 degrees or more; else the chart is whole.
+    """
+    votes = np.clip(profile.answer / profile.floor, -1, 1)
+    columns = np.clip(np.round(rho / (profile.rho[1] - profile.rho[0])).astype(int), 1, votes.shape[1] - 2)
+    seen = np.zeros(N_BLOCKS)
+    for column, s in zip(columns, sign):
+        seen += (s * votes[:, column - 1 : column + 2]).max(axis=1)
+    drawn = seen / max(len(columns), 1) > 0.3
+    width = 360.0 / N_BLOCKS
+    if drawn.all() or not drawn.any():
+        return np.ones(N_BLOCKS, bool), np.array([0.0, 360.0])
+    # The longest run of empty sectors, around the circle.
+    best_start, best_length = 0, 0
+    for start in np.flatnonzero(~drawn & np.roll(drawn, 1)):
+        length = 0
+        while length < N_BLOCKS and not drawn[(start + length) % N_BLOCKS]:
+            length += 1
+        if length > best_length:
+            best_start, best_length = int(start), length
+    if best_length * width < 100:
+        return np.ones(N_BLOCKS, bool), np.array([0.0, 360.0])
+    mask = np.ones(N_BLOCKS, bool)
+    mask[(best_start + np.arange(best_length)) % N_BLOCKS] = False
+    return mask, np.array([((best_start + best_length) * width) % 360, (best_start * width) % 360])
