@@ -19,26 +19,33 @@ OPAQUE = 0.82  # above this grid coverage, what lies there cannot be told
 
 
 def remove_grid(layer, sheet, grid):
-    """Return a `Layer` with the grid's own coverage taken from `cover` and added to `hidden`."""
+    """Return a `Layer` with the grid's own coverage taken from `cover` and `body` and added to `hidden`."""
+    cover, hidden = _remove(layer.cover, layer.hidden, sheet, grid)
+    if layer.body is layer.cover:
+        return Layer(cover=cover, hidden=hidden, body=cover)
+    body, _ = _remove(layer.body, layer.hidden, sheet, grid)
+    return Layer(cover=cover, hidden=hidden, body=body)
+
+
+def _remove(cover, hidden, sheet, grid):
     offsets = np.arange(-HALF_PROFILE_PX, HALF_PROFILE_PX + 1e-6, PROFILE_STEP_PX)
     ring_profiles = np.stack(
-        [_ring_profile(layer.cover, sheet, grid, rho, offsets, d) for rho, d in zip(grid.ring_rho, grid.ring_drawn)]
+        [_ring_profile(cover, sheet, grid, rho, offsets, d) for rho, d in zip(grid.ring_rho, grid.ring_drawn)]
     )
     grid_cover = _rings_on_sheet(sheet, grid, ring_profiles, offsets)
     if len(grid.spoke_deg):
-        spoke_profile = _spoke_profile(layer.cover, sheet, grid, offsets)
+        spoke_profile = _spoke_profile(cover, sheet, grid, offsets)
         if spoke_profile.max() > 0.04:
             spokes = _spokes_on_sheet(sheet, grid, spoke_profile, offsets)
             grid_cover = 1 - (1 - grid_cover) * (1 - spokes)
     if grid_cover.max() < 0.04:
-        return layer
-    left = (layer.cover - grid_cover) / np.maximum(1 - grid_cover, 1 - OPAQUE)
+        return cover, hidden
+    left = (cover - grid_cover) / np.maximum(1 - grid_cover, 1 - OPAQUE)
     # A pixel-phase mismatch of a sharp line leaves a little: what is small beside the grid there is the grid's.
     left = np.where(left < 0.35 * grid_cover, 0, left)
-    cover = np.where(grid_cover < OPAQUE, np.clip(left, 0, 1.1), 0)
     # A ring shows only where the pixel is inked at all: a gap of a dashed ring hides nothing.
-    hidden = np.maximum(layer.hidden, np.minimum(grid_cover, layer.cover))
-    return Layer(cover=cover.astype(np.float32), hidden=hidden.astype(np.float32))
+    hidden = np.maximum(hidden, np.minimum(grid_cover, cover))
+    return np.where(grid_cover < OPAQUE, np.clip(left, 0, 1.1), 0).astype(np.float32), hidden.astype(np.float32)
 
 
 def _sample(image, sheet, rho, plane_deg):

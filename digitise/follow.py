@@ -10,6 +10,7 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
+from ._dashes import bridge_dashes
 from ._path import cheapest_path
 from ._refine import refine_course
 from .frozen import lock_arrays
@@ -17,6 +18,7 @@ from .frozen import lock_arrays
 __all__ = ["Trace", "follow_trace"]
 
 HIDDEN_WORTH = 0.15  # how much better than paper a hidden place is
+GAP_WORTH = 0.85  # worth of a bridged dash gap, of a full line
 TOO_DEEP = 0.5  # cost of running deeper in solid ink than the line is wide
 LEFT_ABOVE = 0.4  # cost of leaving ink above the path
 FLOOR_COST = 0.8  # cost of the centre: dearer than dashes, cheaper than bare paper
@@ -66,16 +68,22 @@ def follow_trace(layer, sheet, grid, *, fill=0.0, pins=()):
     -------
     Trace on SAMPLES_PER_DEG samples a degree, or None when there is no ink to follow
     """
-    angles, evidence, hidden = _unwrapped(layer, sheet, grid)
     reference = _line_peak(layer, sheet)
     if reference is None:
         return None
-    lifted = np.clip((evidence - fill) / (1 - fill), 0, 1) if fill else evidence
-    ink = np.clip((lifted - 0.15 * reference) / (0.5 * reference), 0, 1).astype(np.float32)
+    lifted = np.clip((layer.cover - fill) / (1 - fill), 0, 1) if fill else layer.cover
+    bridge = bridge_dashes(lifted, sheet.rho, sheet.outer_px, reference)
+    maps = [lifted, layer.hidden] + ([] if bridge is None else [bridge])
+    angles, (evidence, hidden, *bridged) = _unwrapped(maps, sheet, grid)
+    ink = np.clip((evidence - 0.15 * reference) / (0.5 * reference), 0, 1).astype(np.float32)
+    if bridged:
+        np.maximum(ink, GAP_WORTH * np.clip((bridged[0] - 0.3) / 0.4, 0, 1), out=ink)
     _apply_pins(ink, hidden, angles, sheet, pins)
     whole = _is_whole(grid)
     cost, paper, floor_rows = _costs(ink, hidden)
     enter, leave = cheapest_path(cost, paper, closed=whole)
+    if np.mean(np.maximum(enter, leave) < floor_rows) > 0.98:
+        return None
     return _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows, fill)
 
 
@@ -84,8 +92,8 @@ def _is_whole(grid):
     return (end - start) >= 359.0
 
 
-def _unwrapped(layer, sheet, grid):
-    """Angles, cover and hidden on the unwrapped plane, (n_columns, n_rows), one row a sheet px."""
+def _unwrapped(maps, sheet, grid):
+    """Angles, and each map on the unwrapped plane, (n_columns, n_rows), one row a sheet px."""
     start, end = float(grid.arc_deg[0]), float(grid.arc_deg[1])
     extent = end - start if end > start else end - start + 360.0
     n = int(np.ceil(2 * np.pi * sheet.outer_px * extent / 360.0))
@@ -93,9 +101,7 @@ def _unwrapped(layer, sheet, grid):
     rows = np.arange(int(sheet.outer_px * 1.04) + 2) / sheet.outer_px
     x, y = sheet.to_sheet(rows[None, :], angles[:, None])
     x, y = x.astype(np.float32), y.astype(np.float32)
-    evidence = cv2.remap(layer.cover, x, y, cv2.INTER_LINEAR, borderValue=0)
-    hidden = cv2.remap(layer.hidden, x, y, cv2.INTER_LINEAR, borderValue=0)
-    return angles, evidence, hidden
+    return angles, [cv2.remap(image, x, y, cv2.INTER_LINEAR, borderValue=0) for image in maps]
 
 
 def _line_peak(layer, sheet):
@@ -153,7 +159,7 @@ def _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows,
     plane = angles[0] + columns * step
     x, y = sheet.to_sheet(rows / sheet.outer_px, plane)
     x, y, floor, plane = _evenly(x, y, rows < floor_rows, plane)
-    course = refine_course(x, y, layer.cover, fill=fill)
+    course = refine_course(x, y, layer.body, fill=fill)
     u, v = sheet.to_plane(course.x, course.y)
     rho = np.hypot(u, v)
     # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.

@@ -17,7 +17,9 @@ __all__ = ["Ink", "Layer", "find_inks", "separate_ink"]
 LEAST_STRENGTH = 24.0  # colour levels: fainter pixels do not vote for an ink
 BIN_DEG = 1.5  # direction histogram bin
 APART_DEG = 5.0  # inks closer in direction than this are one (told inks may be closer)
-LEAST_LENGTH = 0.25  # of the outer radius: a shorter line is text or a legend sample
+LUMA = np.array([0.299, 0.587, 0.114])  # ITU-R BT.601-7, 2.5.1, as JPEG (ITU-T T.871) uses it
+COLOUR_SPREAD_DEG = 4.0  # ink pixels scattered more than this in direction: the colours are blurred
+LEAST_LUMA_CONTRAST = 45.0  # colour levels of lightness that the place can be read from
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -42,12 +44,15 @@ class Ink:
 class Layer:
     """One ink's share of every sheet pixel.
 
-    cover : (h, w) float32, coverage by the ink, 0 to about 1
+    cover : (h, w) float32, coverage by the ink, 0 to about 1: tells where the ink is
     hidden : (h, w) float32, coverage by something else under which the ink may run, 0 to 1
+    body : (h, w) float32, coverage that tells the line's exact place: `cover`, or coverage from lightness alone where
+        the picture's colours are blurred (JPEG keeps colour at half resolution)
     """
 
     cover: np.ndarray
     hidden: np.ndarray
+    body: np.ndarray
 
 
 def find_inks(sheet):
@@ -146,7 +151,20 @@ def separate_ink(sheet, ink_rgb, other_rgbs):
     full_hidden = np.zeros(sheet.strength.shape, np.float32)
     full_cover[active] = np.clip(cover, 0, 1.2)
     full_hidden[active] = np.clip(hidden, 0, 1)
-    return Layer(cover=full_cover, hidden=full_hidden)
+    body = full_cover
+    luma = float(own @ LUMA)
+    if abs(luma) > LEAST_LUMA_CONTRAST and _colour_spread(vectors, own32, cover) > COLOUR_SPREAD_DEG:
+        body = np.clip(sheet.contrast @ (LUMA / luma).astype(np.float32), 0, 1.2)
+    return Layer(cover=full_cover, hidden=full_hidden, body=body)
+
+
+def _colour_spread(vectors, own, cover):
+    """Median angle, degrees, between the ink and the pixels on the middle of its lines."""
+    core = vectors[cover > 0.6 * np.percentile(cover[cover > 0.15], 90)] if (cover > 0.15).sum() > 20 else vectors[:0]
+    if len(core) < 20:
+        return 0.0
+    cosine = core @ own / np.maximum(np.linalg.norm(core, axis=1) * np.linalg.norm(own), 1e-6)
+    return float(np.degrees(np.arccos(np.clip(np.median(cosine), -1, 1))))
 
 
 def _solve_pair(vectors, own, other):

@@ -5,7 +5,7 @@ runs on ink for most of its way, is long enough, and is not a ring. Several trac
 dashed one in black): each is followed with the ink of the earlier ones hidden.
 """
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import cv2
 import numpy as np
@@ -96,15 +96,15 @@ def _with_covers(layer, sheet, covers):
     """Hide the regions that the user covers."""
     if not covers:
         return layer
-    cover, hidden = layer.cover.copy(), layer.hidden.copy()
+    cover, hidden, body = layer.cover.copy(), layer.hidden.copy(), layer.body.copy()
     height, width = cover.shape
     for x, y, w, h in covers:
         x0, y0 = sheet.from_picture(x - 0.5, y - 0.5)
         x1, y1 = sheet.from_picture(x + w - 0.5, y + h - 0.5)
         area = np.s_[max(0, round(y0)) : min(height, round(y1)), max(0, round(x0)) : min(width, round(x1))]
-        cover[area] = 0
+        cover[area] = body[area] = 0
         hidden[area] = 1
-    return Layer(cover=cover, hidden=hidden)
+    return Layer(cover=cover, hidden=hidden, body=body)
 
 
 def _fill_cover(layer, sheet):
@@ -173,7 +173,8 @@ def _erase(layer, trace, sheet):
     for part in np.split(points, gaps):
         cv2.polylines(mask, [part[:, None]], False, 1, thickness, cv2.LINE_8, 3)
     hit = mask > 0
-    return replace(layer, cover=np.where(hit, 0, layer.cover), hidden=np.where(hit, 1, layer.hidden).astype(np.float32))
+    cover, body = (np.where(hit, 0, part).astype(np.float32) for part in (layer.cover, layer.body))
+    return Layer(cover=cover, hidden=np.where(hit, 1, layer.hidden).astype(np.float32), body=body)
 
 
 def _without_doubles(found):
