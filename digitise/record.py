@@ -171,8 +171,10 @@ def _labels(labels):
 
 
 def _trace(trace, table_name):
-    from .figures import figures_of
-
+    try:
+        from .figures import figures_of
+    except ModuleNotFoundError:  # until that stage stands
+        figures_of = None
     table, budget = trace.table, trace.budget
     known = np.isfinite(table.chart_db)
     peak = int(np.nanargmax(table.chart_db)) if known.any() else None
@@ -186,7 +188,7 @@ def _trace(trace, table_name):
         "peak_deg": None if peak is None else round(float(table.angle_deg[peak]), 6),
         "median_error95_db": to_plain(_median(table.error95_db), 4),
         "rows": {state: int(np.sum(table.state == state)) for state in STATES},
-        "figures": to_plain(figures_of(table).to_json()),
+        "figures": to_plain(figures_of(table).to_json()) if figures_of else {},
         "budget": {
             "coverage_factor": budget.coverage_factor,
             "median_u_db": {part: to_plain(_median(getattr(budget, part)), 4) for part in PARTS},
