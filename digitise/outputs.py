@@ -64,11 +64,10 @@ def make_files(readings, *, with_proof=True):
     from .proof import draw_proof, encode_proof
 
     charts = []
-    for k, reading in enumerate(readings, 1):
-        number, total = reading.settings.chart or (k, len(readings))
-        stem = chart_stem(reading.picture.path, chart_number=number, n_charts=total)
+    for reading in readings:
+        stem = chart_stem(reading.picture.path, chart_number=reading.number, n_charts=reading.n_charts)
         tables = _table_names(stem, len(reading.traces))
-        record = make_record(reading, tables=tables, chart_number=number, n_charts=total)
+        record = make_record(reading, tables=tables)
         files = {name: write_table(trace.table).encode() for name, trace in zip(tables, reading.traces, strict=True)}
         files[f"{stem}.record.json"] = write_record(record).encode()
         if with_proof:

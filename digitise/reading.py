@@ -3,7 +3,7 @@
 A stage that a told value makes needless is not run: with levels and bearing told, no label is read.
 """
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -54,6 +54,7 @@ class Reading:
     traces : tuple of TraceReading
     caption : text printed with the chart, "" when none was read
     reasons : tuple of review.Reason that concern the whole chart
+    number, n_charts : which chart of the picture this is, from 1 in reading order, and how many there are
     """
 
     picture: object
@@ -66,6 +67,8 @@ class Reading:
     traces: tuple = field(default=())
     caption: str = ""
     reasons: tuple = ()
+    number: int = 1
+    n_charts: int = 1
 
     @property
     def review(self):
@@ -89,14 +92,28 @@ def read_charts(picture, *, settings):
         raise NotReadError(
             "no polar chart was found on the picture", stage="find", remedy="cut the chart out with --crop X,Y,W,H"
         )
+    wanted = range(1, len(boxes) + 1)
+    if settings.chart is not None:
+        number, n_charts = settings.chart
+        if n_charts != len(boxes):
+            raise NotReadError(
+                f"the record is of chart {number} of {n_charts}, and {len(boxes)} were found", stage="find",
+                remedy="cut the chart out with --crop X,Y,W,H",
+            )  # fmt: skip
+        wanted = (number,)
     readings, failures = [], []
-    for box in boxes:
+    for number in wanted:
         try:
-            readings.append(read_chart(picture, box, settings=settings))
+            reading = read_chart(picture, boxes[number - 1], settings=settings)
+            readings.append(replace(reading, number=number, n_charts=len(boxes)))
         except DigitiseError as error:
-            failures.append(error)
+            failures.append((number, error))
     if not readings:
-        raise failures[0]
+        raise failures[0][1]
+    if failures:
+        first = f"chart {failures[0][0]}: {failures[0][1].cause}"
+        unread = reason("chart-unread", len(failures), first)
+        readings = [replace(reading, reasons=(*reading.reasons, unread)) for reading in readings]
     return tuple(readings)
 
 
@@ -104,8 +121,8 @@ def read_chart(picture, box, *, settings):
     """Read the chart at one `Box`; raises as `read_charts` does."""
     grid = find_grid(picture, box)
     labels = read_labels(picture, box, grid) if _needs_labels(settings) else Labels()
-    scale = scale_stage.make_scale(grid, settings=settings, labels=labels)
-    bearing = bearing_stage.make_bearing(grid, settings=settings, labels=labels)
+    scale = settings.scale or scale_stage.make_scale(grid, settings=settings, labels=labels)
+    bearing = settings.bearing or bearing_stage.make_bearing(grid, settings=settings, labels=labels)
     sheet = cut_sheet(picture, grid)
     found = find_traces(sheet, grid, settings=settings)
     traces = tuple(_trace_reading(item, grid, scale, bearing, settings) for item in found)
@@ -119,11 +136,13 @@ def read_chart(picture, box, *, settings):
 
 def _needs_labels(settings):
     levels_told = (
-        len(settings.marks) >= 2
+        settings.scale is not None
+        or len(settings.marks) >= 2
         or bool(settings.ring_levels)
         or (settings.outer_db is not None and (settings.centre_db is not None or settings.law not in (None, "even")))
     )
-    return not (levels_told and settings.zero_deg is not None and settings.turn is not None)
+    bearing_told = settings.bearing is not None or (settings.zero_deg is not None and settings.turn is not None)
+    return not (levels_told and bearing_told)
 
 
 def _trace_reading(found, grid, scale, bearing, settings):

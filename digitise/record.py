@@ -32,14 +32,13 @@ ROW_DIGITS = 3  # significant digits of the per-row parts of the error
 PLACE_DIGITS = 6  # and of label places, px
 
 
-def make_record(reading, *, tables, chart_number=1, n_charts=1):
+def make_record(reading, *, tables):
     """The record of one chart, as plain JSON values.
 
     Parameters
     ----------
     reading : Reading
     tables : the table file's bare name for every trace
-    chart_number, n_charts : which chart of the picture this is, from 1, and of how many
     """
     picture = reading.picture
     return {
@@ -53,8 +52,8 @@ def make_record(reading, *, tables, chart_number=1, n_charts=1):
             "size": [picture.width, picture.height],
             "page": picture.page,
             "crop": to_plain(reading.settings.crop),
-            "number": chart_number,
-            "of": n_charts,
+            "number": reading.number,
+            "of": reading.n_charts,
             "region": [reading.box.x, reading.box.y, reading.box.w, reading.box.h],
             "caption": reading.caption,
             "notes": list(picture.notes),

@@ -25,6 +25,7 @@ REASONS = {
     "peak-low": "the trace peaks {value:.1f} dB below the outermost ring",
     "wide-error": "half of the rows have an error above {value:.2f} dB",
     "text-unread": "labels were not read: {detail} ({value:.0f} found)",
+    "chart-unread": "{value:.0f} more charts on the picture could not be read ({detail})",
     "ring-missing": "the rings are uneven: {value:.0f} seem to be missing or extra",
 }
 
