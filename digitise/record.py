@@ -7,13 +7,11 @@ A record names files by their bare names only, and nothing that a record says is
 
 import json
 import os
-import platform
-import sys
 
 import numpy as np
 
-from . import __version__
 from ._json import Malformed, take, take_number, take_numbers, to_plain, to_text
+from ._record_parts import bearing_part, grid_part, labels_part, scale_part, software_part
 from .bearing import Bearing
 from .budget import PARTS
 from .caution import CAUTION
@@ -29,7 +27,6 @@ FORMAT = "digitise-record/1"
 MAX_RECORD_BYTES = 50_000_000  # ten traces at the finest step have about 5 MB
 N_PARAMETERS = {"even": 2, "field": 2, "power": 2, "log-periodic": 2, "rings": 0}
 ROW_DIGITS = 3  # significant digits of the per-row parts of the error
-PLACE_DIGITS = 6  # and of label places, px
 
 
 def make_record(reading, *, tables):
@@ -43,7 +40,7 @@ def make_record(reading, *, tables):
     picture = reading.picture
     return {
         "format": FORMAT,
-        "software": _software(),
+        "software": software_part(),
         "caution": CAUTION,
         "chart": {
             "file": os.path.basename(picture.path),
@@ -59,10 +56,10 @@ def make_record(reading, *, tables):
             "notes": list(picture.notes),
         },
         "told": _told(reading.settings),
-        "grid": _grid(reading.grid),
-        "scale": _scale(reading.scale),
-        "bearing": _bearing(reading.bearing),
-        "labels": _labels(reading.labels),
+        "grid": grid_part(reading.grid),
+        "scale": scale_part(reading.scale),
+        "bearing": bearing_part(reading.bearing),
+        "labels": labels_part(reading.labels),
         "traces": [_trace(trace, name) for trace, name in zip(reading.traces, tables, strict=True)],
         "review": reading.review,
     }
@@ -119,14 +116,6 @@ def settings_from_record(path, *, sha256=None):
         raise _refusal(path, f"holds settings that cannot be right: {error.cause}", "make the record anew") from None
 
 
-def _software():
-    versions = {"name": "digitise", "version": __version__, "python": platform.python_version()}
-    versions["numpy"] = np.__version__
-    if "cv2" in sys.modules:  # only what took part is named
-        versions["opencv"] = sys.modules["cv2"].__version__
-    return versions
-
-
 def _told(settings):
     """What the user fixed, by the names of `Settings`; what was left to the tool is absent."""
     told = {}
@@ -142,33 +131,6 @@ def _told(settings):
     return told
 
 
-def _grid(grid):
-    names = ("homography", "covariance", "ring_rho", "ring_rho_u", "ring_drawn", "ring_width_px", "spoke_deg")
-    names += ("spoke_step_deg", "spoke_width_px", "arc_deg", "skew_deg", "skew_u_deg", "residual_px")
-    plain = {name: to_plain(getattr(grid, name)) for name in names}
-    return {"centre_px": [grid.centre_x, grid.centre_y], "outer_px": grid.outer_px, **plain}
-
-
-def _scale(scale):
-    names = ("law", "parameters", "covariance", "anchor_rho", "anchor_db", "unit", "residual_px", "source")
-    plain = {name: to_plain(getattr(scale, name)) for name in names}
-    outer_db = float(scale.level(np.ones(1))[0])
-    return {**plain, "outer_db": outer_db, "centre_db": to_plain(scale.centre_db), "reasons": _reasons(scale.reasons)}
-
-
-def _bearing(bearing):
-    plain = {name: to_plain(getattr(bearing, name)) for name in ("zero_deg", "turn", "u_deg", "source", "signed")}
-    return {**plain, "reasons": _reasons(bearing.reasons)}
-
-
-def _labels(labels):
-    if labels is None:
-        return {"engine": "", "found": []}
-    names = ("text", "value", "unit", "role", "x_px", "y_px", "w_px", "h_px", "angle_deg", "confidence")
-    found = [{name: to_plain(getattr(label, name), PLACE_DIGITS) for name in names} for label in labels.found]
-    return {"engine": labels.engine, "found": found}
-
-
 def _trace(trace, table_name):
     try:
         from .figures import figures_of
@@ -181,7 +143,7 @@ def _trace(trace, table_name):
         "ink": trace.ink,
         "dash": trace.dash,
         "name": trace.name,
-        "width_px": to_plain(float(trace.width_px), PLACE_DIGITS),
+        "width_px": to_plain(float(trace.width_px), 4),
         "table": table_name,
         "peak_db": None if peak is None else round(float(table.chart_db[peak]), 3),
         "peak_deg": None if peak is None else round(float(table.angle_deg[peak]), 6),
@@ -200,10 +162,6 @@ def _trace(trace, table_name):
 def _median(values):
     finite = np.asarray(values)[np.isfinite(values)]
     return float(np.median(finite)) if finite.size else float("nan")
-
-
-def _reasons(reasons):
-    return [{"code": item.code, "value": item.value, "detail": item.detail} for item in reasons]
 
 
 def _check(record):
