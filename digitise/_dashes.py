@@ -11,32 +11,25 @@ import numpy as np
 __all__ = ["bridge_dashes"]
 
 N_DIRECTIONS = 12
-LEAST_PIECES = 10  # fewer separate pieces of ink are a solid line with interruptions
+LEAST_PIECES = 8  # fewer separate pieces of ink are a solid line with interruptions, or text
+LEAST_SECTORS = 5  # of 36: text stands on one ray, a dashed trace goes round
 REDUCTION = 2  # the bridge only guides the path; half resolution is enough
 
 
-def bridge_dashes(cover, rho, outer_px, level):
+def bridge_dashes(cover, hidden, sheet, level):
     """Coverage-like map, (h, w) float32, high on dashes and in the gaps between them; None when nothing is dashed.
 
-    cover : (h, w) float32; rho : (h, w) radius, outermost ring 1; level : coverage on a line's crest
+    cover, hidden : (h, w) float32; sheet : _sheet.Sheet; level : coverage on a line's crest
     """
-    ink = ((cover > 0.45 * level) & (rho < 1.03)).astype(np.uint8)
-    n, _, stats, _ = cv2.connectedComponentsWithStats(ink, connectivity=8)
-    if n < 2:
+    pieces = _free_pieces(cover, hidden, sheet, level)
+    if pieces is None:
         return None
-    extent = np.maximum(stats[1:, cv2.CC_STAT_WIDTH], stats[1:, cv2.CC_STAT_HEIGHT])
-    area = stats[1:, cv2.CC_STAT_AREA]
-    dash = (area >= 3) & (extent < 0.25 * outer_px)
-    if dash.sum() < LEAST_PIECES:
-        return None
-    # Typical stroke: the long side of the pieces, weighted by their ink, so that specks do not rule.
-    length = _weighted_median(np.hypot(*stats[1:, 2:4].T)[dash], area[dash])
-    width = float(np.median(area[dash] / np.maximum(extent[dash], 1)))
+    length, width = pieces
     small = cv2.resize(np.clip(cover / level, 0, 1), None, fx=1 / REDUCTION, fy=1 / REDUCTION, interpolation=cv2.INTER_AREA)
     small = (np.clip(small * 1.5, 0, 1) * 255).astype(np.uint8)
-    dotted = length < 2.2 * width
-    keep = 1 if dotted else max(3, round(0.6 * length / REDUCTION))
-    reach = max(3, round((2.6 * width + 2 if dotted else 1.9 * length + width) / REDUCTION))
+    dotted = length < 2.0 * width
+    keep = max(3, round(max(0.6 * length, min(1.7 * width, 0.85 * length)) / REDUCTION))
+    reach = max(3, round((2.6 * width + 2 if dotted else 1.25 * length + width) / REDUCTION))
     out = np.zeros_like(small)
     for k in range(N_DIRECTIONS):
         angle = np.pi * k / N_DIRECTIONS
@@ -44,6 +37,32 @@ def bridge_dashes(cover, rho, outer_px, level):
         np.maximum(out, cv2.morphologyEx(strokes, cv2.MORPH_CLOSE, _line(reach, angle)), out=out)
     bridged = cv2.resize(out, cover.shape[::-1], interpolation=cv2.INTER_LINEAR)
     return bridged.astype(np.float32) / 255
+
+
+def _free_pieces(cover, hidden, sheet, level):
+    """Length and width of the dashes: pieces of ink of one size that touch no hidden place; None without them.
+
+    A solid line cut up by the removed grid ends at hidden places; a dash ends on paper.
+    """
+    ink = ((cover > 0.45 * level) & (sheet.rho < 1.03)).astype(np.uint8)
+    n, piece, stats, middle = cv2.connectedComponentsWithStats(ink, connectivity=8)
+    if n < 1 + LEAST_PIECES:
+        return None
+    touching = cv2.dilate((hidden > 0.3).astype(np.uint8), np.ones((3, 3), np.uint8)) > 0
+    touched = np.bincount(piece[touching], minlength=n)[1:] > 0
+    extent = np.hypot(stats[1:, cv2.CC_STAT_WIDTH], stats[1:, cv2.CC_STAT_HEIGHT])
+    area = stats[1:, cv2.CC_STAT_AREA].astype(float)
+    free = ~touched & (area >= 3) & (extent < 0.3 * sheet.outer_px)
+    if free.sum() < LEAST_PIECES:
+        return None
+    length = _weighted_median(extent[free], area[free])
+    alike = free & (extent > 0.6 * length) & (extent < 1.6 * length)
+    x, y = middle[1:, 0][alike], middle[1:, 1][alike]
+    u, v = sheet.to_plane(x, y)
+    sectors = np.unique((np.degrees(np.arctan2(u, -v)) // 10)[np.hypot(u, v) > 0.15])
+    if alike.sum() < LEAST_PIECES or sectors.size < LEAST_SECTORS:
+        return None
+    return length, float(np.median(area[alike] / np.maximum(extent[alike], 1)))
 
 
 def _weighted_median(values, weights):

@@ -72,7 +72,7 @@ def follow_trace(layer, sheet, grid, *, fill=0.0, pins=()):
     if reference is None:
         return None
     lifted = np.clip((layer.cover - fill) / (1 - fill), 0, 1) if fill else layer.cover
-    bridge = bridge_dashes(lifted, sheet.rho, sheet.outer_px, reference)
+    bridge = bridge_dashes(lifted, layer.hidden, sheet, reference)
     maps = [lifted, layer.hidden] + ([] if bridge is None else [bridge])
     angles, (evidence, hidden, *bridged) = _unwrapped(maps, sheet, grid)
     ink = np.clip((evidence - 0.15 * reference) / (0.5 * reference), 0, 1).astype(np.float32)
