@@ -1,7 +1,7 @@
-"""The lobes and nulls of a pattern: a walk around the circle from the peak that counts a turn only when it is real.
+"""The lobes and nulls of a pattern: a walk around the circle that counts a turn only when it is real.
 
-A dip is a null, and a rise a lobe, when the level moves by more than `LEAST_DB` and by more than the two rows' own
-errors explain: reading noise on a flank makes no lobes.
+A dip is a null, and a rise a lobe, when the level moves by more than `LEAST_DB` and by more than the two
+rows' own errors explain: reading noise on a flank makes no lobes.
 """
 
 from dataclasses import dataclass
@@ -18,7 +18,8 @@ LEAST_DB = 1.0  # rise from a null to a lobe that counts; common practice, no so
 class Lobes:
     """Rows of nulls and lobes, counted from the peak's row.
 
-    right : rows (> 0) met while bearings grow, null, lobe, null ... ; left : the same while bearings fall (< 0)
+    right : rows (> 0) met while bearings grow: null, lobe, null ...
+    left : the same while bearings fall (< 0)
     closed : the walk came round; left and right then name the same rows
     """
 
@@ -63,7 +64,8 @@ def find_lobes(levels_db, error95_db):
     right = _walk(levels[:first], errors[:first])
     back = [0, *range(n - 1, last, -1)]
     left = [-row for row in _walk([levels[k] for k in back], [errors[k] for k in back])]
-    return Lobes(right=tuple(_beyond_half_power(right, levels)), left=tuple(_beyond_half_power(left, levels)), closed=False)
+    right, left = (tuple(_beyond_half_power(turns, levels)) for turns in (right, left))
+    return Lobes(right=right, left=left, closed=False)
 
 
 def _walk(levels, errors):

@@ -1,18 +1,19 @@
 """Measures on many tables at once: peak, crossings, tops and bottoms between rows.
 
-Every function takes levels of shape (m, n), dB, m tables of n rows around the circle (the table as read and draws from
-its errors), and gives m results, NaN where a table has none. Positions are in rows.
+Every function takes levels of shape (m, n), dB, m tables of n rows around the circle (the table as read and
+draws from its errors), and gives m results, NaN where a table has none. Positions are in rows.
 
-Between rows a curve is followed by a polynomial: a peak by the least-squares quartic through its top, so that one
-noisy row does not make the peak; a crossing by the cubic through the four rows about it; a null by the parabola of
-power through three rows, which is exact for a field that passes zero evenly, whether the null is filled or not.
+Between rows a curve is followed by a polynomial: a peak by the least-squares quartic through its top, so that
+one noisy row does not make the peak; a crossing by the cubic through the four rows about it; a null by the
+parabola of power through three rows, which is exact for a field that passes zero evenly, whether the null is
+filled or not.
 """
 
 import numpy as np
 
 __all__ = ["bottom_place", "crossing", "level_at", "main_peak", "top"]
 
-TOP_DB = 0.6  # rows within this of the largest are the top of a lobe; a quartic follows any lobe so far within 0.01 dB
+TOP_DB = 0.6  # rows within this of the largest are a lobe's top; a quartic follows it within 0.01 dB
 TOP_DEG = 15.0  # but no wider on either side
 FINE = 161  # points that the quartic is evaluated at
 NEAR_TOP_DB = 0.01  # the peak stands at the middle of what is so near to the largest value
@@ -43,7 +44,7 @@ def main_peak(levels, row, step_deg):
 
 
 def crossing(levels, row, threshold, way):
-    """Rows from `row` to the first place where the level falls to `threshold` (m,), going up (1) or down (-1)."""
+    """Rows from `row` to the first place where the level falls to `threshold` (m,), up (1) or down (-1)."""
     m, n = levels.shape
     order = (row + way * np.arange(n)) % n
     below = ~(levels[:, order] > threshold[:, None])  # a row without a value stops the search too
@@ -69,7 +70,7 @@ def level_at(levels, place):
 
 
 def top(levels, rows):
-    """Largest level (dB) among contiguous rows, and its place in rows; a parabola gives what lies between rows."""
+    """Largest level (dB) among contiguous rows, and its place in rows, between rows by a parabola."""
     part = levels[:, rows % levels.shape[1]]
     j = np.argmax(np.where(np.isnan(part), -np.inf, part), axis=1)
     shift, rise = _vertex(levels, rows[0] + j)
@@ -77,12 +78,12 @@ def top(levels, rows):
 
 
 def bottom_place(levels, rows):
-    """Place (rows) of the smallest level among contiguous rows, and what two ways to find it differ by at the first.
+    """Place (rows) of the smallest level among contiguous rows, and by how much two ways to find it differ.
 
-    The place is the vertex of the parabola of power; the other way takes the field for a straight line that passes
-    zero between the lowest row and the lower one of its neighbours.
+    The place is the vertex of the parabola of power; the other way, tried at the first table, takes the field
+    for a straight line that passes zero between the lowest row and the lower one of its neighbours.
     """
-    m, n = levels.shape
+    n = levels.shape[1]
     part = levels[:, rows % n]
     j = rows[0] + np.argmin(np.where(np.isnan(part), np.inf, part), axis=1)
     shift, _ = _vertex(levels, j, of_power=True)
