@@ -1,10 +1,13 @@
 """One chart plane for all rings and spokes: robust non-linear least squares with an honest covariance.
 
 The unknowns are the centre, the scale, the turn, a symmetric stretch (its angle is free), a mild perspective and the
-radii of all rings but the outermost. Ring points are compared along the radius, spoke points across it, both in px.
+radii of all rings but the first. Ring points are compared along the radius, spoke points across it, both in px.
 Simple models come first; stretch and perspective stay only when they lower the residual more than noise would.
 Weights are Tukey's (Huber & Ronchetti 2009); the covariance is the cluster-robust one (Liang & Zeger 1986), because
 neighbouring points of one line share the renderer's snapping and are not independent.
+
+With A the affine part, c the centre and t the tilt, the plane point w lies at x = c + A w / (1 + t.w), so
+y = A^-1 (x - c) and w = y / (1 - t.y): every derivative below follows from these two lines.
 """
 
 from dataclasses import dataclass
@@ -18,8 +21,15 @@ CX, CY, SIZE, TURN, STRETCH_A, STRETCH_B, TILT_X, TILT_Y = range(8)
 N_PLANE = 8
 TUKEY = 4.685
 MIN_SIGMA_PX = 0.02  # floor of a line's scatter: no line weighs without limit
-SYSTEMATIC_PX = 0.012  # of a renderer's sub-pixel offset, common to all lines
+SYSTEMATIC_PX = 0.03  # of renderers: curves flattened to chords, lines snapped; measured on drawn charts
 CLUSTER_DEG = 15.0
+CLUSTER_RHO = 0.25
+MAX_ROUNDS = 10
+SIGMA_ROUNDS = 5  # the scatter of the lines is held fixed after these, so that the iteration settles
+# standard deviation of the plane's parameters about their first values: wide, to hold what few points leave open
+LOOSE = np.array([8.0, 8.0, 0.1, 0.2, 0.12, 0.12, 0.06, 0.06])
+LOOSE_RHO = 0.05
+MIN_GAIN = 12.0  # of a richer model, in units of the clusters' variance
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -28,7 +38,7 @@ class PlaneFit:
 
     parameters : (8,) of the plane; homography : (3, 3), last entry 1; covariance : (8, 8) of its first eight entries
     ring_rho, ring_rho_u : (n,); turn_u : standard uncertainty of the turn, radians
-    residual_px : robust rms of the points that count; ring_sigma_px, spoke_sigma_px : (n,), (m,) scatter of each line
+    residual_px : rms of the points that count; ring_sigma_px, spoke_sigma_px : (n,), (m,) scatter of each line
     """
 
     parameters: np.ndarray
@@ -42,47 +52,71 @@ class PlaneFit:
     spoke_sigma_px: np.ndarray
 
 
+def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True):
+    """Fit the chart plane to measured lines.
+
+    Parameters
+    ----------
+    rings, spokes : lists of LinePoints; the radius of the first ring is the unit that stays
+    spoke_deg : (m,) plane angles that the spokes must have
+    start : (8,) plane parameters; ring_rho : (n,) first radii
+    tilt : whether a perspective may be tried
+
+    Returns
+    -------
+    PlaneFit
+    """
+    points = _Points(rings, spokes, spoke_deg)
+    begin = np.array(start, float)
+    if not len(spokes):
+        begin[TURN] = 0
+    rho = np.array(ring_rho, float)
+    free = [CX, CY, SIZE] + ([TURN] if len(spokes) else [])
+    model = [*free, STRETCH_A, STRETCH_B]
+    level = begin.copy()
+    level[[TILT_X, TILT_Y]] = 0
+    best = _iterate(points, level, rho, model)
+    plain = best.plane.copy()
+    plain[[STRETCH_A, STRETCH_B]] = 0
+    simple = _iterate(points, plain, best.rho, free)
+    if not _better(best, simple, points):
+        best = simple
+    if tilt and len(rings) > 1:
+        tilted = _iterate(points, best.plane, best.rho, [*model, TILT_X, TILT_Y])
+        if _better(tilted, best, points):
+            best = tilted
+    return _finish(points, best)
+
+
 def homography_of(parameters):
     """Homography of plane parameters: stretch times turn times scale, then perspective, about the centre."""
-    cx, cy, size, turn, a, b, tilt_x, tilt_y = parameters
-    r = np.hypot(a, b)
-    # exponential of the symmetric, traceless matrix [[a, b], [b, -a]]
-    sinh = np.sinh(r) / r if r > 1e-12 else 1.0
-    stretch = np.cosh(r) * np.eye(2) + sinh * np.array([[a, b], [b, -a]])
-    rotate = np.array([[np.cos(turn), -np.sin(turn)], [np.sin(turn), np.cos(turn)]])
-    affine = np.exp(size) * stretch @ rotate
+    cx, cy, _, _, _, _, tilt_x, tilt_y = parameters
     h = np.eye(3)
-    h[:2, :2] = affine + np.outer([cx, cy], [tilt_x, tilt_y])
+    h[:2, :2] = _affine_of(parameters) + np.outer([cx, cy], [tilt_x, tilt_y])
     h[:2, 2] = cx, cy
     h[2, :2] = tilt_x, tilt_y
     return h
 
 
 def parameters_of(homography):
-    """Plane parameters of a homography whose last entry is 1."""
-    h = homography / homography[2, 2]
-    centre, tilt = h[:2, 2], h[2, :2]
-    affine = h[:2, :2] - np.outer(centre, tilt)
-    u, s, vt = np.linalg.svd(affine)
+    """Plane parameters of a homography whose last entry is 1 (the inverse of `homography_of`)."""
+    centre, tilt = homography[:2, 2], homography[2, :2]
+    u, s, vt = np.linalg.svd(homography[:2, :2] - np.outer(centre, tilt))
     rotate = u @ vt
-    log_stretch = u @ np.diag(np.log(s)) @ u.T
-    size = 0.5 * np.trace(log_stretch)
-    return np.array(
-        [
-            *centre,
-            size,
-            np.arctan2(rotate[1, 0], rotate[0, 0]),
-            0.5 * (log_stretch[0, 0] - log_stretch[1, 1]),
-            log_stretch[0, 1],
-            *tilt,
-        ]
-    )
+    stretch = u @ np.diag(np.log(s)) @ u.T
+    size = 0.5 * np.trace(stretch)
+    turn = np.arctan2(rotate[1, 0], rotate[0, 0])
+    return np.array([*centre, size, turn, 0.5 * (stretch[0, 0] - stretch[1, 1]), stretch[0, 1], *tilt])
 
 
-def _plane_uv(parameters, x, y):
-    h = np.linalg.inv(homography_of(parameters))
-    w = h[2, 0] * x + h[2, 1] * y + h[2, 2]
-    return (h[0, 0] * x + h[0, 1] * y + h[0, 2]) / w, (h[1, 0] * x + h[1, 1] * y + h[1, 2]) / w
+def _affine_of(parameters):
+    """(2, 2) affine part: exp(size) exp([[a, b], [b, -a]]) rotation(turn)."""
+    _, _, size, turn, a, b, _, _ = parameters
+    r = np.hypot(a, b)
+    sinh = np.sinh(r) / r if r > 1e-12 else 1.0
+    stretch = np.cosh(r) * np.eye(2) + sinh * np.array([[a, b], [b, -a]])
+    rotate = np.array([[np.cos(turn), -np.sin(turn)], [np.sin(turn), np.cos(turn)]])
+    return np.exp(size) * stretch @ rotate
 
 
 class _Points:
@@ -91,159 +125,154 @@ class _Points:
     def __init__(self, rings, spokes, spoke_deg):
         lists = [*rings, *spokes]
         self.line = np.concatenate([np.full(int(p.good.sum()), k) for k, p in enumerate(lists)])
-        self.x = np.concatenate([p.x[p.good] for p in lists])
-        self.y = np.concatenate([p.y[p.good] for p in lists])
+        self.xy = np.stack([np.concatenate([getattr(p, name)[p.good] for p in lists]) for name in "xy"])
         at = np.concatenate([p.at[p.good] for p in lists])
         self.n_rings, self.n_lines = len(rings), len(lists)
         self.is_ring = self.line < self.n_rings
-        angle = np.radians(np.asarray(spoke_deg, float)) if len(spoke_deg) else np.zeros(0)
-        self.angle = np.r_[np.zeros(self.n_rings), angle][self.line]
-        block = np.where(self.is_ring, np.floor(at / CLUSTER_DEG), np.floor(at * 4))
-        self.cluster = np.unique(self.line * 1000 + block.astype(int), return_inverse=True)[1]
+        angle = np.r_[np.zeros(self.n_rings), np.radians(np.asarray(spoke_deg, float))][self.line]
+        self.across = np.stack([np.cos(angle), np.sin(angle)])
+        block = np.where(self.is_ring, at / CLUSTER_DEG, at / CLUSTER_RHO).astype(np.int64)
+        self.cluster = np.unique(self.line * 1000 + block, return_inverse=True)[1]
+        self.n_clusters = int(self.cluster.max(initial=-1)) + 1
 
-    def residual(self, plane, rho):
-        """Signed distances in px, along the radius (rings) or across it (spokes)."""
-        u, v = _plane_uv(plane, self.x, self.y)
-        r = np.hypot(u, v)
+    def equations(self, plane, rho):
+        """Residuals (n,) in px and their derivatives (n, 8) to the plane's parameters."""
+        affine = _affine_of(plane)
+        inverse = np.linalg.inv(affine)
+        tilt = plane[[TILT_X, TILT_Y]]
+        y = inverse @ (self.xy - plane[[CX, CY]][:, None])
+        shrink = 1 / (1 - tilt @ y)
+        w = y * shrink
+        r = np.hypot(*w)
         px = np.exp(plane[SIZE])
-        ring = r - np.r_[rho, np.zeros(self.n_lines - self.n_rings)][self.line]
-        across = u * np.cos(self.angle) + v * np.sin(self.angle)
-        return px * np.where(self.is_ring, ring, across)
+        target = np.r_[rho, np.zeros(self.n_lines - self.n_rings)][self.line]
+        residual = px * np.where(self.is_ring, r - target, (w * self.across).sum(axis=0))
+        # direction in the plane along which the residual is measured, carried back to y
+        way = np.where(self.is_ring, w / np.maximum(r, 1e-9), self.across)
+        back = way * shrink + np.outer(tilt, (way * w).sum(axis=0) * shrink)
+        jac = np.empty((len(r), N_PLANE))
+        jac[:, [CX, CY]] = -px * (inverse.T @ back).T
+        for k in (SIZE, TURN, STRETCH_A, STRETCH_B):
+            change = np.zeros(N_PLANE)
+            change[k] = 1e-6
+            slope = inverse @ (_affine_of(plane + change) - _affine_of(plane - change)) / 2e-6
+            jac[:, k] = -px * (back * (slope @ y)).sum(axis=0)
+        along = (way * w).sum(axis=0)
+        jac[:, TILT_X], jac[:, TILT_Y] = px * along * w[0], px * along * w[1]
+        jac[:, SIZE] += residual
+        return residual, jac
 
 
-def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, allow_stretch=True, allow_tilt=True):
-    """Fit the chart plane to measured lines.
+@dataclass(eq=False)
+class _State:
+    """Where an iteration ended."""
 
-    Parameters
-    ----------
-    rings, spokes : lists of LinePoints; the first ring is the outermost
-    spoke_deg : (m,) plane angles that the spokes must have
-    start : (8,) plane parameters; ring_rho : (n,) first radii
-    allow_stretch, allow_tilt : whether these models may be tried
-
-    Returns
-    -------
-    PlaneFit
-    """
-    points = _Points(rings, spokes, spoke_deg)
-    plane = np.array(start, float)
-    plane[[TILT_X, TILT_Y]] = 0
-    rho = np.array(ring_rho, float)
-    free = [CX, CY, SIZE] + ([TURN] if len(spokes) else [])
-    best = None
-    models = [free]
-    if allow_stretch:
-        models.append([*free, STRETCH_A, STRETCH_B])
-    if allow_tilt and len(rings) > 1 and allow_stretch:
-        models.append([*free, STRETCH_A, STRETCH_B, TILT_X, TILT_Y])
-    first = plane.copy()
-    for model in models:
-        begin = first.copy()
-        held = [k for k in range(N_PLANE) if k not in model and k not in (TURN,)]
-        begin[held] = 0
-        if not len(spokes):
-            begin[TURN] = 0
-        result = _iterate(points, begin, rho, model)
-        if best is None or _better(result, best, points):
-            best = result
-    return _finish(points, best)
+    plane: np.ndarray
+    rho: np.ndarray
+    model: list
+    residual: np.ndarray
+    weight: np.ndarray
+    sigma: np.ndarray
+    jac: np.ndarray
+    normal: np.ndarray
 
 
 def _iterate(points, plane, rho, model):
-    """Tukey-weighted Gauss-Newton; returns (plane, rho, model, residual, weight, sigma, jacobian)."""
+    """Tukey-weighted Gauss-Newton for the parameters named by `model` and the radii of all rings but the first."""
+    first_plane, first_rho = plane, rho
     plane, rho = plane.copy(), rho.copy()
-    sigma = None
-    for round_ in range(12):
-        residual = points.residual(plane, rho)
-        sigma = _line_sigma(points, residual)
+    hold = np.r_[LOOSE[model], np.full(points.n_rings - 1, LOOSE_RHO)] ** -2
+    for round_ in range(MAX_ROUNDS):
+        residual, jac = points.equations(plane, rho)
+        if round_ < SIGMA_ROUNDS:
+            sigma = _line_sigma(points, residual)
         scaled = residual / (TUKEY * sigma[points.line])
         weight = np.where(np.abs(scaled) < 1, (1 - scaled**2) ** 2, 0) / sigma[points.line] ** 2
-        jac = _jacobian(points, plane, rho, model)
-        normal = (jac * weight[:, None]).T @ jac
-        gradient = (jac * weight[:, None]).T @ residual
+        full = _with_radii(points, jac[:, model], np.exp(plane[SIZE]))
+        weighted = full * weight[:, None]
+        normal = weighted.T @ full + np.diag(hold)
+        pull = np.r_[plane[model] - first_plane[model], rho[1:] - first_rho[1:]] * hold
         scale = np.sqrt(np.maximum(np.diag(normal), 1e-12))
-        step = -np.linalg.solve(normal / np.outer(scale, scale) + 1e-10 * np.eye(len(scale)), gradient / scale) / scale
+        unit = normal / np.outer(scale, scale) + 1e-9 * np.eye(len(scale))
+        step = -np.linalg.solve(unit, (weighted.T @ residual + pull) / scale) / scale
         plane[model] += step[: len(model)]
         rho[1:] += step[len(model) :]
-        if round_ > 4 and np.abs(step[:2]).max() < 1e-4:
+        if round_ >= 2 and np.abs(step[:2]).max() < 3e-4:
             break
-    return plane, rho, model, residual, weight, sigma, jac
+    return _State(plane, rho, model, residual, weight, sigma, full, normal)
+
+
+def _with_radii(points, jac, px):
+    """Append the derivatives to the radii of all rings but the first."""
+    n = len(jac)
+    full = np.zeros((n, jac.shape[1] + points.n_rings - 1))
+    full[:, : jac.shape[1]] = jac
+    own = points.is_ring & (points.line > 0)
+    full[np.flatnonzero(own), jac.shape[1] - 1 + points.line[own]] = -px
+    return full
 
 
 def _line_sigma(points, residual):
     """Robust scatter of each line about the model (n_lines,), px."""
-    sigma = np.empty(points.n_lines)
-    for k in range(points.n_lines):
-        own = residual[points.line == k]
-        sigma[k] = 1.4826 * np.median(np.abs(own)) if len(own) > 5 else 1.0
+    sigma = np.ones(points.n_lines)
+    edges = np.searchsorted(points.line, np.arange(points.n_lines + 1))
+    size = np.abs(residual)
+    for k, (first, last) in enumerate(zip(edges[:-1], edges[1:])):
+        if last - first > 5:
+            middle = (last - first) // 2
+            sigma[k] = 1.4826 * np.partition(size[first:last], middle)[middle]
     return np.maximum(sigma, MIN_SIGMA_PX)
 
 
-def _jacobian(points, plane, rho, model):
-    """Derivatives of the residuals: plane parameters of the model, then radii of all rings but the first."""
-    columns = []
-    step = np.array([1e-3, 1e-3, 1e-6, 1e-6, 1e-6, 1e-6, 1e-7, 1e-7])
-    for k in model:
-        up, down = plane.copy(), plane.copy()
-        up[k] += step[k]
-        down[k] -= step[k]
-        columns.append((points.residual(up, rho) - points.residual(down, rho)) / (2 * step[k]))
-    px = np.exp(plane[SIZE])
-    for k in range(1, points.n_rings):
-        columns.append(np.where(points.line == k, -px, 0.0))
-    return np.stack(columns, axis=1)
+def _better(rich, plain, points):
+    """Whether a richer model earns its parameters, judged by the mean residuals of the clusters."""
+    weight = np.maximum(rich.weight, 1e-12)
+    total = np.bincount(points.cluster, weight)
+    mean = [np.bincount(points.cluster, weight * s.residual) / total for s in (rich, plain)]
+    first = np.r_[True, np.diff(points.cluster) > 0] if points.n_clusters else np.zeros(0, bool)
+    line = np.zeros(points.n_clusters, int)
+    line[points.cluster[first]] = points.line[first]
+    spread = np.ones(points.n_clusters)
+    for k in range(points.n_lines):
+        own = line == k
+        if own.any():
+            spread[own] = max(1.4826 * np.median(np.abs(mean[0][own])), MIN_SIGMA_PX)
+    cost = [np.sum(np.minimum((m / spread) ** 2, TUKEY**2)) for m in mean]
+    return cost[1] - cost[0] > MIN_GAIN
 
 
-def _better(new, old, points):
-    """Whether a richer model earns its parameters: an F-like test with one count a cluster, not a point."""
-    cost = []
-    sigma = np.maximum(new[5], MIN_SIGMA_PX)[points.line]
-    for result in (old, new):
-        cost.append(np.minimum((result[3] / sigma) ** 2, TUKEY**2))
-    n = points.cluster.max() + 1
-    size = np.bincount(points.cluster)
-    gain = np.bincount(points.cluster, (cost[0] - cost[1]))
-    gain = float(np.sum(gain / np.sqrt(size)))
-    return gain > 14.0 + 0.0 * n
-
-
-def _finish(points, result):
+def _finish(points, state):
     """Covariances and scatter of the chosen model."""
-    plane, rho, model, residual, weight, sigma, jac = result
-    normal = (jac * weight[:, None]).T @ jac
-    scale = np.sqrt(np.maximum(np.diag(normal), 1e-12))
-    inverse = np.linalg.inv(normal / np.outer(scale, scale) + 1e-10 * np.eye(len(scale))) / np.outer(scale, scale)
-    n_clusters = int(points.cluster.max()) + 1
-    push = np.stack([np.bincount(points.cluster, g, minlength=n_clusters) for g in (jac * (weight * residual)[:, None]).T])
-    spread = push @ push.T * n_clusters / max(n_clusters - len(scale), 1)
+    plane, jac, n_model = state.plane, state.jac, len(state.model)
+    scale = np.sqrt(np.maximum(np.diag(state.normal), 1e-12))
+    outer = np.outer(scale, scale)
+    inverse = np.linalg.inv(state.normal / outer + 1e-9 * np.eye(len(scale))) / outer
+    scores = jac * (state.weight * state.residual)[:, None]
+    push = np.zeros((points.n_clusters, jac.shape[1]))
+    np.add.at(push, points.cluster, scores)
+    spread = push.T @ push * points.n_clusters / max(points.n_clusters - len(scale), 1)
     full = inverse @ spread @ inverse
-    n_model = len(model)
     cov = np.zeros((N_PLANE, N_PLANE))
-    cov[np.ix_(model, model)] = full[:n_model, :n_model]
-    cov[CX, CX] += SYSTEMATIC_PX**2
-    cov[CY, CY] += SYSTEMATIC_PX**2
+    cov[np.ix_(state.model, state.model)] = full[:n_model, :n_model]
     px = np.exp(plane[SIZE])
-    cov[SIZE, SIZE] += (SYSTEMATIC_PX / px) ** 2
-    h = homography_of(plane)
-    rows = []
-    step = np.array([1e-3, 1e-3, 1e-6, 1e-6, 1e-6, 1e-6, 1e-8, 1e-8])
+    for k, floor in ((CX, SYSTEMATIC_PX / 2), (CY, SYSTEMATIC_PX / 2), (SIZE, SYSTEMATIC_PX / px)):
+        cov[k, k] += floor**2
+    to_h = np.empty((8, N_PLANE))
     for k in range(N_PLANE):
-        up, down = plane.copy(), plane.copy()
-        up[k] += step[k]
-        down[k] -= step[k]
-        rows.append((homography_of(up) - homography_of(down)).ravel()[:8] / (2 * step[k]))
-    to_h = np.array(rows).T
-    used = weight > 0
+        change = np.zeros(N_PLANE)
+        change[k] = 1e-4 if k in (CX, CY) else 1e-6
+        to_h[:, k] = (homography_of(plane + change) - homography_of(plane - change)).ravel()[:8] / (2 * change[k])
     rho_u = np.zeros(points.n_rings)
     rho_u[1:] = np.sqrt(np.maximum(np.diag(full)[n_model:], 0) + (SYSTEMATIC_PX / px) ** 2)
+    used = state.weight > 0
     return PlaneFit(
         parameters=plane,
-        homography=h,
+        homography=homography_of(plane),
         covariance=to_h @ cov @ to_h.T,
-        ring_rho=rho,
+        ring_rho=state.rho,
         ring_rho_u=rho_u,
         turn_u=float(np.sqrt(cov[TURN, TURN])),
-        residual_px=float(np.sqrt(np.mean(residual[used] ** 2))) if used.any() else float("nan"),
-        ring_sigma_px=sigma[: points.n_rings],
-        spoke_sigma_px=sigma[points.n_rings :],
+        residual_px=float(np.sqrt(np.mean(state.residual[used] ** 2))) if used.any() else float("nan"),
+        ring_sigma_px=state.sigma[: points.n_rings],
+        spoke_sigma_px=state.sigma[points.n_rings :],
     )

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ._unwrap import apply_homography, sample
+from ._unwrap import apply_homography, outer_radius, sample
 
 __all__ = ["LinePoints", "ring_points", "spoke_points"]
 
@@ -22,7 +22,7 @@ class LinePoints:
 
     x, y : (n,) picture px; at : (n,) plane angle in degrees (ring) or rho (spoke) of each cut
     good : (n,) undisturbed; offset_px : (n,) from where the line was looked for
-    contrast : (n,) grey levels, positive; sign : 1 darker than the surroundings, -1 lighter
+    ink : (n, m) float32, the cuts themselves above their surroundings; contrast : (n,) grey levels, positive; sign : 1 darker than the surroundings, -1 lighter
     drawn : share of the cuts that are inked; width_px : of the line
     """
 
@@ -31,20 +31,21 @@ class LinePoints:
     at: np.ndarray
     good: np.ndarray
     offset_px: np.ndarray
+    ink: np.ndarray
     contrast: np.ndarray
     sign: float
     drawn: float
     width_px: float
 
 
-def ring_points(image, homography, rho, *, arc_deg=(0.0, 360.0), reach_px=4.0, sign=None, width_px=None):
+def ring_points(image, homography, rho, *, arc_deg=(0.0, 360.0), reach_px=4.0, sign=None, width_px=None, n_max=300):
     """Cut across the ring of radius rho every few pixels of arc, as `LinePoints`.
 
     image : (h, w) float32 grey; reach_px : half length of a cut; sign : polarity when known; width_px when known
     """
-    outer_px = float(np.sqrt(abs(np.linalg.det(homography[:2, :2]))))
+    outer_px = outer_radius(homography)
     span = (arc_deg[1] - arc_deg[0]) % 360 or 360.0
-    n = int(np.clip(2 * np.pi * rho * outer_px * span / 360 / 2.0, 48, 480))
+    n = int(np.clip(2 * np.pi * rho * outer_px * span / 360 / 2.0, 48, n_max))
     angle = arc_deg[0] + (np.arange(n) + 0.5) * span / n
     phi = np.radians(angle)
     x0, y0 = apply_homography(homography, rho * np.sin(phi), -rho * np.cos(phi))
@@ -59,8 +60,8 @@ def ring_points(image, homography, rho, *, arc_deg=(0.0, 360.0), reach_px=4.0, s
 
 def spoke_points(image, homography, plane_deg, rho_from, rho_to, *, reach_px=4.0, sign=None, width_px=None):
     """Cut across the spoke at a plane angle every few pixels of radius, as `LinePoints`."""
-    outer_px = float(np.sqrt(abs(np.linalg.det(homography[:2, :2]))))
-    n = int(np.clip((rho_to - rho_from) * outer_px / 2.0, 12, 200))
+    outer_px = outer_radius(homography)
+    n = int(np.clip((rho_to - rho_from) * outer_px / 3.0, 12, 60))
     rho = rho_from + (np.arange(n) + 0.5) * (rho_to - rho_from) / n
     phi = np.radians(plane_deg)
     x0, y0 = apply_homography(homography, rho * np.sin(phi), -rho * np.cos(phi))
@@ -89,7 +90,8 @@ def _cut(image, x0, y0, nx, ny, at, reach_px, sign, width_px, *, bow_px):
     middle = np.abs(s) <= max(1.0, 0.35 * reach_px)
     if sign is None:
         sign = 1.0 if np.median(ink[:, middle].mean(axis=1)) + 1e-3 * ink[:, middle].mean() >= 0 else -1.0
-    ink = np.maximum(sign * ink, 0)
+    raw = sign * ink
+    ink = np.maximum(raw, 0)
     contrast = ink[:, middle].max(axis=1)
     strong = contrast[contrast > 0.25 * np.percentile(contrast, 90)] if len(contrast) else contrast
     usual = float(np.median(strong)) if len(strong) else 0.0
@@ -115,6 +117,7 @@ def _cut(image, x0, y0, nx, ny, at, reach_px, sign, width_px, *, bow_px):
         at=at,
         good=good,
         offset_px=centre,
+        ink=raw.astype(np.float32),
         contrast=contrast,
         sign=float(sign),
         drawn=share,

@@ -10,9 +10,10 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-from ._unwrap import unwrap
+from ._ring_fit import homography_of, parameters_of
+from ._unwrap import outer_radius, unwrap
 
-__all__ = ["RingProfile", "drawn_arc", "ring_profile"]
+__all__ = ["RingProfile", "centre_profile", "drawn_arc", "ring_profile"]
 
 N_BLOCKS = 72
 STEP_PX = 0.5
@@ -66,7 +67,7 @@ class RingProfile:
 
 def ring_profile(image, homography, *, reach=1.25, inner_px=5.0):
     """Measure line contrast about the centre of a chart plane on a float32 picture, as a `RingProfile`."""
-    outer_px = float(np.sqrt(abs(np.linalg.det(homography[:2, :2]))))
+    outer_px = outer_radius(homography)
     per_block = int(np.clip(round(2 * np.pi * outer_px / N_BLOCKS / 2.5), 4, 10))
     angle = np.arange(N_BLOCKS * per_block) * (360.0 / (N_BLOCKS * per_block))
     rho = np.arange(0, reach * outer_px, STEP_PX) / outer_px
@@ -116,3 +117,45 @@ def drawn_arc(profile, rho, sign):
     mask = np.ones(N_BLOCKS, bool)
     mask[(best_start + np.arange(best_length)) % N_BLOCKS] = False
     return mask, np.array([((best_start + best_length) * width) % 360, (best_start * width) % 360])
+
+
+def centre_profile(image, homography, *, reach_px=7.0, rounds=3):
+    """Shift and stretch a homography until the sectors' profiles agree; returns the improved homography.
+
+    Every sector is slid along the radius to fit the mean of all (all rings at once); its slide is the share of a
+    shift of the centre and of a stretch in its direction.
+    """
+    parameters = parameters_of(homography)
+    phi = np.radians((np.arange(N_BLOCKS) + 0.5) * 360.0 / N_BLOCKS)
+    lags = np.arange(-round(reach_px / STEP_PX), round(reach_px / STEP_PX) + 1)
+    for _ in range(rounds):
+        profile = ring_profile(image, homography_of(parameters), reach=1.1)
+        cap = max(float(np.abs(profile.answer.mean(axis=0)).max()), profile.floor)
+        lines = np.clip(profile.answer, -cap, cap)
+        mean = lines.mean(axis=0)
+        n = len(mean)
+        slid = np.zeros((len(lags), n), np.float32)
+        for row, lag in zip(slid, lags):
+            row[max(lag, 0) : n + min(lag, 0)] = mean[max(-lag, 0) : n - max(lag, 0)]
+        match = lines @ slid.T
+        best = np.clip(np.argmax(match, axis=1), 1, len(lags) - 2)
+        rows = np.arange(N_BLOCKS)
+        left, mid, right = match[rows, best - 1], match[rows, best], match[rows, best + 1]
+        bend = np.minimum(left - 2 * mid + right, -1e-9)
+        slide = (lags[best] + np.clip(0.5 * (left - right) / bend, -0.5, 0.5)) * STEP_PX
+        strength = np.maximum(mid - np.median(match, axis=1), 0)
+        strength = np.minimum(strength / max(float(np.percentile(strength, 80)), 1e-9), 1) ** 2
+        radius = float(np.sum(np.abs(mean) * profile.rho) / max(np.sum(np.abs(mean)), 1e-9)) * np.exp(parameters[2])
+        basis = np.stack([np.sin(phi), -np.cos(phi), -radius * np.cos(2 * phi), -radius * np.sin(2 * phi), 1 + 0 * phi])
+        change, spread, hold = np.zeros(5), reach_px, np.array([1e-4, 1e-4, 0.1, 0.1, 1e-4])
+        for _ in range(4):
+            miss = slide - change @ basis
+            weight = strength / (1 + (miss / spread) ** 2) ** 2
+            # a half chart leaves the stretch open: hold it as if a tenth of the sectors spoke for none
+            normal = (basis * weight) @ basis.T + np.diag(hold * (basis**2).sum(axis=1))
+            change = np.linalg.solve(normal, (basis * weight) @ slide)
+            spread = max(0.5, 1.5 * float(np.median(np.abs(slide - change @ basis))))
+        parameters[[0, 1, 4, 5]] += change[:4]
+        if np.abs(change[:2]).max() < 0.15:
+            break
+    return homography_of(parameters)

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-from ._unwrap import unwrap
+from ._unwrap import outer_radius, unwrap
 
 __all__ = ["Spokes", "find_spokes"]
 
@@ -63,7 +63,7 @@ def find_spokes(image, homography, *, arc_deg):
 
 def _angle_profile(image, homography):
     """(N_ANGLES,) mean vote of the radial parts: 1 a dark line all the way, -1 a light one."""
-    outer_px = float(np.sqrt(abs(np.linalg.det(homography[:2, :2]))))
+    outer_px = outer_radius(homography)
     rho = INNER + (np.arange(N_PARTS * PER_PART) + 0.5) * (OUTER - INNER) / (N_PARTS * PER_PART)
     angle = np.arange(N_ANGLES) * 360.0 / N_ANGLES
     polar = unwrap(image, homography, angle, rho)

@@ -10,11 +10,13 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
+from ._ring_choice import choose_rings
 from ._ring_fit import fit_plane, homography_of, parameters_of
 from ._ring_points import ring_points, spoke_points
-from ._ring_profile import drawn_arc, ring_profile
+from ._ring_profile import centre_profile, drawn_arc, ring_profile
 from ._ring_votes import find_edges, fit_hub
 from ._spokes import find_spokes
+from ._unwrap import outer_radius
 from .exceptions import NotReadError
 from .frozen import lock_arrays
 from .review import reason
@@ -23,7 +25,7 @@ __all__ = ["Grid", "find_grid"]
 
 WORK_OUTER_PX = 320.0  # rings are looked for on a picture reduced to this outer radius
 HUB_PIXELS = 0.12e6  # and the first centre on one of this many px
-STRONG, WEAK = 0.5, 0.22  # mean vote of the sectors for a ring
+STRONG, WEAK = 0.4, 0.15  # mean vote of the sectors for a ring
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -109,17 +111,21 @@ def find_grid(picture, box):
     if plane is None:
         raise _no_grid(picture)
     plane = np.linalg.inv(to_full) @ plane
-    plane = _align(work, plane / plane[2, 2])
+    plane = centre_profile(work, plane / plane[2, 2])
+    plane = _align(work, plane)
     if plane is None:
         raise _no_grid(picture)
     profile = ring_profile(work, plane)
-    rho, sign, arc = _list_rings(profile, plane)
-    if not len(rho):
-        raise _no_grid(picture)
+    rho, score, _ = profile.peaks(STRONG)
+    blocks, arc = drawn_arc(profile, rho, np.sign(score))
+    rho, score, _ = profile.peaks(WEAK, blocks)
     full = gray8.astype(np.float32)
-    plane = _rescale(to_full @ plane, rho[0])
-    rho = rho / rho[0]
-    return _measure(full, plane, rho, sign, arc, (box.x, box.y))
+    plane = to_full @ plane
+    plane /= plane[2, 2]
+    rings = choose_rings(full, plane, rho, score, arc_deg=arc)
+    if not rings:
+        raise _no_grid(picture)
+    return _measure(full, plane, rings, arc, (box.x, box.y))
 
 
 def _no_grid(picture):
@@ -134,12 +140,6 @@ def _no_grid(picture):
 def _zoom_matrix(factor):
     """Scaling of pixel coordinates whose centres are at integers."""
     return np.array([[factor, 0, 0.5 * factor - 0.5], [0, factor, 0.5 * factor - 0.5], [0, 0, 1]])
-
-
-def _rescale(homography, rho):
-    """The homography whose radius 1 is the old one's rho."""
-    h = homography @ np.diag([rho, rho, 1.0])
-    return h / h[2, 2]
 
 
 def _reduce(gray8, outer_px):
@@ -174,34 +174,21 @@ def _first_plane(gray8, box):
 
 def _align(work, plane):
     """Bring the strong rings into line on the reduced picture; None when there are none."""
-    for reach_px in (6.0, 3.5):
-        rho, score, level = ring_profile(work, plane, reach=1.1).peaks(0.3)
-        order = np.argsort(-np.abs(score) * np.sqrt(np.abs(level)))[:6]
-        if not len(order):
-            return None
-        rho, sign = rho[order], np.sign(score[order])
-        rings = [ring_points(work, plane, r, reach_px=reach_px, sign=s) for r, s in zip(rho, sign)]
-        plane = fit_plane(
-            rings, [], [], start=parameters_of(plane), ring_rho=rho, allow_tilt=False
-        ).homography
-    return plane
+    rho, score, level = ring_profile(work, plane, reach=1.1).peaks(STRONG)
+    order = np.argsort(-np.abs(score) * np.sqrt(np.abs(level)))[:6]
+    if not len(order):
+        return None
+    rings = [ring_points(work, plane, rho[k], reach_px=4.0, sign=np.sign(score[k]), n_max=180) for k in order]
+    return fit_plane(rings, [], [], start=parameters_of(plane), ring_rho=rho[order]).homography
 
 
-def _list_rings(profile, plane):
-    """Radii (falling) and polarity of the rings in a radial profile, and the drawn arc."""
-    rho, score, _ = profile.peaks(0.3)
-    blocks, arc = drawn_arc(profile, rho, np.sign(score))
-    rho, score, level = profile.peaks(WEAK, blocks)
-    strong = (np.abs(score) > STRONG) & (rho < 1.04)
-    if not strong.any():
-        return np.zeros(0), np.zeros(0), arc
-    keep = strong & (rho <= rho[strong][0] + 1e-9)
-    return rho[keep], np.sign(score[keep]), arc
-
-
-def _measure(full, plane, rho, sign, arc, origin):
+def _measure(full, plane, rings, arc, origin):
     """Sub-pixel fit of everything, as a `Grid` in picture px."""
-    outer_px = float(np.sqrt(abs(np.linalg.det(plane[:2, :2]))))
+    plane = plane @ np.diag([rings[0].rho, rings[0].rho, 1.0])
+    plane /= plane[2, 2]
+    rho = np.array([ring.rho for ring in rings]) / rings[0].rho
+    sign = [ring.points.sign for ring in rings]
+    outer_px = outer_radius(plane)
     spokes = find_spokes(full, plane, arc_deg=arc)
     parameters = parameters_of(plane)
     parameters[3] = np.radians(spokes.skew_deg)
@@ -210,9 +197,6 @@ def _measure(full, plane, rho, sign, arc, origin):
     for _ in range(2):
         plane = homography_of(parameters)
         rings = [ring_points(full, plane, r, arc_deg=arc, reach_px=reach_px, sign=s) for r, s in zip(rho, sign)]
-        true = np.array([p.drawn > 0.3 and r * outer_px > 12 for p, r in zip(rings, rho)])
-        true[0] = True
-        rho, sign, rings = rho[true], sign[true], [p for p, ok in zip(rings, true) if ok]
         lines = [spoke_points(full, plane, a, 0.25, 0.97) for a in spokes.deg]
         fit = fit_plane(rings, lines, spokes.deg, start=parameters, ring_rho=rho)
         parameters, rho = fit.parameters, fit.ring_rho
