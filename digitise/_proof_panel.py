@@ -9,7 +9,7 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-__all__ = ["View", "draw_error_strip", "draw_grid", "draw_sample", "draw_trace", "make_view", "picture_panel"]
+__all__ = ["Mask", "View", "draw_error_strip", "draw_grid", "draw_sample", "draw_trace", "make_view", "picture_panel"]
 
 FINER = 3  # mask pixels a panel pixel
 SHIFT = 4  # fixed-point bits of a place, for OpenCV
@@ -26,7 +26,7 @@ ERROR_FROM_DB, ERROR_TO_DB = 0.003, 30.0  # ends of the error axis
 class View:
     """The part of the picture that a panel shows.
 
-    left, top : px on the picture of the panel's corner; zoom : panel px per picture px; width, height : panel px
+    left, top : px on the picture of the outer corner of the panel's first pixel; zoom : panel px per picture px; width, height : panel px
     """
 
     left: float
@@ -34,6 +34,10 @@ class View:
     zoom: float
     width: int
     height: int
+
+    def place(self, x_px, y_px):
+        """Panel px of picture px; both have pixel centres at integers."""
+        return (x_px - self.left) * self.zoom - 0.5, (y_px - self.top) * self.zoom - 0.5
 
 
 def make_view(reading, *, width, least, most):
@@ -60,24 +64,29 @@ def make_view(reading, *, width, least, most):
 
 def picture_panel(rgb, view, paper):
     """The picture's part as a panel, (height, width, 3) uint8; beyond the picture is paper."""
-    matrix = np.array([[view.zoom, 0, -view.left * view.zoom], [0, view.zoom, -view.top * view.zoom]])
     x0, y0 = max(int(view.left) - 2, 0), max(int(view.top) - 2, 0)
     part = rgb[y0 : int(view.top + view.height / view.zoom) + 3, x0 : int(view.left + view.width / view.zoom) + 3]
+    across, down = 1.0, 1.0
     if view.zoom < 0.7:  # averaging first keeps thin lines whole
-        shrunk = cv2.resize(part, None, fx=view.zoom, fy=view.zoom, interpolation=cv2.INTER_AREA)
-        sx, sy = shrunk.shape[1] / part.shape[1], shrunk.shape[0] / part.shape[0]
-        matrix = np.array([[view.zoom / sx, 0, 0], [0, view.zoom / sy, 0]])
-        matrix[:, 2] = ((x0 - view.left + 0.5 - 0.5 / sx) * view.zoom, (y0 - view.top + 0.5 - 0.5 / sy) * view.zoom)
-        part = shrunk
-    else:
-        matrix[:, 2] += (x0 * view.zoom, y0 * view.zoom)
+        height, width = part.shape[:2]
+        size = max(1, round(width * view.zoom)), max(1, round(height * view.zoom))
+        part = cv2.resize(part, size, interpolation=cv2.INTER_AREA)
+        across, down = size[0] / width, size[1] / height
+    # Panel px of the part's px: through the outer corners, which pixel sizes do not move.
+    zx, zy = view.zoom / across, view.zoom / down
+    matrix = np.array(
+        [
+            [zx, 0, (x0 - 0.5 - view.left) * view.zoom + 0.5 * zx - 0.5],
+            [0, zy, (y0 - 0.5 - view.top) * view.zoom + 0.5 * zy - 0.5],
+        ]
+    )
     return cv2.warpAffine(
         part, matrix, (view.width, view.height),
         flags=cv2.INTER_CUBIC, borderMode=cv2.BORDER_CONSTANT, borderValue=tuple(float(v) for v in paper),
     )  # fmt: skip
 
 
-class _Mask:
+class Mask:
     """Where one colour is to be laid, and how thickly; places are panel px."""
 
     def __init__(self, canvas):
@@ -133,7 +142,7 @@ def draw_grid(canvas, reading, to_panel, paper):
     start, end = grid.arc_deg
     whole = end - start >= 360 - 1e-6
     angles = np.linspace(start, end if end > start else end + 360, 361)
-    spokes, rings = _Mask(canvas), _Mask(canvas)
+    spokes, rings = Mask(canvas), Mask(canvas)
     for plane in grid.spoke_deg:
         if whole or (plane - start) % 360 <= (end - start) % 360 + 0.5 or (start - plane) % 360 < 0.5:
             spokes.line(to_panel(np.array([0.0, 1.0]), np.array([plane, plane])), THIN_PX)
@@ -152,10 +161,10 @@ def draw_trace(canvas, reading, trace, to_panel, colour, *, anew):
     if anew:
         error = np.where(has, table.error95_db, 0.0)
         low, high = reading.scale.rho(level - error), reading.scale.rho(level + error)
-        band = _Mask(canvas)
+        band = Mask(canvas)
         band.quads(_quads(to_panel(np.clip(low, 0, 1.5), plane), to_panel(np.clip(high, 0, 1.5), plane), has))
         band.lay(colour, BAND_STRENGTH)
-    mask = _Mask(canvas)
+    mask = Mask(canvas)
     x, y = to_panel(np.clip(reading.scale.rho(level), 0, 1.5), plane)
     ring = to_panel(np.ones(len(plane)), plane)
     _states(mask, x, y, table.state, ANEW_PX if anew else OVER_PX, closed=True, ring=ring)
@@ -169,7 +178,7 @@ def draw_error_strip(canvas, table, colour):
     error = np.clip(np.where(has, table.error95_db, ERROR_FROM_DB), ERROR_FROM_DB, ERROR_TO_DB)
     x = table.angle_deg / 360 * (width - 1)
     y = (1 - error_place(error)) * (height - 1)
-    mask = _Mask(canvas)
+    mask = Mask(canvas)
     _states(mask, x, y, table.state, ANEW_PX, closed=False, ring=(x, np.full(len(x), 6.0)))
     mask.lay(colour)
 
@@ -184,7 +193,7 @@ def draw_sample(canvas, state, colour):
     height, width = canvas.shape[:2]
     x = np.linspace(4, width - 5, 12)
     y = np.full(12, (height - 1) / 2)
-    mask = _Mask(canvas)
+    mask = Mask(canvas)
     _states(mask, x, y, np.full(12, state), ANEW_PX, closed=False, ring=(x, y))
     mask.lay(colour)
 

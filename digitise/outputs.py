@@ -19,7 +19,7 @@ from .exceptions import DigitiseError, UsageError
 from .record import make_record, read_record, write_record
 from .table import write_table
 
-__all__ = ["ChartFiles", "Written", "chart_stem", "check_folder", "check_stems", "make_files", "write_whole"]
+__all__ = ["ChartFiles", "Written", "chart_stem", "check_folder", "check_stems", "make_files", "write_file", "write_whole"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -97,11 +97,11 @@ def check_folder(folder):
         while not at.exists():
             at = at.parent
         if not at.is_dir():
-            raise _bad_folder(folder, f"{at} is not a folder")
+            raise _not_written(folder, f"{at} is not a folder")
         if not os.access(at, os.W_OK | os.X_OK):
-            raise _bad_folder(folder, f"{at} may not be written to")
+            raise _not_written(folder, f"{at} may not be written to")
     except (OSError, ValueError) as error:
-        raise _bad_folder(folder, getattr(error, "strerror", None) or str(error)) from None
+        raise _not_written(folder, getattr(error, "strerror", None) or str(error)) from None
 
 
 def write_whole(charts, folder, *, taken=()):
@@ -142,7 +142,7 @@ def write_whole(charts, folder, *, taken=()):
             with contextlib.suppress(OSError):  # someone else has used it since
                 empty.rmdir()
         if isinstance(error, OSError):
-            raise _bad_folder(folder, error.strerror or str(error)) from None
+            raise _not_written(folder, error.strerror or str(error)) from None
         raise
     return Written(
         paths=tuple(folder / name for name in files),
@@ -150,6 +150,27 @@ def write_whole(charts, folder, *, taken=()):
         left_over=tuple(name for _, left_over, _ in before for name in left_over),
         other_picture=any(other for _, _, other in before),
     )
+
+
+def write_file(path, data, *, keep=()):
+    """Write one file that the user named, whole or not at all, over what was there.
+
+    `keep` names files that must not be written over (the pictures read); raises `UsageError`.
+    """
+    path = Path(path)
+    part = path.with_name(f".{path.name}.{secrets.token_hex(4)}.part")
+    try:
+        if any(path.exists() and os.path.samefile(path, other) for other in keep):
+            raise _in_way(path, "is the picture itself")
+        if path.is_dir():
+            raise _in_way(path, "is a folder")
+        with open(part, "xb") as file:
+            file.write(data)
+        os.replace(part, path)
+    except (OSError, ValueError) as error:
+        with contextlib.suppress(OSError, ValueError):
+            part.unlink(missing_ok=True)
+        raise _not_written(path, getattr(error, "strerror", None) or str(error)) from None
 
 
 def _make_folder(folder, made):
@@ -210,13 +231,13 @@ def _table_names(stem, n_traces):
 
 
 def _in_way(path, said):
-    return UsageError(said, remedy="move it away or give another --out", stage="outputs", source=str(path))
+    return UsageError(said, remedy="move it away or name another place", stage="outputs", source=str(path))
 
 
-def _bad_folder(folder, said):
+def _not_written(folder, said):
     return UsageError(
-        f"nothing can be written there ({said})",
-        remedy="give a folder that may be written to with --out",
+        f"cannot be written ({said})",
+        remedy="name a place that may be written to",
         stage="outputs",
         source=os.fspath(folder),
     )

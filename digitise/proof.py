@@ -7,11 +7,10 @@ row, the figures, the reasons to look, and the caution.
 """
 
 import textwrap
-import unicodedata
 
 import cv2
 import numpy as np
-from PIL import Image, ImageDraw, ImageFont
+from PIL import Image, ImageDraw
 
 from ._proof_colour import distinct_colours, main_colours
 from ._proof_panel import (
@@ -23,6 +22,7 @@ from ._proof_panel import (
     make_view,
     picture_panel,
 )
+from ._proof_text import font, printable, shortened
 from .caution import CAUTION_SHORT
 
 __all__ = ["draw_proof", "encode_proof"]
@@ -89,8 +89,7 @@ def _over_chart(view, reading):
     """Chart plane -> panel of the picture."""
 
     def to_panel(rho, plane_deg):
-        x, y = reading.grid.to_picture(rho, plane_deg)
-        return (x - view.left + 0.5) * view.zoom - 0.5, (y - view.top + 0.5) * view.zoom - 0.5
+        return view.place(*reading.grid.to_picture(rho, plane_deg))
 
     return to_panel
 
@@ -98,7 +97,7 @@ def _over_chart(view, reading):
 def _drawn_anew(view, reading):
     """Chart plane -> panel drawn anew: same place and size, but round and upright."""
     grid = reading.grid
-    x0, y0 = (grid.centre_x - view.left) * view.zoom, (grid.centre_y - view.top) * view.zoom
+    x0, y0 = view.place(grid.centre_x, grid.centre_y)
     radius = grid.outer_px * view.zoom
 
     def to_panel(rho, plane_deg):
@@ -129,16 +128,16 @@ class _Page:
         self.y = MARGIN_PX
 
     def text(self, x, y, words, *, size=16, fill=TEXT, anchor="la"):
-        self.draw.text((x, y), _printable(words), font=_font(size), fill=fill, anchor=anchor)
+        self.draw.text((x, y), printable(words), font=font(size), fill=fill, anchor=anchor)
 
     def head(self):
         """File, chart, and how radius and bearing were taken."""
         chart, reading = self.record["chart"], self.reading
         which = f"   chart {chart['number']} of {chart['of']}" if chart["of"] > 1 else ""
         page = f"   page {chart['page']}" if chart["page"] else ""
-        self.text(MARGIN_PX, self.y, _short(chart["file"], 70) + page + which, size=26)
+        self.text(MARGIN_PX, self.y, shortened(chart["file"], 70) + page + which, size=26)
         if reading.caption:
-            self.text(WIDTH_PX - MARGIN_PX, self.y + 6, _short(reading.caption, 60), size=18, fill=DIM, anchor="ra")
+            self.text(WIDTH_PX - MARGIN_PX, self.y + 6, shortened(reading.caption, 60), size=18, fill=DIM, anchor="ra")
         self.y += 38
         self.text(MARGIN_PX, self.y, _scale_words(reading) + "   " + _bearing_words(reading), fill=DIM)
         self.y += 34
@@ -167,7 +166,7 @@ class _Page:
             x, y = to_panel(np.array([rho]), np.array([float(plane_deg)]))
             place = (left + float(x[0]), self.y + float(y[0]))
             self.draw.text(
-                place, words, font=_font(size), fill=ink, anchor="mm", stroke_width=2, stroke_fill=halo
+                place, words, font=font(size), fill=ink, anchor="mm", stroke_width=2, stroke_fill=halo
             )
 
         start, end = grid.arc_deg
@@ -216,7 +215,7 @@ class _Page:
             x, y = to_panel(rho[k, at : at + 1] - 0.05, plane)
             place = (left + float(x[0]), self.y + float(y[0]))
             self.draw.text(
-                place, str(k + 1), font=_font(20), fill=self.colours[k], anchor="mm", stroke_width=2, stroke_fill=halo
+                place, str(k + 1), font=font(20), fill=self.colours[k], anchor="mm", stroke_width=2, stroke_fill=halo
             )
 
     def _number_places(self, over):
@@ -228,7 +227,7 @@ class _Page:
             x, y = (float(v) for v in over(rho, plane))
             x, y = MARGIN_PX + x, self.y + y
             self.draw.ellipse((x - 11, y - 11, x + 11, y + 11), outline=ALERT, width=2)
-            self.draw.text((x + 16, y), str(number), font=_font(16), fill=ALERT, anchor="lm", stroke_width=3, stroke_fill=PAPER)
+            self.draw.text((x + 16, y), str(number), font=font(16), fill=ALERT, anchor="lm", stroke_width=3, stroke_fill=PAPER)
 
     def strip(self, strip):
         """The error by bearing."""
@@ -252,7 +251,7 @@ class _Page:
         for k, (trace, node) in enumerate(zip(self.reading.traces, self.record["traces"], strict=True)):
             self._sample(MARGIN_PX, "seen", self.colours[k])
             number = f"{k + 1}   " if len(self.reading.traces) > 1 else ""
-            name = f"  {_short(trace.name, 40)}" if trace.name else ""
+            name = f"  {shortened(trace.name, 40)}" if trace.name else ""
             self.text(MARGIN_PX + 52, self.y, f"{number}{node['table']}{name}   ink {trace.ink}, {trace.dash}", size=18)
             self.y += 26
             for line in textwrap.wrap(_figure_words(node), 150):
@@ -264,7 +263,7 @@ class _Page:
         for state, words in STATE_WORDS.items():
             self._sample(x, state, colour)
             self.text(x + 52, self.y, words, size=14, fill=DIM)
-            x += 52 + int(_font(14).getlength(words)) + 36
+            x += 52 + int(font(14).getlength(words)) + 36
         self.y += 34
 
     def _sample(self, x, state, colour):
@@ -327,23 +326,3 @@ def _figure_words(node):
         return "no row has a value"
     rows = ", ".join(f"{count} {state}" for state, count in node["rows"].items() if count)
     return f"peak {node['peak_db']:.2f} dB at {node['peak_deg']:g}\u00b0; median error {node['median_error95_db']:.2g} dB; rows: {rows}"
-
-
-def _short(words, most):
-    return words if len(words) <= most else words[: most - 3] + "..."
-
-
-def _printable(words):
-    """Text in the letters that Pillow's own font has."""
-    words = "".join("-" if unicodedata.category(c) == "Pd" or c == "\u2212" else c for c in words)
-    kept = (c if c in "\u00b0\u00b1" else unicodedata.normalize("NFKD", c).encode("ascii", "ignore").decode() or "?" for c in words)
-    return "".join(kept)
-
-
-_fonts = {}
-
-
-def _font(size):
-    if size not in _fonts:
-        _fonts[size] = ImageFont.load_default(size)
-    return _fonts[size]

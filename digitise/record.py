@@ -18,7 +18,7 @@ from .caution import CAUTION
 from .exceptions import DigitiseError, PictureError
 from .review import REASONS, reason
 from .scale import Scale
-from .settings import LAWS, Mark, Settings
+from .settings import LAWS, Settings
 from .table import STATES
 
 __all__ = ["FORMAT", "make_record", "read_record", "settings_from_record", "write_record"]

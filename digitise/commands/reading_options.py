@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from ..settings import LAWS, ZERO_WORDS, Mark, Settings
 
-__all__ = ["add_reading_options", "settings_from_args"]
+__all__ = ["add_part_options", "add_reading_options", "settings_from_args"]
 
 NOT_ASCII_MINUS = str.maketrans({"\u2212": "-", "\u2013": "-"})  # the minus sign and the dash of copied text
 
@@ -41,11 +41,16 @@ def add_reading_options(parser):
     places.add_argument(
         "--pin", metavar="X,Y", type=_point, action="append", help="the trace goes through this point; repeatable"
     )
-    places.add_argument("--crop", metavar="X,Y,W,H", type=_box, help="read only this part of the picture")
-    places.add_argument("--page", metavar="N", type=_page, help="page of a PDF or TIFF, from 1 (the first)")
+    add_part_options(places)
     parser.add_argument(
         "--like", metavar="RECORD", help="take the settings from an earlier record; other options override it"
     )
+
+
+def add_part_options(group):
+    """Add the options that choose a part of the picture file."""
+    group.add_argument("--crop", metavar="X,Y,W,H", type=_box, help="read only this part of the picture")
+    group.add_argument("--page", metavar="N", type=_page, help="page of a PDF or TIFF, from 1 (the first)")
 
 
 def settings_from_args(args, *, sha256=None):
