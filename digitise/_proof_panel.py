@@ -1,6 +1,6 @@
 """The drawn parts of the proof: the reading over the picture, the same reading drawn anew, and its error by bearing.
 
-Everything is drawn as a mask of three times the size, shrunk and laid on, which gives even lines of any width. States differ by shape besides colour: seen is
+Everything is drawn as a mask of twice the size, shrunk and laid on, which gives even lines of any width. States differ by shape besides colour: seen is
 a thick line, bridged a thin line with open circles, floor triangles, missing a gap with a cross on the outer ring.
 """
 
@@ -11,7 +11,7 @@ import numpy as np
 
 __all__ = ["Mask", "View", "draw_error_strip", "draw_grid", "draw_sample", "draw_trace", "make_view", "picture_panel"]
 
-FINER = 3  # mask pixels a panel pixel
+FINER = 2  # mask pixels a panel pixel
 SHIFT = 4  # fixed-point bits of a place, for OpenCV
 THIN_PX = 0.9
 OVER_PX, ANEW_PX = 1.4, 2.2  # a seen trace over the chart leaves the ink in sight on both sides

@@ -6,6 +6,7 @@ line lies on the ink, and that rings, levels and bearings say what the chart pri
 row, the figures, the reasons to look, and the caution.
 """
 
+import io
 import textwrap
 
 import cv2
@@ -28,6 +29,7 @@ from .caution import CAUTION_SHORT
 __all__ = ["draw_proof", "encode_proof"]
 
 WIDTH_PX = 1400
+ROOM_PX, ROOM_FOR_TRACE_PX = 1700, 110  # height of the sheet before it is cut to what was laid on it
 MARGIN_PX = 24
 PANEL_PX = (WIDTH_PX - 3 * MARGIN_PX) // 2
 PANEL_LEAST_PX, PANEL_MOST_PX = 360, 690
@@ -41,6 +43,17 @@ STATE_WORDS = {
     "missing": "missing: no value",
 }
 ERROR_TICKS_DB = (0.01, 0.1, 1.0, 10.0)
+FIGURES_SHOWN = {  # key of `figures.FIGURES` -> short title
+    "beamwidth": "half-power width",
+    "beamwidth10": "width at -10 dB",
+    "ftb": "front-to-back",
+    "ftb30": "the same, 180 \u00b1 30\u00b0",
+    "sidelobe_worst": "worst side lobe",
+    "null_deepest": "deepest null",
+    "tilt": "tilt below horizon",
+    "ripple": "ripple, max - min",
+}
+FIGURE_CELL_PX = 185
 MAX_REASONS = 12  # the record holds them all
 
 
@@ -79,10 +92,9 @@ def draw_proof(reading, record):
 
 def encode_proof(image):
     """The proof as PNG bytes; packed lightly, since packing it hard takes longer than the reading."""
-    ok, data = cv2.imencode(".png", np.asarray(image)[:, :, ::-1], (cv2.IMWRITE_PNG_COMPRESSION, 2))
-    if not ok:
-        raise OSError("the proof could not be packed as PNG")
-    return data.tobytes()
+    data = io.BytesIO()
+    image.save(data, "PNG", compress_level=2)
+    return data.getvalue()
 
 
 def _over_chart(view, reading):
@@ -123,7 +135,7 @@ class _Page:
 
     def __init__(self, reading, record, colours, paper):
         self.reading, self.record, self.colours, self.paper = reading, record, colours, paper
-        self.image = Image.new("RGB", (WIDTH_PX, 4000), PAPER)
+        self.image = Image.new("RGB", (WIDTH_PX, ROOM_PX + ROOM_FOR_TRACE_PX * len(reading.traces)), PAPER)
         self.draw = ImageDraw.Draw(self.image)
         self.y = MARGIN_PX
 
@@ -254,10 +266,13 @@ class _Page:
             name = f"  {shortened(trace.name, 40)}" if trace.name else ""
             self.text(MARGIN_PX + 52, self.y, f"{number}{node['table']}{name}   ink {trace.ink}, {trace.dash}", size=18)
             self.y += 26
-            for line in textwrap.wrap(_figure_words(node), 150):
-                self.text(MARGIN_PX + 52, self.y, line, fill=DIM)
-                self.y += 22
-            self.y += 6
+            self.text(MARGIN_PX + 52, self.y, _row_words(node), fill=DIM)
+            self.y += 26
+            for column, (title, value) in enumerate(_figure_cells(node)):
+                x = MARGIN_PX + 52 + column * FIGURE_CELL_PX
+                self.text(x, self.y, title, size=13, fill=DIM)
+                self.text(x, self.y + 17, value, size=16)
+            self.y += 48
         x = MARGIN_PX
         colour = self.colours[0]
         for state, words in STATE_WORDS.items():
@@ -320,9 +335,20 @@ def _bearing_words(reading):
     return f"Bearing: 0\u00b0 is {bearing.zero_deg:.4g}\u00b0 clockwise from the chart's top, growing {turn} (from {bearing.source})"
 
 
-def _figure_words(node):
-    """The figures of one trace in one line."""
+def _row_words(node):
+    """Peak, error and states of one trace."""
     if node["peak_db"] is None:
         return "no row has a value"
     rows = ", ".join(f"{count} {state}" for state, count in node["rows"].items() if count)
-    return f"peak {node['peak_db']:.2f} dB at {node['peak_deg']:g}\u00b0; median error {node['median_error95_db']:.2g} dB; rows: {rows}"
+    error = f"median error {node['median_error95_db']:.2g} dB"
+    return f"peak {node['peak_db']:.2f} dB at {node['peak_deg']:g}\u00b0;  {error};  rows: {rows}"
+
+
+def _figure_cells(node):
+    """Title and value with error of each figure that one trace has."""
+    for key, title in FIGURES_SHOWN.items():
+        figure = node["figures"][key]
+        if figure["value"] is not None:
+            unit = "\u00b0" if figure["unit"] == "deg" else f" {figure['unit']}"
+            bound = f"{figure['bound']} " if figure.get("bound") else ""
+            yield title, f"{bound}{figure['value']} \u00b1 {figure['error95']}{unit}"

@@ -38,6 +38,7 @@ def make_record(reading, *, tables):
     tables : the table file's bare name for every trace
     """
     picture = reading.picture
+    cut = _cut_named(reading.caption)
     return {
         "format": FORMAT,
         "software": software_part(),
@@ -53,6 +54,7 @@ def make_record(reading, *, tables):
             "of": reading.n_charts,
             "region": [reading.box.x, reading.box.y, reading.box.w, reading.box.h],
             "caption": reading.caption,
+            "cut": cut,
             "notes": list(picture.notes),
         },
         "told": _told(reading.settings),
@@ -60,7 +62,7 @@ def make_record(reading, *, tables):
         "scale": scale_part(reading.scale),
         "bearing": bearing_part(reading.bearing),
         "labels": labels_part(reading.labels),
-        "traces": [_trace(trace, name) for trace, name in zip(reading.traces, tables, strict=True)],
+        "traces": [_trace(trace, name, cut) for trace, name in zip(reading.traces, tables, strict=True)],
         "review": reading.review,
     }
 
@@ -131,11 +133,15 @@ def _told(settings):
     return told
 
 
-def _trace(trace, table_name):
-    try:
-        from .figures import figures_of
-    except ModuleNotFoundError:  # until that stage stands
-        figures_of = None
+def _cut_named(caption):
+    """The cut that the caption names, or "" when it names none or both; H- and E-plane say neither."""
+    named = [cut for cut in ("azimuth", "elevation") if cut in caption.lower()]
+    return named[0] if len(named) == 1 else ""
+
+
+def _trace(trace, table_name, cut):
+    from .figures import figures_of
+
     table, budget = trace.table, trace.budget
     known = np.isfinite(table.chart_db)
     peak = int(np.nanargmax(table.chart_db)) if known.any() else None
@@ -149,7 +155,7 @@ def _trace(trace, table_name):
         "peak_deg": None if peak is None else round(float(table.angle_deg[peak]), 6),
         "median_error95_db": to_plain(_median(table.error95_db), 4),
         "rows": {state: int(np.sum(table.state == state)) for state in STATES},
-        "figures": to_plain(figures_of(table).to_json()) if figures_of else {},
+        "figures": to_plain(figures_of(table, cut=cut).to_json()),
         "budget": {
             "coverage_factor": budget.coverage_factor,
             "median_u_db": {part: to_plain(_median(getattr(budget, part)), 4) for part in PARTS},

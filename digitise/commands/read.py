@@ -106,6 +106,9 @@ def _print_summary(chart, folder):
             said.append("no row has a value")
         else:
             said.append(f"peak {trace['peak_db']:.2f} dB at {trace['peak_deg']:g} deg")
+            width = trace["figures"]["beamwidth"]
+            if width["value"] is not None:
+                said.append(f"beamwidth {width['value']:g} +- {width['error95']:g} deg")
             said.append(f"median error {trace['median_error95_db']:.2g} dB")
         said.append(f"{n_review} to review" if n_review else "nothing to review")
         print(f"{Path(folder) / trace['table']}: {', '.join(said)}")
