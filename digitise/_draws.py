@@ -34,6 +34,7 @@ def draw_levels(levels_db, error95_db, *, n_draws, seed):
     Returns
     -------
     (1 + n_draws, n) dB, the levels as read first
+
     """
     n = len(levels_db)
     rng = np.random.default_rng(seed)

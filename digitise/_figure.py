@@ -61,6 +61,8 @@ class Figure:
         place = 3 if self.error95 <= 0 else min(3, max(0, 1 - math.floor(math.log10(self.error95))))
         value = round(self.value, place) + 0.0
         error = math.ceil(round((self.error95 + abs(value - self.value)) * 10**place, 6)) / 10**place
+        if self.key == "peak_deg":
+            value %= 360  # a bearing just under 360 is written as 0
         return f"{value:.{place}f}", f"{error:.{place}f}"
 
 

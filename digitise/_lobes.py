@@ -47,6 +47,7 @@ def find_lobes(levels_db, error95_db):
     levels_db, error95_db : (n,) around the circle, dB; NaN where there is no value
 
     Nulls within half power of the peak are ripple of the main lobe and are left out.
+
     """
     n = len(levels_db)
     levels, errors = levels_db.tolist(), error95_db.tolist()

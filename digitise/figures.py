@@ -66,6 +66,7 @@ def figures_of(table, *, cut="", up="", boresight_deg=None, n_draws=200, seed=1)
     boresight_deg : printed bearing of the mechanical boresight (in elevation: of the horizon in front);
         None for the nearest of 0, 90, 180 and 270 to the peak
     n_draws, seed : of the Monte Carlo; the same table always gives the same figures
+
     """
     if cut not in ("", *CUTS) or up not in ("", "growing", "falling"):
         raise ValueError(f"cut {cut!r} or up {up!r} is not one of the known words")
