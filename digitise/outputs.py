@@ -137,12 +137,13 @@ def write_whole(charts, folder, *, taken=()):
         _rename_all([(part, folder / name) for part, name in zip(waiting, files, strict=True)], token)
     except BaseException as error:
         for part in waiting:
-            part.unlink(missing_ok=True)
+            with contextlib.suppress(OSError, ValueError):
+                part.unlink(missing_ok=True)
         for empty in made:
             with contextlib.suppress(OSError):  # someone else has used it since
                 empty.rmdir()
-        if isinstance(error, OSError):
-            raise _not_written(folder, error.strerror or str(error)) from None
+        if isinstance(error, (OSError, ValueError)):
+            raise _not_written(folder, getattr(error, "strerror", None) or str(error)) from None
         raise
     return Written(
         paths=tuple(folder / name for name in files),

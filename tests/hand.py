@@ -1,5 +1,7 @@
 """Readings made by hand, for the tests of what is made of a reading: no stage of the reading itself takes part."""
 
+import functools
+
 import numpy as np
 
 from digitise.bearing import Bearing
@@ -28,6 +30,14 @@ def cardioid_page(inks=INKS[:1], *, paper="#ffffff"):
     return Page(charts=(chart,), width=600, height=620, paper=paper)
 
 
+@functools.cache
+def painted(n_traces):
+    """The cardioid page with so many traces, painted once."""
+    rgb = paint(cardioid_page(INKS[:n_traces]))
+    rgb.setflags(write=False)
+    return rgb
+
+
 def hand_table(level_db=None, *, state=None, error_db=0.1):
     """A table of 360 rows; the level is a field cardioid where none is given, and missing rows are emptied."""
     level = patterns.first_order(np.arange(360.0)) if level_db is None else np.asarray(level_db, float)
@@ -39,8 +49,7 @@ def hand_table(level_db=None, *, state=None, error_db=0.1):
 
 def hand_reading(n_traces=1, *, path="panel.png", table=None, rgb=None, reasons=(), trace_reasons=(), **settings):
     """A `Reading` of the cardioid page as it would be if every stage had done its work without error."""
-    page = cardioid_page(INKS[:n_traces])
-    rgb = paint(page) if rgb is None else rgb
+    rgb = painted(n_traces) if rgb is None else rgb
     settings = Settings(**({"outer_db": 0.0, "centre_db": -40.0, "zero_deg": 0.0, "turn": "cw"} | settings))
     grid = plane_grid(RING_RHO)
     traces = []
