@@ -9,10 +9,11 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-__all__ = ["Mask", "View", "draw_error_strip", "draw_grid", "draw_sample", "draw_trace", "make_view", "picture_panel"]
+__all__ = ["Mask", "View", "arc_angles", "on_arc", "draw_error_strip", "draw_grid", "draw_sample", "draw_trace", "make_view", "picture_panel"]
 
 FINER = 2  # mask pixels a panel pixel
 SHIFT = 4  # fixed-point bits of a place, for OpenCV
+ARC_SLACK_DEG = 0.5
 THIN_PX = 0.9
 OVER_PX, ANEW_PX = 1.4, 2.2  # a seen trace over the chart leaves the ink in sight on both sides
 MARKER_PX = 3.4
@@ -40,11 +41,22 @@ class View:
         return (x_px - self.left) * self.zoom - 0.5, (y_px - self.top) * self.zoom - 0.5
 
 
+def arc_angles(grid, n):
+    """(n,) plane angles along the arc that the chart is drawn on."""
+    start, end = grid.arc_deg
+    return start + np.linspace(0, (end - start) % 360 or 360.0, n)
+
+
+def on_arc(grid, plane_deg):
+    """True where the chart is drawn at a plane angle."""
+    start, end = grid.arc_deg
+    return (plane_deg - start + ARC_SLACK_DEG) % 360 <= ((end - start) % 360 or 360.0) + 2 * ARC_SLACK_DEG
+
+
 def make_view(reading, *, width, least, most):
     """The `View` round one chart: its region, not farther than its labels can be, `least` to `most` px high."""
     grid, box = reading.grid, reading.box
-    angles = np.linspace(*grid.arc_deg, 181)
-    x, y = grid.to_picture(np.full(181, 1.0), angles)
+    x, y = grid.to_picture(np.full(181, 1.0), arc_angles(grid, 181))
     x, y = np.append(x, grid.centre_x), np.append(y, grid.centre_y)
     near, far = 0.16 * grid.outer_px, 0.24 * grid.outer_px  # room for the line, room for rim labels
     left = min(x.min() - near, max(box.x, x.min() - far))
@@ -139,12 +151,10 @@ def draw_grid(canvas, reading, to_panel, paper):
     """The chart's rings and spokes on a panel of plain paper."""
     grid = reading.grid
     opposite = np.zeros(3) if np.mean(paper) > 127 else np.full(3, 255.0)
-    start, end = grid.arc_deg
-    whole = end - start >= 360 - 1e-6
-    angles = np.linspace(start, end if end > start else end + 360, 361)
+    angles = arc_angles(grid, 361)
     spokes, rings = Mask(canvas), Mask(canvas)
     for plane in grid.spoke_deg:
-        if whole or (plane - start) % 360 <= (end - start) % 360 + 0.5 or (start - plane) % 360 < 0.5:
+        if on_arc(grid, plane):
             spokes.line(to_panel(np.array([0.0, 1.0]), np.array([plane, plane])), THIN_PX)
     for k, rho in enumerate(grid.ring_rho):
         rings.line(to_panel(np.full(361, rho), angles), 1.8 if k == 0 else THIN_PX)

@@ -4,7 +4,7 @@ import numpy as np
 from PIL import Image, ImageDraw
 
 from ._proof_colour import distinct_colours, main_colours
-from ._proof_panel import Mask, View, picture_panel
+from ._proof_panel import Mask, View, arc_angles, picture_panel
 from ._proof_text import font, printable
 
 __all__ = ["draw_overview"]
@@ -45,8 +45,7 @@ def draw_overview(picture, charts):
 
 
 def _lay_grid(mask, grid, view):
-    start, end = grid.arc_deg
-    angles = np.linspace(start, end if end > start else end + 360, 361)
+    angles = arc_angles(grid, 361)
     for rho in grid.ring_rho:
         mask.line(view.place(*grid.to_picture(np.full(361, rho), angles)), LINE_PX)
     for plane in grid.spoke_deg:

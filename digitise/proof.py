@@ -21,6 +21,7 @@ from ._proof_panel import (
     draw_trace,
     error_place,
     make_view,
+    on_arc,
     picture_panel,
 )
 from ._proof_text import font, printable, shortened
@@ -181,10 +182,9 @@ class _Page:
                 place, words, font=font(size), fill=ink, anchor="mm", stroke_width=2, stroke_fill=halo
             )
 
-        start, end = grid.arc_deg
         for angle in range(0, 360, 30):
             plane = float(bearing.to_plane(np.array([float(angle)]))[0])
-            if (plane - start) % 360 <= end - start + 0.5:
+            if on_arc(grid, plane):
                 put(1.075, plane, f"{angle - 360 if signed and angle > 180 else angle}\u00b0", 16)
         along = self._quiet_spoke()
         last = None
@@ -196,10 +196,9 @@ class _Page:
     def _quiet_spoke(self):
         """Plane angle, half-way between labels, along which the traces leave the ring levels most room."""
         grid, reading = self.reading.grid, self.reading
-        start, end = grid.arc_deg
         free = []
         for angle in np.arange(15, 360, 30.0):
-            if (angle - start) % 360 > end - start:
+            if not on_arc(grid, angle):
                 continue
             clear = 1.0
             for trace in reading.traces:
