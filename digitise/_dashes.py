@@ -1,35 +1,95 @@
-"""Bridge the gaps of a dashed or dotted line, so that the path over it is as cheap as over a solid one.
+"""Dashes, and specks of text: the loose pieces of an ink, and the bridge over the gaps between dashes.
 
-Along each of twelve directions, strokes that run that way are kept (an opening with a short line) and the gaps
-between them closed (a closing with a longer line): Serra 1982, openings and closings by line segments. The opening
-comes first so that two solid lines side by side are not joined across.
+A solid line that the removed grid cuts up ends at hidden places; a dash or a glyph ends on paper. Loose pieces of one
+size all round the chart are dashes, the others are specks. Along each of twelve directions, strokes that run that way
+are kept (an opening with a short line) and the gaps between them closed (a closing with a longer line; Serra 1982,
+openings and closings by line segments). The opening comes first so that two lines side by side are not joined across.
 """
+
+from dataclasses import dataclass
 
 import cv2
 import numpy as np
 
-__all__ = ["bridge_dashes"]
+__all__ = ["Pieces", "bridge_dashes", "find_pieces"]
 
 N_DIRECTIONS = 12
-LEAST_PIECES = 8  # fewer separate pieces of ink are a solid line with interruptions, or text
-LEAST_SECTORS = 5  # of 36: text stands on one ray, a dashed trace goes round
-REDUCTION = 2  # the bridge only guides the path; half resolution is enough
+LEAST_PIECES = 8  # fewer loose pieces of one size are text
+LEAST_SECTORS = {True: 5, False: 2}  # of 36, of a text-like ink or not: text stands on one ray, a trace goes round
+SPECK_EXTENT = 0.16  # of the outer radius: a larger loose piece is a trace
+THIN_PX = 2.6  # dashes at least this wide are bridged at half resolution: the bridge only guides the path
 
 
-def bridge_dashes(cover, hidden, sheet, level):
-    """Coverage-like map, (h, w) float32, high on dashes and in the gaps between them; None when nothing is dashed.
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Pieces:
+    """Loose pieces of an ink.
+
+    dash, speck : (h, w) bool masks; dashed : whether there are enough dashes to make a trace
+    length_px, width_px : of the typical dash, NaN when not dashed
+    """
+
+    dash: np.ndarray
+    speck: np.ndarray
+    dashed: bool
+    length_px: float
+    width_px: float
+
+
+def find_pieces(cover, hidden, sheet, level, *, text_like):
+    """Sort the loose pieces of ink on a coverage map.
 
     cover, hidden : (h, w) float32; sheet : _sheet.Sheet; level : coverage on a line's crest
+    text_like : the ink may also print labels (black or grey)
     """
-    pieces = _free_pieces(cover, hidden, sheet, level)
-    if pieces is None:
-        return None
-    length, width = pieces
-    small = cv2.resize(np.clip(cover / level, 0, 1), None, fx=1 / REDUCTION, fy=1 / REDUCTION, interpolation=cv2.INTER_AREA)
+    ink = ((cover > 0.45 * level) & (sheet.rho < 1.03)).astype(np.uint8)
+    n, piece, stats, middle = cv2.connectedComponentsWithStats(ink, connectivity=8)
+    contacts = _contacts(ink, piece, n, hidden)
+    extent = np.hypot(stats[:, cv2.CC_STAT_WIDTH], stats[:, cv2.CC_STAT_HEIGHT])
+    area = stats[:, cv2.CC_STAT_AREA].astype(float)
+    # A dash across a grid line is left as two parts, each with one end on paper; a line between two grid lines has none.
+    loose = (contacts < 2) & (extent < 0.3 * sheet.outer_px)
+    loose[0] = False
+    whole = loose & (contacts == 0)
+    alike, length, width = _alike(whole & (area >= 3), extent, area, middle, sheet, text_like)
+    dash = loose & (extent < 1.6 * length) & (alike | (contacts == 1)) if alike.any() else alike
+    speck = whole & ~dash & (extent < SPECK_EXTENT * sheet.outer_px) & text_like
+    return Pieces(dash=dash[piece], speck=speck[piece], dashed=bool(dash.any()), length_px=length, width_px=width)
+
+
+def _contacts(ink, piece, n, hidden):
+    """At how many separate places each piece of ink touches a hidden place."""
+    beside = cv2.dilate((hidden > 0.3).astype(np.uint8), np.ones((3, 3), np.uint8))
+    touch = ink & beside
+    n_places, place = cv2.connectedComponents(touch, connectivity=8)
+    pairs = np.unique(piece[touch > 0].astype(np.int64) * n_places + place[touch > 0])
+    return np.bincount(pairs // n_places, minlength=n)
+
+
+def _alike(loose, extent, area, middle, sheet, text_like):
+    """Which loose pieces are dashes: of one size and all round the chart; with their length and width."""
+    none = np.zeros(len(loose), bool)
+    if loose.sum() < LEAST_PIECES:
+        return none, np.nan, np.nan
+    length = _weighted_median(extent[loose], area[loose])
+    alike = loose & (extent > 0.6 * length) & (extent < 1.6 * length)
+    u, v = sheet.to_plane(middle[alike, 0], middle[alike, 1])
+    sectors = np.unique((np.degrees(np.arctan2(u, -v)) // 10)[np.hypot(u, v) > 0.15])
+    if alike.sum() < LEAST_PIECES or sectors.size < LEAST_SECTORS[text_like]:
+        return none, np.nan, np.nan
+    return alike, length, float(np.median(area[alike] / np.maximum(extent[alike], 1)))
+
+
+def bridge_dashes(cover, pieces, level):
+    """Coverage-like map, (h, w) float32, high on dashes and in the gaps between them."""
+    length, width = pieces.length_px, pieces.width_px
+    reduction = 1 if width < THIN_PX else 2
+    small = np.clip(cover / level, 0, 1)
+    if reduction > 1:
+        small = cv2.resize(small, None, fx=1 / reduction, fy=1 / reduction, interpolation=cv2.INTER_AREA)
     small = (np.clip(small * 1.5, 0, 1) * 255).astype(np.uint8)
     dotted = length < 2.0 * width
-    keep = max(3, round(max(0.6 * length, min(1.7 * width, 0.85 * length)) / REDUCTION))
-    reach = max(3, round((2.6 * width + 2 if dotted else 1.25 * length + width) / REDUCTION))
+    keep = max(3, round(max(0.6 * length, min(1.7 * width, 0.85 * length)) / reduction))
+    reach = max(3, round((2.6 * width + 2 if dotted else 1.25 * length + width) / reduction))
     out = np.zeros_like(small)
     for k in range(N_DIRECTIONS):
         angle = np.pi * k / N_DIRECTIONS
@@ -37,32 +97,6 @@ def bridge_dashes(cover, hidden, sheet, level):
         np.maximum(out, cv2.morphologyEx(strokes, cv2.MORPH_CLOSE, _line(reach, angle)), out=out)
     bridged = cv2.resize(out, cover.shape[::-1], interpolation=cv2.INTER_LINEAR)
     return bridged.astype(np.float32) / 255
-
-
-def _free_pieces(cover, hidden, sheet, level):
-    """Length and width of the dashes: pieces of ink of one size that touch no hidden place; None without them.
-
-    A solid line cut up by the removed grid ends at hidden places; a dash ends on paper.
-    """
-    ink = ((cover > 0.45 * level) & (sheet.rho < 1.03)).astype(np.uint8)
-    n, piece, stats, middle = cv2.connectedComponentsWithStats(ink, connectivity=8)
-    if n < 1 + LEAST_PIECES:
-        return None
-    touching = cv2.dilate((hidden > 0.3).astype(np.uint8), np.ones((3, 3), np.uint8)) > 0
-    touched = np.bincount(piece[touching], minlength=n)[1:] > 0
-    extent = np.hypot(stats[1:, cv2.CC_STAT_WIDTH], stats[1:, cv2.CC_STAT_HEIGHT])
-    area = stats[1:, cv2.CC_STAT_AREA].astype(float)
-    free = ~touched & (area >= 3) & (extent < 0.3 * sheet.outer_px)
-    if free.sum() < LEAST_PIECES:
-        return None
-    length = _weighted_median(extent[free], area[free])
-    alike = free & (extent > 0.6 * length) & (extent < 1.6 * length)
-    x, y = middle[1:, 0][alike], middle[1:, 1][alike]
-    u, v = sheet.to_plane(x, y)
-    sectors = np.unique((np.degrees(np.arctan2(u, -v)) // 10)[np.hypot(u, v) > 0.15])
-    if alike.sum() < LEAST_PIECES or sectors.size < LEAST_SECTORS:
-        return None
-    return length, float(np.median(area[alike] / np.maximum(extent[alike], 1)))
 
 
 def _weighted_median(values, weights):

@@ -6,15 +6,16 @@ Opaque drawing composes as m = a + (1 - a) g, so a = (m - g) / (1 - g) recovers 
 grid's g is not near 1; where it is, nothing can be told and the pixel counts as hidden.
 """
 
-import numpy as np
+from dataclasses import replace
 
-from .ink import Layer
+import numpy as np
 
 __all__ = ["remove_grid"]
 
 HALF_PROFILE_PX = 4.0
 BIN_PX = 0.25
 OPAQUE = 0.82  # above this grid coverage, what lies there cannot be told
+BESIDE_GRID = 0.7
 FAINT = 0.04  # a grid fainter than this in the ink's coverage needs no removal
 HUB_PX = 12.0  # spokes are not measured nearer to the centre: they overlap there
 
@@ -22,14 +23,18 @@ HUB_PX = 12.0  # spokes are not measured nearer to the centre: they overlap ther
 def remove_grid(layer, sheet, grid):
     """Return a `Layer` with the grid's own coverage taken from `cover` and `body` and added to `hidden`."""
     rings, spokes = _ring_pixels(sheet, grid), _spoke_pixels(sheet, grid)
-    cover, hidden = _remove(layer.cover, layer.hidden, grid, rings, spokes)
-    if layer.body is layer.cover:
-        return Layer(cover=cover, hidden=hidden, body=cover)
-    body, _ = _remove(layer.body, layer.hidden, grid, rings, spokes)
-    return Layer(cover=cover, hidden=hidden, body=body)
+    body, grid_cover = _remove(layer.cover, grid, rings, spokes)
+    # A ring hides only where the pixel is inked at all: a gap of a dashed ring hides nothing.
+    hidden = np.maximum(layer.hidden, np.minimum(grid_cover, layer.cover))
+    # Beside a grid line of its own colour an ink is only partly known: it counts less for where the trace runs.
+    cover = body * (1 - BESIDE_GRID * grid_cover)
+    if layer.body is not layer.cover:
+        body, _ = _remove(layer.body, grid, rings, spokes)
+    return replace(layer, cover=cover, hidden=hidden, body=body)
 
 
-def _remove(cover, hidden, grid, rings, spokes):
+def _remove(cover, grid, rings, spokes):
+    """Coverage without the grid, and the grid's own."""
     flat = cover.ravel()
     clear = np.ones(flat.size, np.float32)
     inner_drawn = float(np.median(grid.ring_drawn[1:])) if len(grid.ring_drawn) > 1 else 1.0
@@ -41,13 +46,11 @@ def _remove(cover, hidden, grid, rings, spokes):
             clear[pixels] *= 1 - profile[bins]
     grid_cover = (1 - clear).reshape(cover.shape)
     if grid_cover.max() < FAINT:
-        return cover, hidden
+        return cover, grid_cover
     left = (cover - grid_cover) / np.maximum(1 - grid_cover, 1 - OPAQUE)
     # Renderers differ in how they spread a line over pixels: what is small beside the grid there is the grid's.
-    left = np.where(left < 0.35 * grid_cover, 0, left)
-    # A ring hides only where the pixel is inked at all: a gap of a dashed ring hides nothing.
-    hidden = np.maximum(hidden, np.minimum(grid_cover, cover))
-    return np.where(grid_cover < OPAQUE, np.clip(left, 0, 1.1), 0).astype(np.float32), hidden.astype(np.float32)
+    left = np.where((left < 0.35 * grid_cover) | (grid_cover > OPAQUE), 0, left)
+    return np.clip(left, 0, 1.1).astype(np.float32), grid_cover
 
 
 def _profile(values, bins, drawn):

@@ -10,7 +10,7 @@ import numpy as np
 
 __all__ = ["cheapest_path"]
 
-CLIMB_PER_ROW = 0.2  # cost of climbing one row of paper, in columns of paper
+CLIMB_PER_ROW = 0.12  # cost of climbing one row of paper, in columns of paper
 CLIMB_ON_INK = 0.003  # cost of climbing one row of ink: small, but a detour is never free
 
 

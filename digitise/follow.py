@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-from ._dashes import bridge_dashes
+from ._dashes import bridge_dashes, find_pieces
 from ._path import cheapest_path
 from ._refine import refine_course
 from .frozen import lock_arrays
@@ -18,7 +18,8 @@ from .frozen import lock_arrays
 __all__ = ["Trace", "follow_trace"]
 
 HIDDEN_WORTH = 0.15  # how much better than paper a hidden place is
-GAP_WORTH = 0.85  # worth of a bridged dash gap, of a full line
+GAP_WORTH = 0.95  # worth of a bridged dash gap, of a full line
+SPECK_WORTH = 0.25  # worth of ink in loose pieces, of ink in a line
 TOO_DEEP = 0.5  # cost of running deeper in solid ink than the line is wide
 LEFT_ABOVE = 0.4  # cost of leaving ink above the path
 FLOOR_COST = 0.8  # cost of the centre: dearer than dashes, cheaper than bare paper
@@ -36,6 +37,7 @@ class Trace:
     radial_share : (n,) how much of a shift along the normal is radial, 0 to 1 (cosine of the line's slant)
     u_rho_bridge : (n,) extra standard uncertainty of rho where the ink is hidden or merged
     state : (n,) str, one of table.STATES
+    clear : (n,) bool, the line stands alone there: its whole profile was seen
     support : share of the path that runs on ink
     width_px : drawn line width, sheet px; sheet_outer_px : sheet px per unit rho
     """
@@ -47,6 +49,7 @@ class Trace:
     radial_share: np.ndarray
     u_rho_bridge: np.ndarray
     state: np.ndarray
+    clear: np.ndarray
     support: float
     width_px: float
     sheet_outer_px: float
@@ -55,7 +58,7 @@ class Trace:
         lock_arrays(self)
 
 
-def follow_trace(layer, sheet, grid, *, fill=0.0, pins=()):
+def follow_trace(layer, sheet, grid, *, fill=0.0, pins=(), solid=False):
     """Follow the strongest trace of a `Layer`.
 
     Parameters
@@ -63,6 +66,7 @@ def follow_trace(layer, sheet, grid, *, fill=0.0, pins=()):
     layer : ink.Layer; sheet : _sheet.Sheet; grid : grid.Grid
     fill : coverage of the trace's own filled area, 0 when not filled
     pins : tuple of (rho, plane_deg) that the trace goes through
+    solid : look for a solid line: dashes count little and their gaps are not bridged
 
     Returns
     -------
@@ -72,15 +76,18 @@ def follow_trace(layer, sheet, grid, *, fill=0.0, pins=()):
     if reference is None:
         return None
     lifted = np.clip((layer.cover - fill) / (1 - fill), 0, 1) if fill else layer.cover
-    bridge = bridge_dashes(lifted, layer.hidden, sheet, reference)
-    maps = [lifted, layer.hidden] + ([] if bridge is None else [bridge])
-    angles, (evidence, hidden, *bridged) = _unwrapped(maps, sheet, grid)
+    pieces = find_pieces(lifted, layer.hidden, sheet, reference, text_like=layer.neutral)
+    faint = pieces.speck | pieces.dash if solid else pieces.speck
+    lifted = np.where(faint, SPECK_WORTH * lifted, lifted)
+    bridged = [bridge_dashes(lifted, pieces, reference)] if pieces.dashed and not solid else []
+    deep, width = _depth(lifted, reference)
+    angles, (evidence, hidden, depth, *bridged) = _unwrapped([lifted, layer.hidden, deep, *bridged], sheet, grid)
     ink = np.clip((evidence - 0.15 * reference) / (0.5 * reference), 0, 1).astype(np.float32)
     if bridged:
         np.maximum(ink, GAP_WORTH * np.clip((bridged[0] - 0.3) / 0.4, 0, 1), out=ink)
     _apply_pins(ink, hidden, angles, sheet, pins)
     whole = _is_whole(grid)
-    cost, paper, floor_rows = _costs(ink, hidden)
+    cost, paper, floor_rows = _costs(ink, hidden, depth, width)
     enter, leave = cheapest_path(cost, paper, closed=whole)
     if np.mean(np.maximum(enter, leave) < floor_rows) > 0.98:
         return None
@@ -125,25 +132,31 @@ def _apply_pins(ink, hidden, angles, sheet, pins):
         ink[near, max(row - 2, 0) : row + 3] = 1
 
 
-def _costs(ink, hidden):
+def _depth(cover, level):
+    """How deep in solid ink each pixel lies beyond what one line explains, 0 to 1, and the line's width, px."""
+    solid = (cover > 0.5 * level).astype(np.uint8)
+    depth = cv2.distanceTransform(solid, cv2.DIST_L2, 3)
+    crest = depth[(depth > 0) & (depth >= cv2.dilate(depth, np.ones((3, 3), np.uint8)))]
+    width = 2 * float(np.median(crest)) if crest.size else 2.0
+    return np.clip((depth - 0.7 * width - 0.5) / (0.5 * width), 0, 1).astype(np.float32), width
+
+
+def _costs(ink, hidden, depth, width):
     """Cost of crossing each cell, bareness for climbing, and how many rows count as the centre."""
     solid = ink > 0.5
-    n, rows = ink.shape
-    run = np.zeros((n, rows), np.float32)
-    above = np.zeros((n, rows), np.float32)
-    length = np.zeros(n, np.float32)
-    seen = np.zeros(n, np.float32)
-    for r in range(rows - 1, -1, -1):
-        above[:, r] = seen
-        here = solid[:, r]
-        length = np.where(here, length + 1, 0)
-        run[:, r] = length
-        # Ink counts as left above only once the path is below a whole line, with paper between.
-        seen = np.maximum(seen, here)
-    begins = solid[:, 1:] & ~solid[:, :-1]
-    lengths = run[:, 1:][begins]
-    width = float(np.percentile(lengths, 35)) if lengths.size else 2.0
-    deep = np.clip((run - 1.2 * width - 1) / width, 0, 1)
+    above = np.zeros(ink.shape, np.float32)
+    passed = np.zeros(len(ink), bool)
+    inside = np.zeros(len(ink), bool)
+    deep = np.zeros(ink.shape, np.float32)
+    deepest = np.zeros(len(ink), np.float32)
+    for r in range(ink.shape[1] - 1, -1, -1):
+        # Ink counts as left above once paper parts it from the path: a flank's own ink does not.
+        passed |= inside & ~solid[:, r]
+        inside = solid[:, r]
+        above[:, r] = passed
+        # Solid ink between here and the run's upper end: the level lies further out.
+        deepest = np.where(inside, np.maximum(deepest, depth[:, r]), 0)
+        deep[:, r] = deepest
     paper = 1 - np.maximum(ink, HIDDEN_WORTH * hidden)
     cost = paper + TOO_DEEP * deep + LEFT_ABOVE * above
     floor_rows = int(width / 2 + 2)
@@ -218,7 +231,7 @@ def _resample(course, rho, bearing, floor, angles, sheet, whole, support):
     slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
     return Trace(
         plane_deg=grid_deg, rho=curve, u_px=np.minimum(at(course.u_px), 0.2), slope=slope, radial_share=slant,
-        u_rho_bridge=bridge, state=state, support=support, width_px=course.width_px / sheet.reduction,
+        u_rho_bridge=bridge, state=state, clear=kind < 0.5, support=support, width_px=course.width_px / sheet.reduction,
         sheet_outer_px=sheet.outer_px,
     )  # fmt: skip
 

@@ -19,6 +19,7 @@ BIN_DEG = 1.5  # direction histogram bin
 APART_DEG = 5.0  # inks closer in direction than this are one (told inks may be closer)
 LUMA = np.array([0.299, 0.587, 0.114])  # ITU-R BT.601-7, 2.5.1, as JPEG (ITU-T T.871) uses it
 COLOUR_SPREAD_DEG = 4.0  # ink pixels scattered more than this in direction: the colours are blurred
+NEUTRAL_DEG = 6.0
 LEAST_LUMA_CONTRAST = 45.0  # colour levels of lightness that the place can be read from
 
 
@@ -53,6 +54,7 @@ class Layer:
     cover: np.ndarray
     hidden: np.ndarray
     body: np.ndarray
+    neutral: bool
 
 
 def find_inks(sheet):
@@ -72,9 +74,14 @@ def find_inks(sheet):
             continue
         full = float(np.percentile(strength[near], 92))
         length = float(near.sum())
-        neutral = bool(abs(direction @ frame[2]) > np.cos(np.radians(6.0)))
+        neutral = _is_neutral(direction, sheet.paper_rgb)
         inks.append(Ink(rgb=sheet.paper_rgb + direction * full, length_px=length, neutral=neutral))
     return tuple(sorted(inks, key=lambda ink: -ink.length_px))
+
+
+def _is_neutral(direction, paper_rgb):
+    grey = _frame(paper_rgb)[2]
+    return bool(abs(direction @ grey) > np.cos(np.radians(NEUTRAL_DEG)) * np.linalg.norm(direction))
 
 
 def _crest(sheet):
@@ -155,7 +162,7 @@ def separate_ink(sheet, ink_rgb, other_rgbs):
     luma = float(own @ LUMA)
     if abs(luma) > LEAST_LUMA_CONTRAST and _colour_spread(vectors, own32, cover) > COLOUR_SPREAD_DEG:
         body = np.clip(sheet.contrast @ (LUMA / luma).astype(np.float32), 0, 1.2)
-    return Layer(cover=full_cover, hidden=full_hidden, body=body)
+    return Layer(cover=full_cover, hidden=full_hidden, body=body, neutral=_is_neutral(own, sheet.paper_rgb))
 
 
 def _colour_spread(vectors, own, cover):

@@ -5,7 +5,7 @@ runs on ink for most of its way, is long enough, and is not a ring. Several trac
 dashed one in black): each is followed with the ink of the earlier ones hidden.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import cv2
 import numpy as np
@@ -13,13 +13,15 @@ import numpy as np
 from ._grid_cover import remove_grid
 from .exceptions import NotReadError
 from .follow import Trace, follow_trace
-from .ink import Layer, find_inks, separate_ink
+from .ink import find_inks, separate_ink
 
 __all__ = ["FoundTrace", "find_traces"]
 
 MOST_PER_INK = 4
-LEAST_LENGTH = 0.6  # of the outer radius, drawn length of a trace
+LEAST_STRETCH = 0.45  # outer radii: ink along the longest well-inked stretch of a trace
 LEAST_ON_INK = 0.30  # share of the path on ink; dotted lines have about a third
+SOLID_ON_INK = 0.85  # the same of a solid line
+HUB_RHO = 0.08  # nearer to the centre lines merge and prove nothing
 TOLD_REACH_DEG = 30.0  # a told colour may be this far in direction from the ink on the picture (JPEG, scans)
 
 
@@ -78,18 +80,29 @@ def _traces_of_ink(rgb, palette, sheet, grid, settings, name):
     pins = tuple(grid.to_plane(np.float64(x), np.float64(y)) for x, y in settings.pins)
     found = []
     for _ in range(MOST_PER_INK):
-        trace = follow_trace(layer, sheet, grid, fill=fill, pins=pins)
-        if trace is None:
+        item = None
+        for solid in (True, False):
+            trace = follow_trace(layer, sheet, grid, fill=fill, pins=pins, solid=solid)
+            item = trace and _accepted(trace, layer, sheet, grid, fill, name, solid)
+            if item:
+                break
+        if not item:
             break
-        on_ink, length, dash = _evidence(trace, layer, sheet, fill)
-        if length < LEAST_LENGTH or on_ink < LEAST_ON_INK or _is_ring(trace, grid):
-            break
-        found.append(FoundTrace(ink=name, dash=dash, filled=fill > 0, trace=trace, length=length))
+        found.append(item)
         if fill:
             break
         layer = _erase(layer, trace, sheet)
         pins = ()
     return found
+
+
+def _accepted(trace, layer, sheet, grid, fill, name, solid):
+    """The trace as a `FoundTrace` when the ink along it makes it one, else None."""
+    evidence = _evidence(trace, layer, sheet, fill)
+    enough = evidence.stretch > LEAST_STRETCH and evidence.share > (SOLID_ON_INK if solid else LEAST_ON_INK)
+    if not enough or _is_ring(trace, grid):
+        return None
+    return FoundTrace(ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length)
 
 
 def _with_covers(layer, sheet, covers):
@@ -104,7 +117,7 @@ def _with_covers(layer, sheet, covers):
         area = np.s_[max(0, round(y0)) : min(height, round(y1)), max(0, round(x0)) : min(width, round(x1))]
         cover[area] = body[area] = 0
         hidden[area] = 1
-    return Layer(cover=cover, hidden=hidden, body=body)
+    return replace(layer, cover=cover, hidden=hidden, body=body)
 
 
 def _fill_cover(layer, sheet):
@@ -120,37 +133,65 @@ def _fill_cover(layer, sheet):
     return float(np.median(layer.cover[near]))
 
 
+@dataclass(frozen=True, kw_only=True)
+class _Evidence:
+    """Ink along a path: share of the visible path on ink; drawn length and longest well-inked stretch, outer radii."""
+
+    share: float
+    length: float
+    stretch: float
+    dash: str
+
+
 def _evidence(trace, layer, sheet, fill):
-    """Share of the path on ink, drawn length in outer radii, and the dash style from the lengths of ink and gap."""
-    x, y, _ = _course(trace, sheet)
+    x, y, clear = _course(trace, sheet)
     over = cv2.remap(layer.cover, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
     under = cv2.remap(layer.hidden, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
-    on = over > max(0.3, 0.5 * (1 + fill)) * np.percentile(over, 85)
-    known = under < 0.4
-    length = float(on.sum()) / sheet.outer_px
-    share = float(np.mean(on[known])) if known.sum() > 10 else 0.0
+    on = over > max(0.3, 0.5 * (1 + fill)) * max(float(np.percentile(over, 85)), 0.3)
+    known = on | (under < 0.4)
+    u, v = sheet.to_plane(x[:, 0], y[:, 0])
+    away = np.hypot(u, v) > max(HUB_RHO, 2.5 * trace.width_px * sheet.reduction / sheet.outer_px)
+    share = float(np.mean(on[known & away])) if (known & away).sum() > 10 else 0.0
     runs = np.diff(np.flatnonzero(np.diff(np.concatenate([[0], (on | ~known).astype(int), [0]]))))[::2]
-    if share > 0.85 or not runs.size:
+    if share > SOLID_ON_INK or not runs.size:
         dash = "solid"
     else:
         dash = "dotted" if np.median(runs) < 2.2 * max(trace.width_px * sheet.reduction, 1) else "dashed"
-    return share, length, dash
+    return _Evidence(
+        share=share, length=float(on.sum()) / sheet.outer_px, dash=dash,
+        stretch=_stretch(on & away & clear, known & away, sheet.outer_px),
+    )  # fmt: skip
+
+
+def _stretch(on, known, outer_px):
+    """Longest part of the path, in outer radii, along which every window of a quarter radius is well inked."""
+    window = max(9, int(0.25 * outer_px))
+    if len(on) < window:
+        return 0.0
+    ones = np.ones(window)
+    inked = np.convolve(on & known, ones, mode="same")
+    seen = np.convolve(known, ones, mode="same")
+    well = (seen > 0.15 * window) & (inked > LEAST_ON_INK * seen)
+    edges = np.flatnonzero(np.diff(np.concatenate([[0], well.astype(int), [0]])))
+    lengths = [float((on & known)[a:b].sum()) for a, b in zip(edges[::2], edges[1::2])]
+    return max(lengths, default=0.0) / outer_px
 
 
 def _course(trace, sheet):
-    """The trace's line on the sheet, about 1 px apart, floor and missing rows left out: x, y columns and rho."""
+    """The trace's line on the sheet, about 1 px apart, floor and missing rows left out: x, y columns and clear."""
     keep = np.isin(trace.state, ("seen", "bridged")) & np.isfinite(trace.rho)
-    plane, rho = trace.plane_deg[keep], trace.rho[keep]
+    plane, rho, clear = trace.plane_deg[keep], trace.rho[keep], trace.clear[keep]
     x, y = sheet.to_sheet(rho, plane)
     if len(x) < 2:
-        return np.zeros((1, 1), np.float32), np.zeros((1, 1), np.float32), rho
+        return np.zeros((1, 1), np.float32), np.zeros((1, 1), np.float32), np.zeros(1, bool)
     step = np.hypot(np.diff(x), np.diff(y))
     joined = np.concatenate([[True], np.diff(plane) < 0.5])
     length = np.concatenate([[0], np.cumsum(np.where(joined[1:], step, 0))])
     distinct = np.concatenate([[True], np.diff(length) > 1e-9])
     at = np.arange(0, min(length[-1], 30000.0), 1.0)
     xs, ys = np.interp(at, length[distinct], x[distinct]), np.interp(at, length[distinct], y[distinct])
-    return xs.astype(np.float32)[:, None], ys.astype(np.float32)[:, None], rho
+    clear = np.interp(at, length[distinct], clear[distinct].astype(float)) > 0.5
+    return xs.astype(np.float32)[:, None], ys.astype(np.float32)[:, None], clear
 
 
 def _is_ring(trace, grid):
@@ -174,7 +215,7 @@ def _erase(layer, trace, sheet):
         cv2.polylines(mask, [part[:, None]], False, 1, thickness, cv2.LINE_8, 3)
     hit = mask > 0
     cover, body = (np.where(hit, 0, part).astype(np.float32) for part in (layer.cover, layer.body))
-    return Layer(cover=cover, hidden=np.where(hit, 1, layer.hidden).astype(np.float32), body=body)
+    return replace(layer, cover=cover, hidden=np.where(hit, 1, layer.hidden).astype(np.float32), body=body)
 
 
 def _without_doubles(found):
