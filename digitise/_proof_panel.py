@@ -177,7 +177,8 @@ def draw_trace(canvas, reading, trace, to_panel, colour, *, anew):
     mask = Mask(canvas)
     x, y = to_panel(np.clip(reading.scale.rho(level), 0, 1.5), plane)
     ring = to_panel(np.ones(len(plane)), plane)
-    _states(mask, x, y, table.state, ANEW_PX if anew else OVER_PX, closed=True, ring=ring)
+    state = np.where(on_arc(reading.grid, plane), table.state, "")  # off the drawn arc nothing is missed
+    _states(mask, x, y, state, ANEW_PX if anew else OVER_PX, closed=True, ring=ring)
     mask.lay(colour)
 
 

@@ -190,7 +190,7 @@ class _Page:
         last = None
         for rho in grid.ring_rho:
             if last is None or (last - rho) * grid.outer_px >= 0.085 * grid.outer_px:
-                put(rho, along, f"{float(scale.level(np.array([rho]))[0]):.4g}", 14)
+                put(rho, along, f"{float(scale.level(np.array([rho]))[0]):.3g}", 14)
                 last = rho
 
     def _quiet_spoke(self):

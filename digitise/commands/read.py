@@ -34,11 +34,8 @@ def run(args):
     for path in args.pictures:
         try:
             charts, written = _read_one(path, args, taken)
-        except (DigitiseError, MemoryError) as error:
-            worst = max(worst, report(error, source=path))
-            continue
-        except Exception as error:
-            if args.debug or len(args.pictures) == 1:
+        except Exception as error:  # whatever it is, the other pictures are still to be read
+            if args.debug and not isinstance(error, DigitiseError):
                 raise
             worst = max(worst, report(error, source=path))
             continue
