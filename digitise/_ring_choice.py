@@ -22,8 +22,9 @@ SMALL_RADIUS_PX = 26.0  # below it a ring needs better evidence
 MIN_SCORE = 0.45  # of the radial profile, for a ring that stands by itself
 MIN_SHARE = 0.55  # of the sectors
 MAX_WANDER_PX = 0.75
-WEAK_SCORE, WEAK_SHARE = 0.18, 0.2  # enough where the even step foretells a ring
+WEAK_SHARE = 0.33  # enough where the even step foretells a ring
 STEP_MISS_PX = 0.9
+REACH_PX = 5.0  # half length of the cuts across a candidate
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -31,7 +32,7 @@ class Candidate:
     """One line about the centre.
 
     rho, score : from the radial profile; points : LinePoints; share : of the sectors that hold the line near its
-    usual radius; wander_px : robust scatter of the sectors' positions
+    usual radius; wander_px : robust scatter of the sectors' positions; contrast : of the sectors, grey levels
     """
 
     rho: float
@@ -39,44 +40,90 @@ class Candidate:
     points: object
     share: float
     wander_px: float
+    contrast: float
 
 
-def choose_rings(image, homography, rho, score, *, arc_deg, reach_px=5.0):
+def choose_rings(image, homography, rho, score, *, arc_deg, avoid_deg=(), avoid_px=2.5):
     """Choose the rings among candidate radii.
 
     Parameters
     ----------
     image : (h, w) float32 grey; homography : chart plane -> px; rho, score : (n,) of the radial profile, rho falling
-    arc_deg : drawn arc
+    arc_deg : drawn arc; avoid_deg, avoid_px : as for `ring_points`
 
     Returns
     -------
     list of Candidate, rho falling; the first is the rim; empty when there is no ring
     """
     outer_px = outer_radius(homography)
-    found = []
-    for r, s in zip(rho, score):
-        if r * outer_px < MIN_RADIUS_PX:
-            continue
-        points = ring_points(image, homography, r, arc_deg=arc_deg, reach_px=reach_px, sign=np.sign(s), n_max=180)
-        share, wander = _character(points, r * outer_px)
-        found.append(Candidate(rho=float(r), score=float(s), points=points, share=share, wander_px=wander))
+
+    def candidate(r, s):
+        points = ring_points(
+            image,
+            homography,
+            r,
+            arc_deg=arc_deg,
+            reach_px=REACH_PX,
+            sign=np.sign(s),
+            n_max=180,
+            avoid_deg=avoid_deg,
+            avoid_px=avoid_px,
+        )
+        share, wander, contrast = _character(points, r * outer_px)
+        return Candidate(
+            rho=float(r), score=float(s), points=points, share=share, wander_px=wander, contrast=contrast
+        )
+
+    found = [candidate(r, s) for r, s in zip(rho, score) if r * outer_px > MIN_RADIUS_PX]
     sure = [c for c in found if _stands_alone(c, outer_px)]
     if not sure:
         return []
     rim = _rim(sure)
-    sign = np.sign(sum(np.sign(c.score) * c.share for c in sure if c is not rim) or rim.score)
-    rings = [c for c in sure if c.rho < rim.rho and (np.sign(c.score) == sign)]
-    step = even_step(np.array([c.rho for c in rings]) * outer_px)
+    sign = np.sign(sum(c.score * c.share * c.contrast for c in sure if c is not rim) or rim.score)
+    rings = [c for c in sure if c.rho < rim.rho and np.sign(c.score) == sign]
+    step = even_step(np.array([c.rho for c in [rim, *rings]]) * outer_px)
+    rings = _without_strangers(rings, step, outer_px)
     if step is not None:
-        size, first = step
-        for c in found:
-            if c in rings or c.rho >= rim.rho or np.sign(c.score) != sign:
-                continue
-            miss = abs((c.rho * outer_px - first + size / 2) % size - size / 2)
-            if miss < STEP_MISS_PX and abs(c.score) > WEAK_SCORE and c.share > WEAK_SHARE:
-                rings.append(c)
+        rings += _foretold(found, rings, rim, step, sign, outer_px, candidate)
     return [rim, *sorted(rings, key=lambda c: -c.rho)]
+
+
+def _off_step(c, step, outer_px):
+    """Distance from the nearest place of the even step, px."""
+    size, first = step
+    return abs((c.rho * outer_px - first + size / 2) % size - size / 2)
+
+
+def _without_strangers(rings, step, outer_px):
+    """Drop lines whose contrast or completeness sets them apart and that no even step supports: round traces."""
+    if len(rings) < 2:
+        return rings
+    kept = []
+    for c in rings:
+        others = [o for o in rings if o is not c]
+        contrast = np.median([o.contrast for o in others])
+        share = np.median([o.share for o in others])
+        odd = c.contrast > 1.8 * contrast or c.contrast < 0.5 * contrast or c.share < 0.8 * share
+        supported = step is not None and _off_step(c, step, outer_px) < STEP_MISS_PX
+        if supported or not odd:
+            kept.append(c)
+    return kept
+
+
+def _foretold(found, rings, rim, step, sign, outer_px, candidate):
+    """Fainter or half-hidden rings at the places that the even step foretells."""
+    size, first = step
+    usual = np.median([c.contrast for c in rings]) if rings else rim.contrast
+    more = []
+    for k in range(int(np.ceil((MIN_RADIUS_PX - first) / size)), int((rim.rho * outer_px - 2 - first) // size) + 1):
+        place = first + k * size
+        if any(abs(c.rho * outer_px - place) < 2 * STEP_MISS_PX for c in [rim, *rings]):
+            continue
+        near = [c for c in found if abs(c.rho * outer_px - place) < STEP_MISS_PX and np.sign(c.score) == sign]
+        best = max([*near, candidate(place / outer_px, sign * MIN_SCORE)], key=lambda c: c.share)
+        if best.share > WEAK_SHARE and best.points.drawn > WEAK_SHARE and 0.4 < best.contrast / usual < 2.5:
+            more.append(best)
+    return more
 
 
 def _stands_alone(c, outer_px):
@@ -99,26 +146,31 @@ def _rim(sure):
 
 
 def even_step(radius_px):
-    """The even step of rings: (step, a ring's radius) in px, or None when they are uneven or fewer than three."""
-    if len(radius_px) < 3:
-        return None
+    """The even step of most of the rings: (step, a ring's radius) in px, or None when they are uneven or too few."""
     radius = np.sort(radius_px)
-    gap = float(np.median(np.diff(radius)))
-    for size in (gap, gap / 2, gap / 3):
-        if size < 3 * STEP_MISS_PX:
-            break
-        k = np.round((radius - radius[0]) / size)
-        if len(np.unique(k)) < len(k):
-            continue
-        design = np.stack([k, np.ones_like(k)], axis=1)
-        (slope, first), *_ = np.linalg.lstsq(design, radius, rcond=None)
-        if np.abs(design @ [slope, first] - radius).max() < STEP_MISS_PX:
-            return float(slope), float(first)
-    return None
+    n = len(radius)
+    best, best_merit = None, 0.0
+    for i in range(n):
+        for j in range(i + 1, n):
+            for part in (1, 2, 3):
+                size = (radius[j] - radius[i]) / part
+                if size < 6 * STEP_MISS_PX:
+                    break
+                k = np.round((radius - radius[i]) / size)
+                fits = np.abs(radius - radius[i] - k * size) < STEP_MISS_PX
+                places = k[fits].max() - k[fits].min() + 1
+                merit = fits.sum() - 0.4 * (places - len(np.unique(k[fits])))
+                if merit > best_merit and fits.sum() >= max(3, 0.6 * n):
+                    best, best_merit = (k[fits], radius[fits]), merit
+    if best is None or best_merit < 2.6:
+        return None
+    k, at = best
+    size, first = np.polyfit(k, at, 1)
+    return float(size), float(first)
 
 
 def _character(points, radius_px):
-    """Share of the sectors that hold a ring near its usual radius, and the robust scatter of their positions, px."""
+    """Share of the sectors that hold a ring near its usual radius, scatter of their positions (px), contrast."""
     n, m = points.ink.shape
     blocks = int(np.clip(2 * np.pi * radius_px / BLOCK_ARC_PX, MIN_BLOCKS, MAX_BLOCKS))
     edge = np.linspace(0, n, blocks + 1).astype(int)
@@ -131,8 +183,8 @@ def _character(points, radius_px):
     noise = 1.4826 * float(np.median(np.abs(ink[:, ~window])))
     there = peak > max(2.5 * noise, 1e-6)
     if there.sum() < 4:
-        return 0.0, 9.0
+        return 0.0, 9.0, 0.0
     held = there & (peak > 0.3 * np.median(peak[there]))
     middle = np.median(centre[held])
     wander = 1.4826 * float(np.median(np.abs(centre[held] - middle)))
-    return float((held & (np.abs(centre - middle) < NEAR_PX)).mean()), wander
+    return float((held & (np.abs(centre - middle) < NEAR_PX)).mean()), wander, float(np.median(peak[there]))

@@ -38,15 +38,21 @@ class LinePoints:
     width_px: float
 
 
-def ring_points(image, homography, rho, *, arc_deg=(0.0, 360.0), reach_px=4.0, sign=None, width_px=None, n_max=300):
+def ring_points(image, homography, rho, *, arc_deg=(0.0, 360.0), reach_px=4.0, sign=None, width_px=None, n_max=300, avoid_deg=(), avoid_px=2.5):
     """Cut across the ring of radius rho every few pixels of arc, as `LinePoints`.
 
-    image : (h, w) float32 grey; reach_px : half length of a cut; sign : polarity when known; width_px when known
+    image : (h, w) float32 grey; reach_px : half length of a cut; sign : polarity when known; width_px when known;
+    avoid_deg, avoid_px : plane angles of spokes and how far to keep from them (where that leaves enough of the ring)
     """
     outer_px = outer_radius(homography)
     span = (arc_deg[1] - arc_deg[0]) % 360 or 360.0
     n = int(np.clip(2 * np.pi * rho * outer_px * span / 360 / 2.0, 48, n_max))
     angle = arc_deg[0] + (np.arange(n) + 0.5) * span / n
+    if len(avoid_deg):
+        apart = np.abs((angle[:, None] - np.asarray(avoid_deg) + 180) % 360 - 180).min(axis=1)
+        clear = np.radians(apart) * rho * outer_px > avoid_px
+        if clear.sum() > 0.3 * n:
+            angle = angle[clear]
     phi = np.radians(angle)
     x0, y0 = apply_homography(homography, rho * np.sin(phi), -rho * np.cos(phi))
     x1, y1 = apply_homography(homography, rho * 1.01 * np.sin(phi), -rho * 1.01 * np.cos(phi))

@@ -38,18 +38,17 @@ class RingProfile:
     answer: np.ndarray
     floor: float
 
-    def score(self, blocks=None):
+    def score(self, blocks=slice(None)):
         """(n,) mean vote of the sectors (all, or those of a boolean mask), -1 to 1."""
-        answer = self.answer if blocks is None else self.answer[blocks]
-        return np.clip(answer / self.floor, -1, 1).mean(axis=0)
+        return np.clip(self.answer[blocks] / self.floor, -1, 1).mean(axis=0)
 
-    def level(self, blocks=None):
+    def level(self, blocks=slice(None)):
         """(n,) mean answer of the sectors with the loudest held back, grey levels."""
-        answer = self.answer if blocks is None else self.answer[blocks]
+        answer = self.answer[blocks]
         cap = max(float(np.abs(np.median(answer, axis=0)).max()), self.floor)
         return np.clip(answer, -cap, cap).mean(axis=0)
 
-    def peaks(self, threshold, blocks=None):
+    def peaks(self, threshold, blocks=slice(None)):
         """Lines on which enough sectors agree: arrays rho (falling), score, level."""
         score, level = self.score(blocks), self.level(blocks)
         size = np.where(np.abs(score) > threshold, np.abs(level), 0).astype(np.float32)
@@ -65,22 +64,38 @@ class RingProfile:
         return rho[keep], score[at][keep], level[at][keep]
 
 
-def ring_profile(image, homography, *, reach=1.25, inner_px=5.0):
-    """Measure line contrast about the centre of a chart plane on a float32 picture, as a `RingProfile`."""
+def ring_profile(image, homography, *, reach=1.25, inner_px=5.0, spoke_deg=(), spoke_width_px=1.5):
+    """Measure line contrast about the centre of a chart plane on a float32 picture, as a `RingProfile`.
+
+    reach : largest radius; spoke_deg : plane angles of lines to leave out of the sectors
+    """
     outer_px = outer_radius(homography)
     per_block = int(np.clip(round(2 * np.pi * outer_px / N_BLOCKS / 2.5), 4, 10))
-    angle = np.arange(N_BLOCKS * per_block) * (360.0 / (N_BLOCKS * per_block))
+    angle = (np.arange(N_BLOCKS * per_block) + 0.5) * (360.0 / (N_BLOCKS * per_block))
     rho = np.arange(0, reach * outer_px, STEP_PX) / outer_px
     polar = unwrap(image, homography, angle, rho)
     block = polar.reshape(N_BLOCKS, per_block, -1).mean(axis=1)
+    if len(spoke_deg):
+        free = _clear_of(angle, np.asarray(spoke_deg), spoke_width_px / 2 + 1.0, rho * outer_px)
+        share = free.reshape(N_BLOCKS, per_block, -1).sum(axis=1, dtype=np.float32)
+        kept = (polar * free).reshape(N_BLOCKS, per_block, -1).sum(axis=1)
+        block = np.where(share >= max(1, 0.25 * per_block), kept / np.maximum(share, 1), block)
     sigma = LINE_SIGMA_PX / STEP_PX
     smooth = cv2.GaussianBlur(block, (0, 0), sigmaX=sigma, sigmaY=1e-3)
     wide = cv2.GaussianBlur(block, (0, 0), sigmaX=2.2 * sigma, sigmaY=1e-3)
     answer = wide - smooth
     answer[:, rho * outer_px < inner_px] = 0
     inside = answer[:, (rho * outer_px > inner_px) & (rho < 1)]
-    noise = 1.4826 * float(np.median(np.abs(inside)))
+    # What the sectors have in common is rings; the quiet part of what they differ by is noise, even where most of a
+    # busy chart is lines (0.385 sigma is the 30 % point of a normal distribution's size).
+    noise = float(np.percentile(np.abs(inside - np.median(inside, axis=0)), 30)) / 0.385
     return RingProfile(rho=rho, answer=answer, floor=max(NOISE_FACTOR * noise, FLOOR_LEVELS))
+
+
+def _clear_of(angle_deg, spoke_deg, half_px, radius_px):
+    """(angles, radii) bool: further than half_px from every spoke."""
+    apart = np.abs((angle_deg[:, None] - spoke_deg + 180) % 360 - 180).min(axis=1)
+    return np.radians(apart)[:, None] * radius_px[None, :] > half_px
 
 
 def _lobes(radius_px, level):
@@ -119,7 +134,7 @@ def drawn_arc(profile, rho, sign):
     return mask, np.array([((best_start + best_length) * width) % 360, (best_start * width) % 360])
 
 
-def centre_profile(image, homography, *, reach_px=7.0, rounds=3):
+def centre_profile(image, homography, *, reach_px=7.0, rounds=6):
     """Shift and stretch a homography until the sectors' profiles agree; returns the improved homography.
 
     Every sector is slid along the radius to fit the mean of all (all rings at once); its slide is the share of a

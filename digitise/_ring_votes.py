@@ -21,6 +21,7 @@ NOISE_FACTOR = 4.0  # and this many times the noise of the gradient
 MAX_VOTERS = 40_000
 N_DIRECTIONS = 90
 VOTE_CAP = 4.0  # one direction cannot count for more than this many standard deviations
+RHO_BIN_PX = 2.0
 CENTRE_STEP_PX = 4.0  # spacing of the candidate centres on the reduced picture
 N_SECTORS = 72  # of a circle, each drawn or not
 RING_MISS = 0.09  # radians between gradient and radius of a ring pixel
@@ -97,33 +98,40 @@ def centre_candidates(edges, *, n_max=8):
     if len(edges.x) < 50:
         return []
     h, w = edges.shape
-    bin_px = 2.0
-    reach = float(np.hypot(h, w))
-    n_rho = int(2 * reach / bin_px) + 8
-    angle = np.arctan2(edges.gy, edges.gx) % np.pi
-    k = np.minimum((angle * (N_DIRECTIONS / np.pi)).astype(np.int64), N_DIRECTIONS - 1)
-    # The line through the pixel along its gradient, as distance from the origin along the line's normal.
-    rho = -edges.gy * edges.x + edges.gx * edges.y
-    rho = np.where(edges.gy < 0, -rho, rho)
-    j = ((rho + reach) / bin_px).astype(np.int64)
-    count = np.bincount(k * n_rho + j, minlength=N_DIRECTIONS * n_rho).reshape(N_DIRECTIONS, n_rho)
-    count = count.astype(np.float32)
-    near = cv2.blur(count, (5, 1))
-    wide = cv2.blur(count, (61, 1))
-    score = np.clip((near - wide) / np.sqrt(wide / 5 + 0.04), -1, VOTE_CAP).astype(np.float32)
-    mid = (np.arange(N_DIRECTIONS) + 0.5) * np.pi / N_DIRECTIONS
-    xs = np.arange(0, w, CENTRE_STEP_PX)
-    ys = np.arange(0, h, CENTRE_STEP_PX)
-    total = np.zeros((len(ys), len(xs)), np.float32)
-    for row, c, s in zip(score, np.cos(mid), np.sin(mid)):
-        at = ((-s * xs)[None, :] + (c * ys)[:, None] + reach) / bin_px
-        total += row[at.astype(np.int32)]
-    total /= N_DIRECTIONS
+    total = sum(_line_votes(edges, gx, gy) for gx, gy in ((edges.gx, edges.gy), (-edges.gy, edges.gx)))
+    xs, ys = np.arange(total.shape[1]) * CENTRE_STEP_PX, np.arange(total.shape[0]) * CENTRE_STEP_PX
     total = cv2.GaussianBlur(total, (0, 0), 1.0)
     top = cv2.dilate(total, np.ones((9, 9), np.uint8))
     peak_y, peak_x = np.nonzero((total >= top) & (total > 0.25 * total.max()))
     order = np.argsort(-total[peak_y, peak_x])[:n_max]
     return [(float(xs[peak_x[i]]), float(ys[peak_y[i]]), float(total[peak_y[i], peak_x[i]])) for i in order]
+
+
+def _line_votes(edges, dx, dy):
+    """Votes (0 to VOTE_CAP) of the lines through all edge pixels along (dx, dy), at every candidate centre.
+
+    Along the gradient they are the radii of rings; square to it they are the spokes themselves.
+    """
+    h, w = edges.shape
+    reach = float(np.hypot(h, w))
+    n_rho = int(2 * reach / RHO_BIN_PX) + 8
+    angle = np.arctan2(dy, dx) % np.pi
+    k = np.minimum((angle * (N_DIRECTIONS / np.pi)).astype(np.int64), N_DIRECTIONS - 1)
+    rho = (edges.y * dx - edges.x * dy) * np.where((dy < 0) | ((dy == 0) & (dx < 0)), -1, 1)
+    j = ((rho + reach) / RHO_BIN_PX).astype(np.int64)
+    count = np.bincount(k * n_rho + j, minlength=N_DIRECTIONS * n_rho).reshape(N_DIRECTIONS, n_rho)
+    count = count.astype(np.float32)
+    near = cv2.blur(count, (5, 1))
+    wide = cv2.blur(count, (61, 1))
+    score = np.clip((near - wide) / np.sqrt(wide / 5 + 0.04), -1, VOTE_CAP).astype(np.float32)
+    middle = (np.arange(N_DIRECTIONS) + 0.5) * np.pi / N_DIRECTIONS
+    xs = np.arange(0, w, CENTRE_STEP_PX, dtype=np.float32) / RHO_BIN_PX
+    ys = np.arange(0, h, CENTRE_STEP_PX, dtype=np.float32) / RHO_BIN_PX
+    total = np.zeros((len(ys), len(xs)), np.float32)
+    for row, c, s in zip(score, np.cos(middle), np.sin(middle)):
+        at = (np.float32(-s) * xs + np.float32(reach / RHO_BIN_PX)) + np.float32(c) * ys[:, None]
+        total += row[at.astype(np.int32)]
+    return total / N_DIRECTIONS
 
 
 def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=(0.15, 0.10, 0.06, 0.04, 0.03)):

@@ -33,6 +33,11 @@ class Spokes:
     skew_deg: float
     score: np.ndarray
 
+    @property
+    def drawn_deg(self):
+        """(m,) plane angles at which the spokes were found, skew included."""
+        return (self.deg + self.skew_deg) % 360
+
 
 NO_SPOKES = Spokes(deg=np.zeros(0), step_deg=float("nan"), skew_deg=0.0, score=np.zeros(0))
 

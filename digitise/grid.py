@@ -112,17 +112,20 @@ def find_grid(picture, box):
         raise _no_grid(picture)
     plane = np.linalg.inv(to_full) @ plane
     plane = centre_profile(work, plane / plane[2, 2])
-    plane = _align(work, plane)
+    whole = np.array([0.0, 360.0])
+    spokes = find_spokes(work, plane, arc_deg=whole)
+    plane = _align(work, plane, spokes)
     if plane is None:
         raise _no_grid(picture)
-    profile = ring_profile(work, plane)
+    spokes = find_spokes(work, plane, arc_deg=whole)
+    profile = ring_profile(work, plane, spoke_deg=spokes.drawn_deg)
     rho, score, _ = profile.peaks(STRONG)
     blocks, arc = drawn_arc(profile, rho, np.sign(score))
     rho, score, _ = profile.peaks(WEAK, blocks)
     full = gray8.astype(np.float32)
     plane = to_full @ plane
     plane /= plane[2, 2]
-    rings = choose_rings(full, plane, rho, score, arc_deg=arc)
+    rings = choose_rings(full, plane, rho, score, arc_deg=arc, avoid_deg=spokes.drawn_deg)
     if not rings:
         raise _no_grid(picture)
     return _measure(full, plane, rings, arc, (box.x, box.y))
@@ -172,14 +175,20 @@ def _first_plane(gray8, box):
     return h / h[2, 2]
 
 
-def _align(work, plane):
+def _align(work, plane, spokes):
     """Bring the strong rings into line on the reduced picture; None when there are none."""
-    rho, score, level = ring_profile(work, plane, reach=1.1).peaks(STRONG)
-    order = np.argsort(-np.abs(score) * np.sqrt(np.abs(level)))[:6]
-    if not len(order):
-        return None
-    rings = [ring_points(work, plane, rho[k], reach_px=4.0, sign=np.sign(score[k]), n_max=180) for k in order]
-    return fit_plane(rings, [], [], start=parameters_of(plane), ring_rho=rho[order]).homography
+    for tilt in (False, True):
+        profile = ring_profile(work, plane, reach=1.1, spoke_deg=spokes.drawn_deg)
+        rho, score, level = profile.peaks(STRONG)
+        order = np.argsort(-np.abs(score) * np.sqrt(np.abs(level)))[:6]
+        if not len(order):
+            return None
+        rings = [
+            ring_points(work, plane, rho[k], sign=np.sign(score[k]), n_max=180, avoid_deg=spokes.drawn_deg)
+            for k in order
+        ]
+        plane = fit_plane(rings, [], [], start=parameters_of(plane), ring_rho=rho[order], tilt=tilt).homography
+    return plane
 
 
 def _measure(full, plane, rings, arc, origin):
@@ -188,15 +197,16 @@ def _measure(full, plane, rings, arc, origin):
     plane /= plane[2, 2]
     rho = np.array([ring.rho for ring in rings]) / rings[0].rho
     sign = [ring.points.sign for ring in rings]
-    outer_px = outer_radius(plane)
     spokes = find_spokes(full, plane, arc_deg=arc)
     parameters = parameters_of(plane)
     parameters[3] = np.radians(spokes.skew_deg)
-    gap = np.abs(np.diff(rho)).min() * outer_px if len(rho) > 1 else 20.0
-    reach_px = float(np.clip(0.4 * gap, 3.0, 6.0))
+    width = [ring.points.width_px for ring in rings]
     for _ in range(2):
         plane = homography_of(parameters)
-        rings = [ring_points(full, plane, r, arc_deg=arc, reach_px=reach_px, sign=s) for r, s in zip(rho, sign)]
+        rings = [
+            ring_points(full, plane, r, arc_deg=arc, reach_px=max(3.0, w / 2 + 2.5), sign=s)
+            for r, s, w in zip(rho, sign, width)
+        ]
         lines = [spoke_points(full, plane, a, 0.25, 0.97) for a in spokes.deg]
         fit = fit_plane(rings, lines, spokes.deg, start=parameters, ring_rho=rho)
         parameters, rho = fit.parameters, fit.ring_rho
