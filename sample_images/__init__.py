@@ -1,0 +1,1 @@
+"""Sample charts of invented antennas with their known curves; shipped as `digitise.samples`."""
