@@ -12,7 +12,7 @@ import numpy as np
 
 from ._ring_votes import centre_candidates, find_edges, fit_hub, ring_shares, spoke_count
 
-__all__ = ["Box", "find_charts"]
+__all__ = ["Box", "box_around", "find_charts"]
 
 MIN_OUTER_PX = 40.0  # smallest chart looked for, picture px
 MIN_OUTER_WORK_PX = 22.0  # and on the reduced picture
@@ -65,6 +65,12 @@ def find_charts(picture, *, crop=None):
         outer = chart["outer"] / edges.zoom
         boxes.append(_box(x, y, outer, chart["share"], (left, top, width, height)))
     return tuple(_reading_order(boxes))
+
+
+def box_around(grid, picture):
+    """The `Box` of a chart whose `Grid` is known already."""
+    size = (0, 0, picture.width, picture.height)
+    return _box(grid.centre_x, grid.centre_y, grid.outer_px, float(grid.ring_drawn[0]), size)
 
 
 def _clip_crop(crop, width, height):

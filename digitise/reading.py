@@ -12,10 +12,12 @@ from . import scale as scale_stage
 from ._sheet import cut_sheet
 from .budget import PARTS, Budget, make_budget
 from .exceptions import DigitiseError, NotReadError
-from .find import find_charts
+from .find import box_around, find_charts
 from .grid import find_grid
+from .kept import Kept
 from .labels import Labels, read_labels
 from .review import reason
+from .settings import Settings
 from .table import Table
 from .traces import find_traces
 
@@ -83,10 +85,16 @@ class Reading:
 def read_charts(picture, *, settings):
     """Read every chart on a `Picture` with `Settings`; a tuple of `Reading` in reading order.
 
+    A grid that the settings hold is that of one chart, which is then read alone.
+
     Raises `NotReadError` when a chart needs help (no grid, no levels, no ink), `UsageError` for settings that
     do not fit this picture (a mark far from any ring, contradictory marks). With several charts, those that can be
     read are, and an error is raised only when none can.
     """
+    if settings.grid is not None:
+        number, n_charts = settings.chart or (1, 1)
+        reading = read_chart(picture, box_around(settings.grid, picture), settings=settings)
+        return (replace(reading, number=number, n_charts=n_charts),)
     boxes = find_charts(picture, crop=settings.crop)
     if not boxes:
         raise NotReadError(
@@ -117,14 +125,17 @@ def read_charts(picture, *, settings):
     return tuple(readings)
 
 
-def read_chart(picture, box, *, settings):
-    """Read the chart at one `Box`; raises as `read_charts` does."""
-    grid = find_grid(picture, box)
-    labels = read_labels(picture, box, grid) if _needs_labels(settings) else Labels()
+def read_chart(picture, box, *, settings, kept=None):
+    """Read the chart at one `Box`; raises as `read_charts` does.
+
+    kept : `Kept` stages of earlier readings of the same picture, taken again where a change does not touch them
+    """
+    kept = Kept() if kept is None else kept
+    grid = settings.grid or kept.result(find_grid, picture, box)
+    labels = kept.result(read_labels, picture, box, grid) if _needs_labels(settings) else Labels()
     scale = settings.scale or scale_stage.make_scale(grid, settings=settings, labels=labels)
     bearing = settings.bearing or bearing_stage.make_bearing(grid, settings=settings, labels=labels)
-    sheet = cut_sheet(picture, grid)
-    found = find_traces(sheet, grid, settings=settings)
+    found = kept.result(_all_traces, picture, grid, settings.inks, settings.covers, settings.pins, kept=kept)
     traces = tuple(_trace_reading(item, grid, scale, bearing, settings) for item in found)
     reasons = (*grid.reasons, *scale.reasons, *bearing.reasons)
     caption = " ".join(label.text for label in labels.with_role("caption"))
@@ -132,6 +143,12 @@ def read_chart(picture, box, *, settings):
         picture=picture, box=box, settings=settings, grid=grid, labels=labels, scale=scale, bearing=bearing,
         traces=traces, caption=caption, reasons=reasons,
     )  # fmt: skip
+
+
+def _all_traces(picture, grid, inks, covers, pins, *, kept):
+    """The traces, by the settings that they hang on and no others."""
+    sheet = kept.result(cut_sheet, picture, grid, large=True)
+    return find_traces(sheet, grid, settings=Settings(inks=inks, covers=covers, pins=pins))
 
 
 def _needs_labels(settings):

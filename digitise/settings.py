@@ -39,6 +39,7 @@ class Settings:
     page : 1-based page of a PDF
     step_deg : step of the table, degrees
     scale, bearing : a Scale and a Bearing taken over from an earlier record, used in place of finding them
+    grid : a Grid corrected by hand, used in place of finding it
     chart : (k, n), read only the k-th, from 1 in reading order, of the n charts on the picture
     """
 
@@ -57,6 +58,7 @@ class Settings:
     step_deg: float = 1.0
     scale: object = None
     bearing: object = None
+    grid: object = None
     chart: tuple | None = None
 
     def __post_init__(self):
