@@ -1,4 +1,4 @@
-"""JSON as the records hold it: exact numbers, no NaN, short lists on one line; and typed look-up in what was read."""
+"""JSON as the records hold it: exact numbers, no NaN, short lists on one line; and typed look-up in it."""
 
 import json
 import math
@@ -11,7 +11,7 @@ class Malformed(ValueError):
 
 
 def to_plain(value, digits=None):
-    """Numpy arrays, tuples and non-finite numbers as JSON knows them; floats to so many significant digits."""
+    """Arrays, tuples and non-finite numbers as JSON knows them; floats to so many significant digits."""
     if hasattr(value, "tolist"):
         value = value.tolist()
     if isinstance(value, dict):
@@ -37,7 +37,7 @@ def to_text(value, indent=""):
 
 
 def take(node, name, kind, *, default=...):
-    """`node[name]`, which must be of type `kind`; `name` may be dotted, a default stands for an absent one."""
+    """`node[name]`, which must be of type `kind`; `name` may be dotted; a default is for an absent one."""
     at = node
     for part in name.split("."):
         if not isinstance(at, dict) or part not in at:
@@ -60,7 +60,7 @@ def take_number(node, name, *, or_null=False, default=...):
 
 
 def take_numbers(node, name, shape):
-    """A list (of lists) of finite numbers as nested lists of float; an entry of `shape` may be None for any length."""
+    """A list (of lists) of finite numbers, as float; an entry of `shape` may be None for any length."""
     return _numbers(take(node, name, list), name, shape)
 
 

@@ -1,4 +1,4 @@
-"""Colours for the proof: what the picture holds, and colours that are far from all of it, for every kind of sight."""
+"""Colours for the proof: what the picture holds, and what is far from all of it, for every kind of sight."""
 
 import colorsys
 
@@ -8,14 +8,20 @@ __all__ = ["distinct_colours", "main_colours"]
 
 LEAST_SHARE = 3e-4  # a colour on fewer pixels than this share cannot be mistaken for a trace
 SAMPLE_PIXELS = 120_000
-LEAST_CONTRAST = 2.6  # of a line to the paper; 3 is what WCAG 2.1, 1.4.11, asks of graphics, and leaves too few hues
+LEAST_CONTRAST = (
+    2.6  # of a line to the paper; 3 is what WCAG 2.1, 1.4.11, asks of graphics, and leaves too few hues
+)
 
 # Colour-blind sight: protanopia and deuteranopia as matrices on linear RGB
 # (Machado, Oliveira & Fernandes 2009, IEEE TVCG 15(6):1291-1298, severity 1.0; values from memory).
 SIGHTS = (
     np.eye(3),
-    np.array([[0.152286, 1.052583, -0.204868], [0.114503, 0.786281, 0.099216], [-0.003882, -0.048116, 1.051998]]),
-    np.array([[0.367322, 0.860646, -0.227968], [0.280085, 0.672501, 0.047413], [-0.011820, 0.042940, 0.968881]]),
+    np.array(
+        [[0.152286, 1.052583, -0.204868], [0.114503, 0.786281, 0.099216], [-0.003882, -0.048116, 1.051998]]
+    ),
+    np.array(
+        [[0.367322, 0.860646, -0.227968], [0.280085, 0.672501, 0.047413], [-0.011820, 0.042940, 0.968881]]
+    ),
 )
 
 SIGHT_WEIGHTS = np.array([0.5, 0.25, 0.25])
@@ -49,7 +55,11 @@ def main_colours(rgb):
     """
     every = max(1, int(np.sqrt(rgb.shape[0] * rgb.shape[1] / SAMPLE_PIXELS)))
     pixels = rgb[::every, ::every].reshape(-1, 3)
-    cell = (pixels[:, 0].astype(np.int32) >> 4) << 8 | (pixels[:, 1].astype(np.int32) >> 4) << 4 | pixels[:, 2] >> 4
+    cell = (
+        (pixels[:, 0].astype(np.int32) >> 4) << 8
+        | (pixels[:, 1].astype(np.int32) >> 4) << 4
+        | pixels[:, 2] >> 4
+    )
     counts = np.bincount(cell, minlength=4096)
     kept = np.flatnonzero(counts >= max(LEAST_SHARE * len(pixels), 1))
     sums = np.stack([np.bincount(cell, weights=pixels[:, k], minlength=4096) for k in range(3)], axis=1)
@@ -77,7 +87,9 @@ def distinct_colours(present, paper, n):
     contrast = _contrast(candidates, paper)
     candidates = candidates[contrast >= min(LEAST_CONTRAST, np.sort(contrast)[-2 * n])]
     seen = [_oklab(candidates, sight) for sight in SIGHTS]
-    nearest = np.array([_distance(lab, _oklab(present, sight)) for lab, sight in zip(seen, SIGHTS)])
+    nearest = np.array(
+        [_distance(lab, _oklab(present, sight)) for lab, sight in zip(seen, SIGHTS, strict=True)]
+    )
     picked = []
     for _ in range(n):
         best = int(np.argmax(SIGHT_WEIGHTS @ nearest))
@@ -100,7 +112,8 @@ def _contrast(rgb, paper):
 
 
 def _oklab(rgb, sight):
-    """Oklab of sRGB colours (n, 3) as a pair of eyes of one kind sees them (Ottosson 2020; values from memory).
+    """Oklab of sRGB colours (n, 3) as a pair of eyes of one kind sees them (Ottosson 2020; values from
+    memory).
 
     The colour axes count double, so that a step of hue weighs about as much as one of lightness.
     """

@@ -1,7 +1,9 @@
-"""The drawn parts of the proof: the reading over the picture, the same reading drawn anew, and its error by bearing.
+"""The drawn parts of the proof: the reading over the picture, the same reading drawn anew, and its error by
+bearing.
 
-Everything is drawn as a mask of twice the size, shrunk and laid on, which gives even lines of any width. States differ by shape besides colour: seen is
-a thick line, bridged a thin line with open circles, floor triangles, missing a gap with a cross on the outer ring.
+Everything is drawn as a mask of twice the size, shrunk and laid on, which gives even lines of any width.
+States differ by shape besides colour: seen is a thick line, bridged a thin line with open circles, floor
+triangles, missing a gap with a cross on the outer ring.
 """
 
 from dataclasses import dataclass
@@ -9,7 +11,21 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-__all__ = ["Mask", "View", "arc_angles", "on_arc", "draw_error_strip", "draw_grid", "draw_sample", "draw_trace", "make_view", "picture_panel"]
+__all__ = [
+    "ERROR_TICKS_DB",
+    "Mask",
+    "View",
+    "arc_angles",
+    "draw_error_strip",
+    "draw_grid",
+    "draw_sample",
+    "draw_trace",
+    "error_place",
+    "make_view",
+    "on_arc",
+    "picture_panel",
+    "rule_strip",
+]
 
 FINER = 2  # mask pixels a panel pixel
 SHIFT = 4  # fixed-point bits of a place, for OpenCV
@@ -21,13 +37,15 @@ MARKER_APART_PX = 11.0
 BAND_STRENGTH = 0.35
 RING_STRENGTH, SPOKE_STRENGTH = 0.42, 0.22  # how far grid lines stand off the paper
 ERROR_FROM_DB, ERROR_TO_DB = 0.003, 30.0  # ends of the error axis
+ERROR_TICKS_DB = (0.01, 0.1, 1.0, 10.0)
 
 
 @dataclass(frozen=True, kw_only=True)
 class View:
     """The part of the picture that a panel shows.
 
-    left, top : px on the picture of the outer corner of the panel's first pixel; zoom : panel px per picture px; width, height : panel px
+    left, top : px on the picture of the outer corner of the panel's first pixel; zoom : panel px per picture
+        px; width, height : panel px
     """
 
     left: float
@@ -54,7 +72,7 @@ def on_arc(grid, plane_deg):
 
 
 def make_view(reading, *, width, least, most):
-    """The `View` round one chart: its region, not farther than its labels can be, `least` to `most` px high."""
+    """The `View` round one chart: its region, as far as its labels can be, `least` to `most` px high."""
     grid, box = reading.grid, reading.box
     x, y = grid.to_picture(np.full(181, 1.0), arc_angles(grid, 181))
     x, y = np.append(x, grid.centre_x), np.append(y, grid.centre_y)
@@ -77,7 +95,9 @@ def make_view(reading, *, width, least, most):
 def picture_panel(rgb, view, paper):
     """The picture's part as a panel, (height, width, 3) uint8; beyond the picture is paper."""
     x0, y0 = max(int(view.left) - 2, 0), max(int(view.top) - 2, 0)
-    part = rgb[y0 : int(view.top + view.height / view.zoom) + 3, x0 : int(view.left + view.width / view.zoom) + 3]
+    part = rgb[
+        y0 : int(view.top + view.height / view.zoom) + 3, x0 : int(view.left + view.width / view.zoom) + 3
+    ]
     across, down = 1.0, 1.0
     if view.zoom < 0.7:  # averaging first keeps thin lines whole
         height, width = part.shape[:2]
@@ -93,9 +113,13 @@ def picture_panel(rgb, view, paper):
         ]
     )
     return cv2.warpAffine(
-        part, matrix, (view.width, view.height),
-        flags=cv2.INTER_CUBIC, borderMode=cv2.BORDER_CONSTANT, borderValue=tuple(float(v) for v in paper),
-    )  # fmt: skip
+        part,
+        matrix,
+        (view.width, view.height),
+        flags=cv2.INTER_CUBIC,
+        borderMode=cv2.BORDER_CONSTANT,
+        borderValue=tuple(float(v) for v in paper),
+    )
 
 
 class Mask:
@@ -109,7 +133,13 @@ class Mask:
     def line(self, path, width_px):
         """A line through the points of `path`, (x, y) arrays."""
         cv2.polylines(
-            self.fine, [self._fixed(np.stack(path, axis=1))], False, 255, max(1, round(width_px * FINER)), cv2.LINE_AA, SHIFT
+            self.fine,
+            [self._fixed(np.stack(path, axis=1))],
+            False,
+            255,
+            max(1, round(width_px * FINER)),
+            cv2.LINE_AA,
+            SHIFT,
         )
 
     def circle(self, place):
@@ -199,6 +229,18 @@ def error_place(error_db):
     return np.log(np.asarray(error_db) / ERROR_FROM_DB) / np.log(ERROR_TO_DB / ERROR_FROM_DB)
 
 
+def rule_strip(strip, paper):
+    """Lines of even error and bearing on the bare strip."""
+    height, width = strip.shape[:2]
+    shade = tuple(float(v) for v in np.clip(paper + (-1 if np.mean(paper) > 127 else 1) * 45, 0, 255))
+    for level in ERROR_TICKS_DB:
+        y = round((1 - float(error_place(level))) * (height - 1))
+        cv2.line(strip, (0, y), (width - 1, y), shade, 1)
+    for bearing in range(0, 361, 30):
+        x = round(bearing / 360 * (width - 1))
+        cv2.line(strip, (x, 0), (x, height - 1), shade, 1)
+
+
 def draw_sample(canvas, state, colour):
     """A short piece of a trace in one state, for the legend."""
     height, width = canvas.shape[:2]
@@ -220,7 +262,11 @@ def _states(mask, x, y, state, width_px, *, closed, ring):
         for first, count in _runs(chosen):
             at = (first + np.arange(count + 1)) % n
             mask.line((x[at], y[at]), width)
-    for name, mark, places in (("bridged", mask.circle, (x, y)), ("floor", mask.triangle, (x, y)), ("missing", mask.cross, ring)):
+    for name, mark, places in (
+        ("bridged", mask.circle, (x, y)),
+        ("floor", mask.triangle, (x, y)),
+        ("missing", mask.cross, ring),
+    ):
         before = None
         for k in np.flatnonzero(state == name):
             place = np.array([places[0][k], places[1][k]])

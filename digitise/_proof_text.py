@@ -17,7 +17,7 @@ def font(size):
 
 
 def printable(words):
-    """Text in the letters that the font has; dashes and the minus sign become hyphens, what is unknown "?"."""
+    """Text in the letters that the font has; dashes and the minus sign become hyphens, others "?"."""
     return "".join(_letter(letter) for letter in words)
 
 

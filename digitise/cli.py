@@ -1,8 +1,9 @@
-"""The command line: find the command's module by name, let it parse and run, turn what is raised into one line.
+"""The command line: find the command's module by name, let it parse and run, turn what is raised into one
+line.
 
-A command is a module of `digitise.commands` with `add_arguments(parser)` and `run(args) -> exit status`. Only the
-module of the command at hand is imported, so that one command never waits for another's imports. Every command
-has `--verbose` and `--debug` from here.
+A command is a module of `digitise.commands` with `add_arguments(parser)` and `run(args) -> exit status`. Only
+the module of the command at hand is imported, so that one command never waits for another's imports. Every
+command has `--verbose` and `--debug` from here.
 
 Exit status: 0 done; 2, 3, 4 as in `digitise.exceptions`; 70 an error of the program itself; 130 interrupted;
 141 the reader of our output went away.
@@ -32,7 +33,8 @@ COMMANDS = {
     "window": "open the desktop window",
     "demo": "read the shipped sample pictures and compare with their known curves",
 }
-EXIT_INTERNAL, EXIT_INTERRUPTED, EXIT_BROKEN_PIPE = 70, 130, 141  # sysexits.h EX_SOFTWARE; 128 + SIGINT, SIGPIPE
+EXIT_INTERNAL = 70  # sysexits.h, EX_SOFTWARE
+EXIT_INTERRUPTED, EXIT_BROKEN_PIPE = 130, 141  # 128 + SIGINT, 128 + SIGPIPE, as shells report them
 NEGATIVE = re.compile(r"-\.?\d")
 
 
@@ -71,7 +73,8 @@ def report(error, *, source=""):
         print(f"digitise: {where}not enough memory; crop or scale the picture down first", file=sys.stderr)
     else:
         print(
-            f"digitise: {where}internal error ({type(error).__name__}: {said}); run again with --debug to see where",
+            f"digitise: {where}internal error ({type(error).__name__}: {said}); "
+            "run again with --debug to see where",
             file=sys.stderr,
         )
     return EXIT_INTERNAL
@@ -88,8 +91,8 @@ class _Parser(argparse.ArgumentParser):
 def _run(argv):
     parser = _Parser(
         prog="digitise",
-        description="Reads a picture of a polar antenna radiation-pattern chart into a table of angle against "
-        "relative dB, with an error for every row.",
+        description="Reads a picture of a polar antenna radiation-pattern chart into a table of angle "
+        "against relative dB, with an error for every row.",
         epilog="digitise COMMAND --help tells a command's options. Numbers are in degrees, dB and pixels.",
         allow_abbrev=False,
     )
@@ -101,21 +104,29 @@ def _run(argv):
     for name, purpose in COMMANDS.items():
         if importlib.util.find_spec(f"digitise.commands.{name}") is None:
             continue
-        command = named.add_parser(name, help=purpose, description=purpose[:1].upper() + purpose[1:] + ".", allow_abbrev=False)
+        command = named.add_parser(
+            name, help=purpose, description=purpose[:1].upper() + purpose[1:] + ".", allow_abbrev=False
+        )
         if name == wanted:
             module = importlib.import_module(f"digitise.commands.{name}")
             module.add_arguments(command)
         _add_common(command, default=argparse.SUPPRESS)  # what stood before the command stays
     args = parser.parse_args(argv)
     if args.verbose:
-        logging.basicConfig(stream=sys.stderr, level=logging.WARNING, format="%(relativeCreated)6.0f ms %(name)s: %(message)s")
+        logging.basicConfig(
+            stream=sys.stderr, level=logging.WARNING, format="%(relativeCreated)6.0f ms %(name)s: %(message)s"
+        )
         logging.getLogger("digitise").setLevel(logging.DEBUG)
     return module.run(args)
 
 
 def _add_common(parser, *, default):
-    parser.add_argument("--verbose", action="store_true", default=default, help="log stages and times on standard error")
-    parser.add_argument("--debug", action="store_true", default=default, help="show where an error of the program arose")
+    parser.add_argument(
+        "--verbose", action="store_true", default=default, help="log stages and times on standard error"
+    )
+    parser.add_argument(
+        "--debug", action="store_true", default=default, help="show where an error of the program arose"
+    )
 
 
 def _join_negative(argv):

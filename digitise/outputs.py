@@ -1,11 +1,12 @@
 """What a reading leaves on disk: file names, and writing them whole or not at all.
 
-For a picture `panel.png`: `panel.csv`, `panel.record.json`, `panel.proof.png`; with several traces `panel.1.csv`,
-`panel.2.csv` ...; with several charts on the picture the stem becomes `panel-1`, `panel-2` ...
+For a picture `panel.png`: `panel.csv`, `panel.record.json`, `panel.proof.png`; with several traces
+`panel.1.csv`, `panel.2.csv` ...; with several charts on the picture the stem becomes `panel-1`, `panel-2` ...
 
-All files of one picture are written under passing names in the same folder and renamed only when every one of them
-is there; when a rename fails, what was renamed is undone. A file that is in the way is replaced only when it belongs
-to an earlier reading of the same picture name, as the record beside it says; anything else is refused.
+All files of one picture are written under passing names in the same folder and renamed only when every one of
+them is there; when a rename fails, what was renamed is undone. A file that is in the way is replaced only
+when it belongs to an earlier reading of the same picture name, as the record beside it says; anything else is
+refused.
 """
 
 import contextlib
@@ -19,12 +20,21 @@ from .exceptions import DigitiseError, UsageError
 from .record import make_record, read_record, write_record
 from .table import write_table
 
-__all__ = ["ChartFiles", "Written", "chart_stem", "check_folder", "check_stems", "make_files", "write_file", "write_whole"]
+__all__ = [
+    "ChartFiles",
+    "Written",
+    "chart_stem",
+    "check_folder",
+    "check_stems",
+    "make_files",
+    "write_file",
+    "write_whole",
+]
 
 
 @dataclass(frozen=True, kw_only=True)
 class ChartFiles:
-    """One chart's files before they are written: the stem they share, name -> bytes, and the record among them."""
+    """One chart's files before they are written: the stem they share, name -> bytes, and the record."""
 
     stem: str
     record: dict
@@ -37,7 +47,8 @@ class Written:
 
     paths : tuple of Path
     replaced : tuple of names that an earlier reading had left and that were replaced
-    left_over : tuple of table names of the earlier reading that the new one has no use for, and that still stand
+    left_over : tuple of table names of the earlier reading that the new one has no use for, and that still
+        stand
     other_picture : True when the earlier reading was of a picture with other content
     """
 
@@ -68,7 +79,10 @@ def make_files(readings, *, with_proof=True):
         stem = chart_stem(reading.picture.path, chart_number=reading.number, n_charts=reading.n_charts)
         tables = _table_names(stem, len(reading.traces))
         record = make_record(reading, tables=tables)
-        files = {name: write_table(trace.table).encode() for name, trace in zip(tables, reading.traces, strict=True)}
+        files = {
+            name: write_table(trace.table).encode()
+            for name, trace in zip(tables, reading.traces, strict=True)
+        }
         files[f"{stem}.record.json"] = write_record(record).encode()
         if with_proof:
             files[f"{stem}.proof.png"] = encode_proof(draw_proof(reading, record))
@@ -80,7 +94,8 @@ def check_stems(paths):
     """Refuse two pictures whose files would have the same names; raises `UsageError`."""
     first = {}
     for path in paths:
-        other = first.setdefault(chart_stem(path).casefold(), path)  # some file systems do not tell case apart
+        # Some file systems do not tell case apart.
+        other = first.setdefault(chart_stem(path).casefold(), path)
         if other is not path:
             raise UsageError(
                 f"its files would take the names of those of {other}",
@@ -202,7 +217,7 @@ def _rename_all(moves, token):
 
 
 def _in_the_way(chart, folder):
-    """What stands where one chart's files go: names to replace, tables left over, and whether the picture differs."""
+    """What stands where one chart's files go: names to replace, tables left over, another picture or not."""
     standing = [name for name in chart.files if os.path.lexists(folder / name)]
     own = f"{chart.stem}.record.json"
     try:
@@ -221,7 +236,8 @@ def _in_the_way(chart, folder):
     for name in standing:
         if name not in tables | {own, f"{chart.stem}.proof.png"} or (folder / name).is_dir():
             raise _in_way(folder / name, "is there already and belongs to no earlier reading")
-    numbered = re.compile(re.escape(chart.stem) + r"(\.[0-9]+)?\.csv")  # a record may name anything: look here only
+    # A record may name anything: only what such a name can be is looked for, and here only.
+    numbered = re.compile(re.escape(chart.stem) + r"(\.[0-9]+)?\.csv")
     left_over = [name for name in sorted(tables) if numbered.fullmatch(name) and name not in chart.files]
     left_over = [name for name in left_over if (folder / name).is_file()]
     return standing, left_over, old["sha256"] != new["sha256"]

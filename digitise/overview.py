@@ -55,7 +55,9 @@ def look_at(picture, *, settings):
     boxes = find_charts(picture, crop=settings.crop)
     if not boxes:
         raise NotReadError(
-            "no polar chart was found on the picture", stage="find", remedy="cut the chart out with --crop X,Y,W,H"
+            "no polar chart was found on the picture",
+            stage="find",
+            remedy="cut the chart out with --crop X,Y,W,H",
         )
     return tuple(_look_at_chart(picture, box, number, settings) for number, box in enumerate(boxes, 1))
 

@@ -29,7 +29,13 @@ def draw_overview(picture, charts):
         for label in chart.labels.found if chart.labels is not None else ():
             x, y = view.place(label.x_px, label.y_px)
             w, h = label.w_px * zoom / 2 + 2, label.h_px * zoom / 2 + 2
-            texts.line((np.array([x - w, x + w, x + w, x - w, x - w]), np.array([y - h, y - h, y + h, y + h, y - h])), 1)
+            texts.line(
+                (
+                    np.array([x - w, x + w, x + w, x - w, x - w]),
+                    np.array([y - h, y - h, y + h, y + h, y - h]),
+                ),
+                1,
+            )
     grids.lay(colour)
     texts.lay(other)
     image = Image.fromarray(shown)

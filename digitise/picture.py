@@ -1,8 +1,9 @@
 """Open a picture file safely and bring it to one form: 8-bit RGB on white, upright.
 
-The file is judged before it is decoded: what kind it is by its first bytes (never by its name), how large it will
-become by its header. Only then are pixels made, so that a small file that unpacks to gigabytes costs nothing.
-Colours are taken as sRGB; an embedded colour profile is not applied, since a trace's place does not hang on it.
+The file is judged before it is decoded: what kind it is by its first bytes (never by its name), how large it
+will become by its header. Only then are pixels made, so that a small file that unpacks to gigabytes costs
+nothing. Colours are taken as sRGB; an embedded colour profile is not applied, since a trace's place does not
+hang on it.
 """
 
 import hashlib
@@ -23,7 +24,15 @@ MAX_MEGAPIXELS = 100  # 300 MB as RGB; a 600 dpi scan of an A3 sheet has 70
 MAX_SIDE_PX = 30_000  # OpenCV's remapping addresses pixels with 16-bit signed numbers
 MAX_FILE_BYTES = 500_000_000  # read whole for its sha256; uncompressed 100 megapixels are 400 MB
 
-KINDS = {"PNG": "png", "JPEG": "jpeg", "MPO": "jpeg", "GIF": "gif", "TIFF": "tiff", "BMP": "bmp", "WEBP": "webp"}
+KINDS = {
+    "PNG": "png",
+    "JPEG": "jpeg",
+    "MPO": "jpeg",
+    "GIF": "gif",
+    "TIFF": "tiff",
+    "BMP": "bmp",
+    "WEBP": "webp",
+}
 DECODERS = ("PNG", "JPEG", "GIF", "TIFF", "BMP", "WEBP")
 KINDS_SAID = "PNG, JPEG, GIF, TIFF, BMP, WebP or PDF"
 FULL_SCALES = (255, 1023, 4095, 16383, 65535)  # white in 8, 10, 12, 14 and 16 bits
@@ -73,14 +82,16 @@ def open_picture(path, *, page=None):
     if data[:1024].lstrip().startswith(b"%PDF-"):
         return _open_pdf(path, page)
     with warnings.catch_warnings():
-        warnings.simplefilter("ignore")  # a decoder's remarks on odd headers; our own bounds are checked below
+        warnings.simplefilter("ignore")  # remarks on odd headers; our own bounds are checked below
         image, notes = _open_image(data, path, page)
         kind = KINDS[image.format]
         try:
             image, turned = _upright(image)
             rgb, made = _to_rgb(image)
         except MemoryError:
-            raise _refusal(path, "not enough memory to open it", "crop or scale the picture down first") from None
+            raise _refusal(
+                path, "not enough memory to open it", "crop or scale the picture down first"
+            ) from None
         except Exception as error:  # a broken file makes decoders raise nearly anything
             raise _broken(path, error) from error
     return Picture(
@@ -136,7 +147,9 @@ def _open_image(data, path, page):
     except Exception:  # a cut file may still hold a whole first frame
         n_frames = 1
     if page is not None and not 1 <= page <= n_frames:
-        raise _refusal(path, f"has {n_frames} page{'s' * (n_frames > 1)}, so no page {page}", "give another --page")
+        raise _refusal(
+            path, f"has {n_frames} page{'s' * (n_frames > 1)}, so no page {page}", "give another --page"
+        )
     notes = []
     try:
         image.seek((page or 1) - 1)
@@ -157,7 +170,9 @@ def _check_size(path, size):
         raise _too_large(path, f"{width} x {height} px is {width * height / 1e6:.0f} megapixels")
     if max(width, height) > MAX_SIDE_PX:
         raise _refusal(
-            path, f"{width} x {height} px has a side above {MAX_SIDE_PX} px", "crop the picture to the chart first"
+            path,
+            f"{width} x {height} px has a side above {MAX_SIDE_PX} px",
+            "crop the picture to the chart first",
         )
 
 
@@ -187,7 +202,9 @@ def _to_rgb(image):
         if image.getchannel("A").getextrema()[0] == 255:
             return np.array(image.convert("RGB")), ()
         paper = Image.new("RGBA", image.size, "white")
-        return np.array(Image.alpha_composite(paper, image).convert("RGB")), ("transparent parts laid on white",)
+        return np.array(Image.alpha_composite(paper, image).convert("RGB")), (
+            "transparent parts laid on white",
+        )
     notes = (f"{image.mode} colours taken as RGB",) if image.mode in ("CMYK", "YCbCr", "LAB", "HSV") else ()
     return np.array(image.convert("RGB")), notes
 
@@ -200,11 +217,15 @@ def _to_eight_bits(values):
     low, high = float(finite.min()), float(finite.max())
     if values.dtype.kind in "iu" and 0 <= low and high <= FULL_SCALES[-1]:
         white = next(scale for scale in FULL_SCALES if high <= scale)
-        return np.round(finite * np.float32(255 / white)).astype(np.uint8), f"{white.bit_length()}-bit grey reduced"
+        return np.round(finite * np.float32(255 / white)).astype(
+            np.uint8
+        ), f"{white.bit_length()}-bit grey reduced"
     if values.dtype.kind == "f" and 0 <= low and high <= 1:
         low, high = 0.0, 1.0
     span = (high - low) or 1.0
-    return np.round((finite - np.float32(low)) * np.float32(255 / span)).astype(np.uint8), "deep grey stretched"
+    return np.round((finite - np.float32(low)) * np.float32(255 / span)).astype(
+        np.uint8
+    ), "deep grey stretched"
 
 
 def _open_pdf(path, page):
@@ -245,7 +266,9 @@ def _broken(path, error):
 
 def _too_large(path, said):
     return _refusal(
-        path, f"{said}, above the bound of {MAX_MEGAPIXELS}", "crop the picture to the chart or scale it down first"
+        path,
+        f"{said}, above the bound of {MAX_MEGAPIXELS}",
+        "crop the picture to the chart or scale it down first",
     )
 
 

@@ -1,8 +1,9 @@
 """The record: a JSON file that holds all that is needed to repeat or audit a reading.
 
-Numbers that a later reading takes over (scale, bearing, what the user told) are written exactly, so that `--like` on
-the same picture gives the same table to the last digit; per-row parts of the error are for the eye and are rounded.
-A record names files by their bare names only, and nothing that a record says is ever opened or written.
+Numbers that a later reading takes over (scale, bearing, what the user told) are written exactly, so that
+`--like` on the same picture gives the same table to the last digit; per-row parts of the error are for the
+eye and are rounded. A record names files by their bare names only, and nothing that a record says is ever
+opened or written.
 """
 
 import json
@@ -11,21 +12,22 @@ import os
 import numpy as np
 
 from ._json import Malformed, take, take_number, take_numbers, to_plain, to_text
-from ._record_parts import bearing_part, grid_part, labels_part, scale_part, software_part
+from ._record_parts import bearing_part, grid_back, grid_part, labels_part, scale_part, software_part
 from .bearing import Bearing
 from .budget import PARTS
 from .caution import CAUTION
 from .exceptions import DigitiseError, PictureError
 from .review import REASONS, reason
 from .scale import Scale
-from .settings import LAWS, Settings
+from .settings import LAWS, Mark, Settings
 from .table import STATES
 
-__all__ = ["FORMAT", "make_record", "read_record", "settings_from_record", "write_record"]
+__all__ = ["FORMAT", "make_record", "read_record", "settings_as_told", "settings_from_record", "write_record"]
 
 FORMAT = "digitise-record/1"
 MAX_RECORD_BYTES = 50_000_000  # ten traces at the finest step have about 5 MB
 N_PARAMETERS = {"even": 2, "field": 2, "power": 2, "log-periodic": 2, "rings": 0}
+BY_HAND = "by hand"
 ROW_DIGITS = 3  # significant digits of the per-row parts of the error
 
 
@@ -80,7 +82,9 @@ def read_record(path):
     except FileNotFoundError:
         raise _refusal(path, "no such file", "check the name and the folder") from None
     except (OSError, ValueError) as error:
-        raise _refusal(path, f"cannot be opened ({getattr(error, 'strerror', None) or error})", "name a record") from None
+        raise _refusal(
+            path, f"cannot be opened ({getattr(error, 'strerror', None) or error})", "name a record"
+        ) from None
     try:
         if len(data) > MAX_RECORD_BYTES:
             raise Malformed("larger than any record")
@@ -88,16 +92,18 @@ def read_record(path):
         _check(record)
     except (ValueError, RecursionError) as error:  # ValueError: not UTF-8, not JSON, or `Malformed`
         said = str(error) if isinstance(error, Malformed) else "it is not JSON text"
-        raise _refusal(path, f"is not a {FORMAT}: {said}", "name a .record.json file as digitise read wrote it") from None
+        raise _refusal(
+            path, f"is not a {FORMAT}: {said}", "name a .record.json file as digitise read wrote it"
+        ) from None
     return record
 
 
 def settings_from_record(path, *, sha256=None):
     """The `Settings` of an earlier record, for the same template or the same picture.
 
-    The scale and the bearing are taken over as they were found, and what was told besides levels and angles as it was
-    told. What belongs to one picture alone (pins, the page, which of its charts) is taken only when `sha256`, that
-    of the picture to be read now, is the record's own.
+    The scale and the bearing are taken over as they were found, and what was told besides levels and angles
+    as it was told. What belongs to one picture alone (pins, a grid corrected by hand, the page, which of its
+    charts) is taken only when `sha256`, that of the picture to be read now, is the record's own.
     """
     record = read_record(path)
     try:
@@ -112,10 +118,47 @@ def settings_from_record(path, *, sha256=None):
             step_deg=told.get("step_deg", 1.0),
             pins=_tuples(told.get("pins", ())) if same else (),
             page=told.get("page") if same else None,
-            chart=(record["chart"]["number"], record["chart"]["of"]) if same and record["chart"]["of"] > 1 else None,
+            grid=grid_back(record["grid"]) if same and "grid" in told else None,
+            chart=(record["chart"]["number"], record["chart"]["of"])
+            if same and record["chart"]["of"] > 1
+            else None,
         )
     except DigitiseError as error:
-        raise _refusal(path, f"holds settings that cannot be right: {error.cause}", "make the record anew") from None
+        raise _refusal(
+            path, f"holds settings that cannot be right: {error.cause}", "make the record anew"
+        ) from None
+
+
+def settings_as_told(record):
+    """The `Settings` that a record was made with, to take up the same picture's reading where it was left.
+
+    Unlike `settings_from_record` what the tool had found itself is left to be found again.
+
+    record : as `read_record` returns it; raises `UsageError` when the settings contradict each other
+    """
+    told, chart = record["told"], record["chart"]
+    plain = {
+        name: told[name]
+        for name in ("outer_db", "centre_db", "law", "zero_deg", "turn", "page")
+        if name in told
+    }
+    lists = {
+        name: _tuples(told[name])
+        for name in ("ring_levels", "inks", "covers", "pins", "crop")
+        if name in told
+    }
+    x_y_db = ("x_px", "y_px", "level_db")
+    return Settings(
+        **plain,
+        **lists,
+        crop=_tuples(told.get("crop")),
+        marks=tuple(Mark(**dict(zip(x_y_db, values, strict=True))) for values in told.get("marks", ())),
+        step_deg=told.get("step_deg", 1.0),
+        scale=_scale_back(record["scale"]) if record["scale"].get("source") == "record" else None,
+        bearing=_bearing_back(record["bearing"]) if record["bearing"].get("source") == "record" else None,
+        grid=grid_back(record["grid"]) if "grid" in told else None,
+        chart=(chart["number"], chart["of"]) if chart["of"] > 1 else None,
+    )
 
 
 def _told(settings):
@@ -129,6 +172,8 @@ def _told(settings):
             told[name] = to_plain(getattr(settings, name))
     if settings.marks:
         told["marks"] = [[mark.x_px, mark.y_px, mark.level_db] for mark in settings.marks]
+    if settings.grid is not None:
+        told["grid"] = BY_HAND
     told["step_deg"] = settings.step_deg
     return told
 
@@ -187,18 +232,23 @@ def _check(record):
         take(trace, "table", str)
     if not all(isinstance(item, str) for item in take(record, "review", list)):
         raise Malformed("review is not a list of strings")
+    if "grid" in take(record, "told", dict):
+        grid_back(take(record, "grid", dict))
     _scale_back(take(record, "scale", dict))
     _bearing_back(take(record, "bearing", dict))
     _check_told(take(record, "told", dict))
 
 
 def _check_told(told):
-    for name, shape in (("crop", (4,)), ("covers", (None, 4)), ("pins", (None, 2)), ("marks", (None, 3))):
+    for name, shape in (("ring_levels", (None,)), ("crop", (4,)), ("covers", (None, 4)), ("pins", (None, 2)), ("marks", (None, 3))):
         if name in told:
             take_numbers(told, name, shape)
     if not all(isinstance(ink, str) for ink in take(told, "inks", list, default=[])):
         raise Malformed("inks is not a list of colours")
-    take_number(told, "step_deg", default=1.0)
+    for name in ("step_deg", "outer_db", "centre_db", "zero_deg"):
+        take_number(told, name, default=0.0)
+    for name in ("law", "turn", "grid"):
+        take(told, name, str, default="")
     take(told, "page", int, default=1)
 
 
@@ -207,7 +257,10 @@ def _scale_back(node):
     if law not in LAWS:
         raise Malformed(f"scale.law is not one of {', '.join(LAWS)}")
     n = N_PARAMETERS[law]
-    anchors_rho, anchors_db = take_numbers(node, "anchor_rho", (None,)), take_numbers(node, "anchor_db", (None,))
+    anchors_rho, anchors_db = (
+        take_numbers(node, "anchor_rho", (None,)),
+        take_numbers(node, "anchor_db", (None,)),
+    )
     if len(anchors_rho) != len(anchors_db) or (law == "rings" and len(anchors_rho) < 2):
         raise Malformed("scale.anchor_rho and scale.anchor_db do not match")
     return Scale(

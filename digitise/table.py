@@ -1,8 +1,8 @@
 """The table: one row a step of bearing, with the level, its error and its state.
 
 Numbers are rounded in one place, `write_table`, value and error together: the written error is the exact one
-widened by what rounding moved the value, and rounded up, so that every written interval holds the exact interval
-and rounding never costs coverage. A table read back and written again is the same text.
+widened by what rounding moved the value, and rounded up, so that every written interval holds the exact
+interval and rounding never costs coverage. A table read back and written again is the same text.
 """
 
 import csv
@@ -124,9 +124,18 @@ def _fault(angle_deg, chart_db, error95_db, state, relative_db=None):
         return None, f"a table needs two rows or more, alike in every column, and has {n}"
     checks = [
         (~np.isin(state, STATES), f"the state is not one of {', '.join(STATES)}"),
-        (~(np.abs(angle_deg - np.arange(n) * 360 / n) < EVEN_DEG), f"angle_deg is not on an even step of 360/{n} from 0"),
-        (np.isfinite(chart_db) == (state == "missing"), "chart_db must be empty where the state is missing, only there"),
-        (np.isfinite(error95_db) == (state == "missing"), "error95_db must be empty where the state is missing, only there"),
+        (
+            ~(np.abs(angle_deg - np.arange(n) * 360 / n) < EVEN_DEG),
+            f"angle_deg is not on an even step of 360/{n} from 0",
+        ),
+        (
+            np.isfinite(chart_db) == (state == "missing"),
+            "chart_db must be empty where the state is missing, only there",
+        ),
+        (
+            np.isfinite(error95_db) == (state == "missing"),
+            "error95_db must be empty where the state is missing, only there",
+        ),
         (error95_db < 0, "error95_db is negative"),
     ]
     if relative_db is not None:
@@ -146,7 +155,7 @@ def _relative(chart_db):
 
 
 def _db(value):
-    return f"{value + 0.0:.{DECIMALS_DB}f}" if round(value, DECIMALS_DB) else f"{0:.{DECIMALS_DB}f}"  # never "-0.000"
+    return f"{round(value, DECIMALS_DB) + 0.0:.{DECIMALS_DB}f}"  # + 0.0: never "-0.000"
 
 
 def _number(path, line, column, text):
@@ -169,7 +178,9 @@ def _read_text(path):
             raise _malformed(path, None, "larger than any table")
         return data.decode("utf-8-sig")
     except FileNotFoundError:
-        raise PictureError("no such file", remedy="check the name and the folder", stage="table", source=path) from None
+        raise PictureError(
+            "no such file", remedy="check the name and the folder", stage="table", source=path
+        ) from None
     except OSError as error:
         raise PictureError(f"cannot be opened ({error.strerror})", stage="table", source=path) from None
     except UnicodeDecodeError:

@@ -1,4 +1,4 @@
-"""Readings made by hand, for the tests of what is made of a reading: no stage of the reading itself takes part."""
+"""Readings made by hand, for the tests of what is made of a reading; no stage of the flow takes part."""
 
 import functools
 
@@ -39,15 +39,19 @@ def painted(n_traces):
 
 
 def hand_table(level_db=None, *, state=None, error_db=0.1):
-    """A table of 360 rows; the level is a field cardioid where none is given, and missing rows are emptied."""
+    """A table of 360 rows; a field cardioid where no level is given; missing rows are emptied."""
     level = patterns.first_order(np.arange(360.0)) if level_db is None else np.asarray(level_db, float)
-    state = np.where(level < -39.9, "floor", "seen").astype("U8") if state is None else np.asarray(state, "U8")
+    state = (
+        np.where(level < -39.9, "floor", "seen").astype("U8") if state is None else np.asarray(state, "U8")
+    )
     level = np.where(state == "missing", np.nan, np.maximum(level, -40))
     error = np.where(state == "missing", np.nan, error_db)
     return build_table(np.arange(360.0), level, error, state)
 
 
-def hand_reading(n_traces=1, *, path="panel.png", table=None, rgb=None, reasons=(), trace_reasons=(), **settings):
+def hand_reading(
+    n_traces=1, *, path="panel.png", table=None, rgb=None, reasons=(), trace_reasons=(), **settings
+):
     """A `Reading` of the cardioid page as it would be if every stage had done its work without error."""
     rgb = painted(n_traces) if rgb is None else rgb
     settings = Settings(**({"outer_db": 0.0, "centre_db": -40.0, "zero_deg": 0.0, "turn": "cw"} | settings))
@@ -58,12 +62,19 @@ def hand_reading(n_traces=1, *, path="panel.png", table=None, rgb=None, reasons=
         parts = {part: np.full(360, 0.02) for part in ("picture", "grid", "scale", "bearing", "bridging")}
         traces.append(
             TraceReading(
-                name="", ink=INKS[k], dash="solid", table=rows, budget=Budget(**parts), width_px=2.0,
+                name="",
+                ink=INKS[k],
+                dash="solid",
+                table=rows,
+                budget=Budget(**parts),
+                width_px=2.0,
                 reasons=trace_reasons,
-            )  # fmt: skip
+            )
         )
     return Reading(
-        picture=Picture(rgb=rgb, path=path, sha256=SHA256, width=rgb.shape[1], height=rgb.shape[0], kind="png"),
+        picture=Picture(
+            rgb=rgb, path=path, sha256=SHA256, width=rgb.shape[1], height=rgb.shape[0], kind="png"
+        ),
         box=Box(x=0, y=0, w=600, h=620, centre_x=CENTRE[0], centre_y=CENTRE[1], outer_px=OUTER_PX, score=1.0),
         settings=settings,
         grid=grid,

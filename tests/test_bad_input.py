@@ -1,4 +1,5 @@
-"""Bad input through the whole command: one line that names file and remedy, the right exit status, no file left.
+"""Bad input through the whole command: one line that names file and remedy, the right exit status, no file
+left.
 
 Nothing is replaced here: the pictures go through the real flow.
 """
@@ -45,7 +46,10 @@ def saved(tmp_path, rgb, name="panel.png"):
 
 @pytest.mark.parametrize(
     ("content", "message"),
-    [(b"", "the file is empty; save or download it again"), (b"angle,dB\n0,-3\n", "is text, not a picture; give a PNG")],
+    [
+        (b"", "the file is empty; save or download it again"),
+        (b"angle,dB\n0,-3\n", "is text, not a picture; give a PNG"),
+    ],
 )
 def test_an_empty_file_and_a_text_file(tmp_path, out, capsys, content, message):
     """Exit status 4."""
@@ -171,7 +175,7 @@ def test_an_out_that_cannot_be_a_folder(tmp_path, capsys):
 
 
 def test_an_out_without_permission(tmp_path, capsys, monkeypatch):
-    """A folder that may not be written to; the system's answer is put in, since nothing binds the superuser."""
+    """A folder that may not be written to; the system's answer is put in: nothing binds the superuser."""
     path = saved(tmp_path, painted(1))
     folder = tmp_path / "out"
     folder.mkdir()
@@ -214,13 +218,17 @@ def test_an_unhelped_chart_names_the_options_that_help(tmp_path, out, capsys):
     bare = Page(
         charts=tuple(
             Chart(
-                traces=(Trace(db=chart.traces[0].db),), centre_x=chart.centre_x, centre_y=chart.centre_y,
-                ring_labels=None, rim_labels=None,
+                traces=(Trace(db=chart.traces[0].db),),
+                centre_x=chart.centre_x,
+                centre_y=chart.centre_y,
+                ring_labels=None,
+                rim_labels=None,
             )
             for chart in page.charts
         ),
-        width=page.width, height=page.height,
-    )  # fmt: skip
+        width=page.width,
+        height=page.height,
+    )
 
     status, said = refused([saved(tmp_path, paint(bare))], capsys, out)
 

@@ -38,7 +38,7 @@ def picture(tmp_path):
 
 @pytest.fixture
 def quick(monkeypatch):
-    """Put a reading made by hand in the place of the flow, which other tests cover; the settings it got are kept."""
+    """Put a reading made by hand in the place of the flow; the settings it got are kept."""
     seen = []
 
     def read_charts(picture, *, settings):
@@ -64,10 +64,32 @@ def parsed(*words, sha256=None):
 def test_every_option_reaches_the_settings():
     """All options of `read`, with the negative numbers that dB bring along."""
     settings = parsed(
-        "--outer", "-3", "--centre=-43.5", "--zero", "left", "--turn", "ccw", "--ink", "#1F4fb4", "--ink", "#000000",
-        "--cover", "1,2,3,4", "--cover", "5,6,7,8", "--pin", "9,10", "--crop", "0,0,600,620", "--page", "2",
-        "--step", "0.5", "--law", "even",
-    )  # fmt: skip
+        "--outer",
+        "-3",
+        "--centre=-43.5",
+        "--zero",
+        "left",
+        "--turn",
+        "ccw",
+        "--ink",
+        "#1F4fb4",
+        "--ink",
+        "#000000",
+        "--cover",
+        "1,2,3,4",
+        "--cover",
+        "5,6,7,8",
+        "--pin",
+        "9,10",
+        "--crop",
+        "0,0,600,620",
+        "--page",
+        "2",
+        "--step",
+        "0.5",
+        "--law",
+        "even",
+    )
 
     assert (settings.outer_db, settings.centre_db) == (-3.0, -43.5)
     assert (settings.zero_deg, settings.turn, settings.step_deg, settings.page) == (270.0, "ccw", 0.5, 2)
@@ -178,7 +200,10 @@ def test_json_of_several_is_a_list(picture, tmp_path, capsys, quick):
 
     assert main(["read", picture, str(tmp_path / "other.png"), "--out", str(tmp_path / "out"), "--json"]) == 0
 
-    assert [record["chart"]["file"] for record in json.loads(capsys.readouterr().out)] == ["panel.png", "other.png"]
+    assert [record["chart"]["file"] for record in json.loads(capsys.readouterr().out)] == [
+        "panel.png",
+        "other.png",
+    ]
 
 
 def test_the_current_folder_is_the_default(picture, tmp_path, monkeypatch, quick):
@@ -200,15 +225,27 @@ def test_one_failure_does_not_stop_the_others(picture, tmp_path, capsys, quick):
     streams = capsys.readouterr()
     assert status == 4
     assert f"digitise: {tmp_path / 'none.png'}: no such file" in streams.err
-    assert sorted(name for name in os.listdir(tmp_path / "out") if name.endswith(".csv")) == ["panel.csv", "two.1.csv", "two.2.csv"]
+    assert sorted(name for name in os.listdir(tmp_path / "out") if name.endswith(".csv")) == [
+        "panel.csv",
+        "two.1.csv",
+        "two.2.csv",
+    ]
     assert streams.err.count("caution") == 1
 
 
 @pytest.mark.parametrize(
     ("error", "status", "said"),
     [
-        (NotReadError("no ring levels were found", remedy="give --outer and --centre", stage="scale"), 3, "give --outer"),
-        (UsageError("a mark is 40 px from the nearest ring", remedy="click on a ring", stage="scale"), 2, "click on a ring"),
+        (
+            NotReadError("no ring levels were found", remedy="give --outer and --centre", stage="scale"),
+            3,
+            "give --outer",
+        ),
+        (
+            UsageError("a mark is 40 px from the nearest ring", remedy="click on a ring", stage="scale"),
+            2,
+            "click on a ring",
+        ),
         (MemoryError(), 70, "not enough memory"),
         (ZeroDivisionError("division by zero"), 70, "internal error (ZeroDivisionError: division by zero)"),
     ],
@@ -264,9 +301,12 @@ def test_a_reader_that_goes_away_ends_quietly(tmp_path):
 
 
 def test_help_starts_without_heavy_imports():
-    """`--help` lists the commands and their options with units, and loads neither numpy nor any of its like."""
-    code = f"import sys; from digitise.cli import main; main(['--help']); print([m for m in {HEAVY} if m in sys.modules])"
-    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, timeout=60, check=True)
+    """`--help` lists the commands and loads neither numpy nor any of its like."""
+    code = "import sys; from digitise.cli import main; main(['--help']); "
+    code += f"print([m for m in {HEAVY} if m in sys.modules])"
+    done = subprocess.run(
+        [sys.executable, "-c", code], capture_output=True, text=True, timeout=60, check=True
+    )
 
     assert done.stdout.rstrip().endswith("[]")
     assert "read the charts on pictures" in done.stdout
@@ -300,7 +340,11 @@ def test_the_version(capsys):
 def test_python_m_digitise(tmp_path):
     """The module runs as the command does."""
     done = subprocess.run(
-        [sys.executable, "-m", "digitise", "read", str(tmp_path / "none.png")], capture_output=True, text=True, timeout=60, check=False
+        [sys.executable, "-m", "digitise", "read", str(tmp_path / "none.png")],
+        capture_output=True,
+        text=True,
+        timeout=60,
+        check=False,
     )
 
     assert done.returncode == 4
@@ -310,9 +354,22 @@ def test_python_m_digitise(tmp_path):
 def test_verbose_logs_stages_and_times(picture, tmp_path, quick):
     """`--verbose` on standard error, in a process of its own, since logging is set up once."""
     done = subprocess.run(
-        [sys.executable, "-m", "digitise", "read", picture, "--out", str(tmp_path / "out"), *TOLD, "--verbose"],
-        capture_output=True, text=True, timeout=120, check=True,
-    )  # fmt: skip
+        [
+            sys.executable,
+            "-m",
+            "digitise",
+            "read",
+            picture,
+            "--out",
+            str(tmp_path / "out"),
+            *TOLD,
+            "--verbose",
+        ],
+        capture_output=True,
+        text=True,
+        timeout=120,
+        check=True,
+    )
 
     assert " ms digitise.commands.read: " in done.stderr
     for stage in ("opened", "read", "proof", "written"):
@@ -361,7 +418,7 @@ def test_like_takes_the_settings_and_options_override_them(tmp_path):
 
 
 def test_a_chart_is_read_end_to_end_and_again_like_its_record(picture, tmp_path):
-    """The whole way on a drawn field cardioid: within the reading's own error; --like gives the same table."""
+    """The whole way on a field cardioid: within the reading's own error; --like repeats the table."""
     assert main(["read", picture, "--out", str(tmp_path / "a"), *TOLD, "--ink", "#1f4fb4"]) == 0
     like = str(tmp_path / "a" / "panel.record.json")
     assert main(["read", picture, "--out", str(tmp_path / "b"), "--like", like]) == 0
@@ -389,7 +446,9 @@ def test_look_says_what_is_there(picture, tmp_path, capsys):
     assert seen["format"] == "digitise-look/1"
     assert seen["charts"][0]["grid"]["centre_px"] == pytest.approx([chart.centre_x, chart.centre_y], abs=0.1)
     assert seen["charts"][0]["grid"]["outer_px"] == pytest.approx(chart.outer_px, abs=0.1)
-    assert any(abs(int(ink["ink"][5:], 16) - 0xB4) < 12 and not ink["neutral"] for ink in seen["charts"][0]["inks"])
+    assert any(
+        abs(int(ink["ink"][5:], 16) - 0xB4) < 12 and not ink["neutral"] for ink in seen["charts"][0]["inks"]
+    )
     shown = open_picture(proof).rgb
     assert shown.shape[1] == 1400
     assert sorted(os.listdir(tmp_path)) == ["look.png", "panel.png"]

@@ -140,7 +140,7 @@ def test_a_record_that_names_files_elsewhere_moves_nothing(tmp_path):
 @pytest.mark.parametrize("fail_at", [1, 2, 3, 4])
 @pytest.mark.parametrize("error", [OSError(28, "No space left on device"), KeyboardInterrupt()])
 def test_when_one_file_fails_none_stays(tmp_path, monkeypatch, fail_at, error):
-    """A full disk or an interrupt at any rename: the earlier reading stands as it was, no passing file is left."""
+    """A full disk or an interrupt at any rename: the earlier reading stands as it was, and alone."""
     folder = tmp_path / "out"
     write_whole(files_of(), folder)
     before = {path.name: path.read_bytes() for path in folder.iterdir()}
@@ -211,7 +211,11 @@ def test_a_single_named_file(tmp_path):
         write_file(path, data, keep=(picture,))
 
     assert path.read_bytes() == b"two"
-    for place, message in ((picture, "the picture itself"), (tmp_path, "is a folder"), (tmp_path / "no" / "a", "cannot be")):
+    for place, message in (
+        (picture, "the picture itself"),
+        (tmp_path, "is a folder"),
+        (tmp_path / "no" / "a", "cannot be"),
+    ):
         with pytest.raises(UsageError, match=message):
             write_file(place, b"three", keep=(picture,))
     assert picture.read_bytes() == b"pixels"

@@ -1,4 +1,4 @@
-"""Opening pictures: every kind ends as the same upright RGB on white, and what cannot be opened is refused in a line."""
+"""Opening pictures: every kind ends as the same upright RGB on white; others are refused in a line."""
 
 import hashlib
 import os
@@ -37,7 +37,9 @@ def grey(rgb):
     return np.array(Image.fromarray(rgb).convert("L"))
 
 
-@pytest.mark.parametrize(("suffix", "kind"), [("png", "png"), ("bmp", "bmp"), ("tiff", "tiff"), ("webp", "webp")])
+@pytest.mark.parametrize(
+    ("suffix", "kind"), [("png", "png"), ("bmp", "bmp"), ("tiff", "tiff"), ("webp", "webp")]
+)
 def test_lossless_kinds_keep_every_pixel(tmp_path, suffix, kind):
     """PNG, BMP, TIFF and lossless WebP: pixels, size, kind and sha256."""
     options = {"lossless": True} if suffix == "webp" else {}
@@ -80,7 +82,15 @@ def test_a_cmyk_jpeg_becomes_rgb(tmp_path):
 @pytest.mark.parametrize("orientation", range(1, 9))
 def test_the_exif_turn_is_applied(tmp_path, orientation):
     """Every orientation of Exif (CIPA DC-008, 4.6.4): the picture stands upright again."""
-    back = {2: 0, 3: 3, 4: 1, 5: 5, 6: 2, 7: 6, 8: 4}  # Image.Transpose that undoes each orientation when storing
+    back = {
+        2: 0,
+        3: 3,
+        4: 1,
+        5: 5,
+        6: 2,
+        7: 6,
+        8: 4,
+    }  # Image.Transpose that undoes each orientation when storing
     upright = Image.fromarray(sample())
     stored = upright if orientation == 1 else upright.transpose(Image.Transpose(back[orientation]))
     exif = Image.Exif()
@@ -161,7 +171,9 @@ def test_the_first_frame_of_an_animation(tmp_path, suffix):
 def test_a_page_of_a_tiff_can_be_chosen(tmp_path):
     """Fax and scan files hold several pages of different size."""
     first, second = np.full((20, 30), 200, np.uint8), np.full((25, 35), 90, np.uint8)
-    path = save(tmp_path, Image.fromarray(first), "a.tiff", save_all=True, append_images=[Image.fromarray(second)])
+    path = save(
+        tmp_path, Image.fromarray(first), "a.tiff", save_all=True, append_images=[Image.fromarray(second)]
+    )
 
     picture = open_picture(path, page=2)
 
@@ -177,7 +189,12 @@ def png_header(width, height):
         return struct.pack(">I", len(body)) + kind + body + struct.pack(">I", zlib.crc32(kind + body))
 
     body = struct.pack(">IIBBBBB", width, height, 8, 2, 0, 0, 0)
-    return b"\x89PNG\r\n\x1a\n" + chunk(b"IHDR", body) + chunk(b"IDAT", zlib.compress(b"\0" * 100)) + chunk(b"IEND", b"")
+    return (
+        b"\x89PNG\r\n\x1a\n"
+        + chunk(b"IHDR", body)
+        + chunk(b"IDAT", zlib.compress(b"\0" * 100))
+        + chunk(b"IEND", b"")
+    )
 
 
 @pytest.mark.parametrize(

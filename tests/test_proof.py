@@ -1,4 +1,4 @@
-"""The proof: its colours are not on the chart, its lines lie where the reading lies, its states differ by shape."""
+"""The proof: colours that are not on the chart, lines where the reading lies, states told by shape."""
 
 import time
 
@@ -7,15 +7,18 @@ import pytest
 from PIL import Image
 
 from digitise._proof_colour import distinct_colours, main_colours
+from digitise._proof_page import PANEL_PX, WIDTH_PX
 from digitise._proof_panel import draw_sample, make_view, picture_panel
 from digitise._proof_text import printable
-from digitise.proof import PANEL_PX, WIDTH_PX, draw_proof, encode_proof
+from digitise.proof import draw_proof, encode_proof
 from digitise.record import make_record
 from digitise.review import reason
 from tests.draw import paint, patterns
 from tests.hand import INKS, cardioid_page, hand_reading, hand_table, painted
 
-NEAR_LEVELS = 90.0  # colour levels within which a pixel counts as the overlay's colour, anti-aliased edges left out
+NEAR_LEVELS = (
+    90.0  # colour levels within which a pixel counts as the overlay's colour, anti-aliased edges left out
+)
 FAR_LEVELS = 110.0  # and how far an overlay colour must be from what is on the chart
 PLACE_PX = 1.0  # panel px that the drawn line's middle may be off the reading
 SECONDS = 1.5  # a proof takes about 0.15 s; the bound only catches a blow-up on a busy machine
@@ -35,7 +38,7 @@ def colour_distance(rgb, colour):
 @pytest.mark.parametrize("paper", ["#ffffff", "#181a20", "#b8b8b0"])
 @pytest.mark.parametrize("inks", [INKS[:1], INKS, ("#000000",), ("#ff00ff",)])
 def test_overlay_colours_are_not_on_the_picture(paper, inks):
-    """Measured on the picture, whatever its paper and inks: far from every colour there and from each other."""
+    """Whatever the paper and the inks: far from every colour there and from each other."""
     rgb = paint(cardioid_page(inks, paper=paper))
     present, commonest = main_colours(rgb)
 
@@ -49,7 +52,7 @@ def test_overlay_colours_are_not_on_the_picture(paper, inks):
 
 
 def test_the_reading_lies_on_the_ink_of_the_chart():
-    """The overlay's pixels surround the true curve: their radius about the chart's centre is the cardioid's."""
+    """The overlay's pixels lie on the true curve: their radius about the centre is the cardioid's."""
     reading = hand_reading()
     proof = proof_of(reading)
     view = make_view(reading, width=PANEL_PX, least=360, most=690)
@@ -142,7 +145,7 @@ def test_a_wide_error_is_drawn_as_a_wide_band():
 
 
 def test_reasons_are_numbered_on_the_chart_and_listed():
-    """A reason with a place is marked there; each reason adds to the sheet; the place's colour is on the panel."""
+    """A reason with a place is marked there, and each reason adds to the sheet."""
     placed = reason("grid-residual", 1.4, x_px=300.0, y_px=60.0)
     bare, marked = hand_reading(), hand_reading(reasons=(placed, reason("peak-low", 6.0)))
     one, two = proof_of(bare), proof_of(marked)

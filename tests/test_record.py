@@ -1,4 +1,4 @@
-"""The record: complete, exact where a later reading takes it over, and refused with a reason when malformed."""
+"""The record: complete, exact where a later reading takes it over, refused with a reason when malformed."""
 
 import json
 
@@ -43,7 +43,8 @@ def test_the_record_holds_what_the_design_asks(record):
 
 
 def test_a_trace_in_the_record(record):
-    """Ink, table, peak, figures, budget by part, rows by state; the cardioid's half-power width is 131.06 degrees.
+    """Ink, table, peak, figures, budget by part, rows by state; the cardioid's half-power width is 131.06
+    degrees.
 
     131.06: field cardioid, computed from (1 + cos) / 2 at -3.0103 dB.
     """
@@ -56,8 +57,12 @@ def test_a_trace_in_the_record(record):
     assert trace["figures"]["beamwidth"]["value"] == pytest.approx(131.06, abs=0.1)
     assert sum(trace["rows"].values()) == 360
     assert trace["budget"]["median_u_db"] == {
-        "picture": 0.02, "grid": 0.02, "scale": 0.02, "bearing": 0.02, "bridging": 0.02,
-    }  # fmt: skip
+        "picture": 0.02,
+        "grid": 0.02,
+        "scale": 0.02,
+        "bearing": 0.02,
+        "bridging": 0.02,
+    }
     assert len(trace["budget"]["rows_u_db"]["grid"]) == 360
 
 
@@ -83,7 +88,7 @@ def test_a_trace_without_values_has_a_record():
 
 
 def test_reasons_become_sentences():
-    """The review lists the chart's reasons and the traces', with the trace's number when there are several."""
+    """The review lists the chart's reasons and the traces', numbered when there are several."""
     item = reason("rows-missing", 0.25)
     record = make_record(hand_reading(2, trace_reasons=(item,)), tables=["a.1.csv", "a.2.csv"])
 
@@ -97,20 +102,32 @@ def test_reasons_become_sentences():
 def test_what_was_told_stands_in_the_record():
     """Every option, under the names of `Settings`."""
     told = {
-        "outer_db": None, "centre_db": None, "marks": (Mark(x_px=300, y_px=60, level_db=0.0), Mark(x_px=300, y_px=310, level_db=-40.0)),
-        "covers": ((1.0, 2.0, 3.0, 4.0),), "pins": ((5.0, 6.0),), "crop": (0.0, 0.0, 600.0, 620.0), "step_deg": 2.0,
-    }  # fmt: skip
+        "outer_db": None,
+        "centre_db": None,
+        "marks": (Mark(x_px=300, y_px=60, level_db=0.0), Mark(x_px=300, y_px=310, level_db=-40.0)),
+        "covers": ((1.0, 2.0, 3.0, 4.0),),
+        "pins": ((5.0, 6.0),),
+        "crop": (0.0, 0.0, 600.0, 620.0),
+        "step_deg": 2.0,
+    }
     record = make_record(hand_reading(**told), tables=["panel.csv"])
 
     assert record["told"] == {
-        "zero_deg": 0.0, "turn": "cw", "crop": [0.0, 0.0, 600.0, 620.0], "covers": [[1.0, 2.0, 3.0, 4.0]],
-        "pins": [[5.0, 6.0]], "marks": [[300, 60, 0.0], [300, 310, -40.0]], "step_deg": 2.0,
-    }  # fmt: skip
+        "zero_deg": 0.0,
+        "turn": "cw",
+        "crop": [0.0, 0.0, 600.0, 620.0],
+        "covers": [[1.0, 2.0, 3.0, 4.0]],
+        "pins": [[5.0, 6.0]],
+        "marks": [[300, 60, 0.0], [300, 310, -40.0]],
+        "step_deg": 2.0,
+    }
 
 
 def test_settings_come_back_exactly(tmp_path):
     """Scale and bearing to the last digit, and what was told besides."""
-    reading = hand_reading(outer_db=1 / 3, centre_db=-39.7, inks=("#1f4fb4",), covers=((1.0, 2.0, 3.0, 4.0),), step_deg=2.0)
+    reading = hand_reading(
+        outer_db=1 / 3, centre_db=-39.7, inks=("#1f4fb4",), covers=((1.0, 2.0, 3.0, 4.0),), step_deg=2.0
+    )
     path = saved(tmp_path, make_record(reading, tables=["panel.csv"]))
 
     settings = settings_from_record(path, sha256=SHA256)
@@ -207,7 +224,17 @@ def test_a_malformed_record_is_refused_with_its_place(tmp_path, record, change, 
 
 
 @pytest.mark.parametrize(
-    "content", [b"", b"{", b"[]", b"nul", b"\xff\xfe", b'{"format": NaN}', b"[" * 100_000, b'{"format": "digitise-record/1"}']
+    "content",
+    [
+        b"",
+        b"{",
+        b"[]",
+        b"nul",
+        b"\xff\xfe",
+        b'{"format": NaN}',
+        b"[" * 100_000,
+        b'{"format": "digitise-record/1"}',
+    ],
 )
 def test_what_is_no_record_is_refused(tmp_path, content):
     """Broken JSON, other JSON, deep nesting, not text."""

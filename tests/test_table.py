@@ -1,4 +1,4 @@
-"""The table on disk: what is written is read back, rounding costs no coverage, and a fault is named by its line."""
+"""The table on disk: written and read back, rounding costs no coverage, a fault is named by its line."""
 
 import csv
 
@@ -63,14 +63,14 @@ def test_other_steps(tmp_path, step):
 
 rows = st.lists(
     st.tuples(st.floats(-120, 40), st.floats(0, 60), st.sampled_from(STATES)), min_size=2, max_size=24
-)  # fmt: skip
+)
 
 
 @given(rows)
 @example([(-0.0004, 0.0, "seen"), (-0.0005, 0.0005, "bridged")])
 @example([(0.0, 0.0, "missing"), (0.0, 0.0, "missing")])
 def test_the_written_interval_holds_the_exact_one(tmp_path_factory, given_rows):
-    """Rounding never narrows an interval: coverage survives writing, for any rows; and writing twice changes nothing."""
+    """Rounding never narrows an interval, for any rows, and writing twice changes nothing."""
     level, error, state = (np.array(column) for column in zip(*given_rows, strict=True))
     level = np.where(state == "missing", np.nan, level)
     error = np.where(state == "missing", np.nan, error)
@@ -91,7 +91,7 @@ def test_the_written_interval_holds_the_exact_one(tmp_path_factory, given_rows):
 
 
 def test_spreadsheet_habits_are_read(tmp_path):
-    """A byte-order mark, Windows line ends, blank lines at the end, columns in another order and further ones."""
+    """A byte-order mark, Windows line ends, blank lines at the end, columns in another order."""
     text = write_table(hand_table())
     body = list(csv.DictReader(text.splitlines()))
     turned = ["note," + ",".join(reversed(COLUMNS))]
@@ -141,7 +141,11 @@ def test_files_that_are_no_text(tmp_path):
     path = tmp_path / "a.csv"
     path.write_bytes(b"\xff\xfe\x00\x01")
 
-    for place, message in ((path, "not UTF-8"), (tmp_path, "cannot be opened"), (tmp_path / "b.csv", "no such file")):
+    for place, message in (
+        (path, "not UTF-8"),
+        (tmp_path, "cannot be opened"),
+        (tmp_path / "b.csv", "no such file"),
+    ):
         with pytest.raises(PictureError, match=message):
             read_table(place)
 

@@ -13,7 +13,9 @@ def add_arguments(parser):
     """Declare the command's options."""
     parser.add_argument("picture", metavar="PICTURE", help="PNG, JPEG, GIF, TIFF, BMP, WebP or PDF file")
     parser.add_argument("--json", action="store_true", help="print what was found as JSON")
-    parser.add_argument("--proof", metavar="FILE", help="draw grid and labels over the picture into this PNG file")
+    parser.add_argument(
+        "--proof", metavar="FILE", help="draw grid and labels over the picture into this PNG file"
+    )
     add_part_options(parser)
 
 
@@ -49,16 +51,19 @@ def _lines(chart):
     if grid is not None:
         spokes = "no spokes" if np.isnan(grid.spoke_step_deg) else f"spokes every {grid.spoke_step_deg:g} deg"
         yield (
-            f"  grid     centre {grid.centre_x:.2f}, {grid.centre_y:.2f} px; outermost ring {grid.outer_px:.2f} px; "
-            f"{len(grid.ring_rho)} rings; {spokes}; skew {grid.skew_deg:.2f} deg; fits to {grid.residual_px:.2f} px"
+            f"  grid     centre {grid.centre_x:.2f}, {grid.centre_y:.2f} px; "
+            f"outermost ring {grid.outer_px:.2f} px; {len(grid.ring_rho)} rings; {spokes}; "
+            f"skew {grid.skew_deg:.2f} deg; fits to {grid.residual_px:.2f} px"
         )
     if scale is not None:
         outer_db = float(scale.level(np.ones(1))[0])
         centre = f", {scale.centre_db:g} at the centre" if np.isfinite(scale.centre_db) else ""
-        yield f"  scale    {scale.law}: {outer_db:g} {scale.unit or 'dB'} at the outermost ring{centre} (from {scale.source})"
+        outer = f"{outer_db:g} {scale.unit or 'dB'} at the outermost ring"
+        yield f"  scale    {scale.law}: {outer}{centre} (from {scale.source})"
     if bearing is not None:
         turn = "clockwise" if bearing.turn == "cw" else "counter-clockwise"
-        yield f"  bearing  0 deg at {bearing.zero_deg:g} deg from the chart's top, growing {turn} (from {bearing.source})"
+        zero = f"0 deg at {bearing.zero_deg:g} deg from the chart's top"
+        yield f"  bearing  {zero}, growing {turn} (from {bearing.source})"
     for role in ("ring", "rim", "caption", "legend"):
         found = chart.labels.with_role(role) if chart.labels is not None else ()
         if found:

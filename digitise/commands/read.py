@@ -19,9 +19,15 @@ log = logging.getLogger(__name__)
 
 def add_arguments(parser):
     """Declare the command's options."""
-    parser.add_argument("pictures", metavar="PICTURE", nargs="+", help="PNG, JPEG, GIF, TIFF, BMP, WebP or PDF file")
-    parser.add_argument("--out", metavar="DIR", default=".", help="folder for the outputs, made if needed (the current one)")
-    parser.add_argument("--json", action="store_true", help="print the record on standard output (a list of several)")
+    parser.add_argument(
+        "pictures", metavar="PICTURE", nargs="+", help="PNG, JPEG, GIF, TIFF, BMP, WebP or PDF file"
+    )
+    parser.add_argument(
+        "--out", metavar="DIR", default=".", help="folder for the outputs, made if needed (the current one)"
+    )
+    parser.add_argument(
+        "--json", action="store_true", help="print the record on standard output (a list of several)"
+    )
     add_reading_options(parser)
 
 
@@ -87,7 +93,10 @@ def _say_notes(path, written, charts):
         other = " of a picture of that name with other content" if written.other_picture else ""
         print(f"digitise: {path}: note: replaced the earlier reading{other}", file=sys.stderr)
     if written.left_over:
-        print(f"digitise: {path}: note: left from an earlier reading: {', '.join(written.left_over)}", file=sys.stderr)
+        print(
+            f"digitise: {path}: note: left from an earlier reading: {', '.join(written.left_over)}",
+            file=sys.stderr,
+        )
     for chart in charts:
         number = f" (chart {chart.record['chart']['number']})" if chart.record["chart"]["of"] > 1 else ""
         for sentence in chart.record["review"]:

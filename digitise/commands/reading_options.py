@@ -1,4 +1,4 @@
-"""The options that shape a reading, shared by every command that reads pictures: parsed here, judged by `Settings`."""
+"""The options that shape a reading, for every command that reads pictures; `Settings` judges them."""
 
 import argparse
 import math
@@ -17,29 +17,52 @@ def add_reading_options(parser):
     levels.add_argument("--outer", metavar="DB", type=_number, help="level of the outermost ring, dB")
     levels.add_argument("--centre", metavar="DB", type=_number, help="level at the centre point, dB")
     levels.add_argument(
-        "--mark", metavar="X,Y=DB", type=_mark, action="append",
-        help="a point on a ring, in pixels, and that ring's level in dB; two or more replace --outer and --centre",
-    )  # fmt: skip
-    levels.add_argument("--law", choices=LAWS, help="how radius becomes level; even (linear in dB) is the usual one")
+        "--mark",
+        metavar="X,Y=DB",
+        type=_mark,
+        action="append",
+        help="a point on a ring, pixels, and its level, dB; two or more replace --outer and --centre",
+    )
     levels.add_argument(
-        "--ring-levels", metavar="DB,DB,...", type=_number_list, help="level of every drawn ring, outermost first, dB"
+        "--law", choices=LAWS, help="how radius becomes level; even (linear in dB) is the usual one"
+    )
+    levels.add_argument(
+        "--ring-levels",
+        metavar="DB,DB,...",
+        type=_number_list,
+        help="level of every drawn ring, outermost first, dB",
     )
     bearings = parser.add_argument_group("bearings (degrees)")
     bearings.add_argument(
-        "--zero", metavar="|".join(ZERO_WORDS) + "|DEG", type=_zero,
+        "--zero",
+        metavar="|".join(ZERO_WORDS) + "|DEG",
+        type=_zero,
         help="where the chart prints 0 degrees; DEG is clockwise from the top",
-    )  # fmt: skip
-    bearings.add_argument("--turn", choices=("cw", "ccw"), help="which way the printed angles grow: clockwise or not")
+    )
+    bearings.add_argument(
+        "--turn", choices=("cw", "ccw"), help="which way the printed angles grow: clockwise or not"
+    )
     bearings.add_argument("--step", metavar="DEG", type=_number, help="step of the table, degrees (1)")
     places = parser.add_argument_group("traces and places (pixels from the top left corner)")
     places.add_argument(
-        "--ink", metavar="'#rrggbb'", action="append", help="read the trace of this colour; repeatable (every trace found)"
+        "--ink",
+        metavar="'#rrggbb'",
+        action="append",
+        help="read the trace of this colour; repeatable (every trace found)",
     )
     places.add_argument(
-        "--cover", metavar="X,Y,W,H", type=_box, action="append", help="leave this region out (a legend); repeatable"
+        "--cover",
+        metavar="X,Y,W,H",
+        type=_box,
+        action="append",
+        help="leave this region out (a legend); repeatable",
     )
     places.add_argument(
-        "--pin", metavar="X,Y", type=_point, action="append", help="the trace goes through this point; repeatable"
+        "--pin",
+        metavar="X,Y",
+        type=_point,
+        action="append",
+        help="the trace goes through this point; repeatable",
     )
     add_part_options(places)
     parser.add_argument(
@@ -56,8 +79,8 @@ def add_part_options(group):
 def settings_from_args(args, *, sha256=None):
     """The `Settings` that the options ask for.
 
-    `sha256` is that of the picture to be read, which `--like` needs; raises `UsageError` for options that contradict
-    each other and `PictureError` for a record that cannot be read.
+    `sha256` is that of the picture to be read, which `--like` needs; raises `UsageError` for options that
+    contradict each other and `PictureError` for a record that cannot be read.
     """
     told = {
         "outer_db": args.outer,
