@@ -137,21 +137,10 @@ def settings_as_told(record):
     record : as `read_record` returns it; raises `UsageError` when the settings contradict each other
     """
     told, chart = record["told"], record["chart"]
-    plain = {
-        name: told[name]
-        for name in ("outer_db", "centre_db", "law", "zero_deg", "turn", "page")
-        if name in told
-    }
-    lists = {
-        name: _tuples(told[name])
-        for name in ("ring_levels", "inks", "covers", "pins", "crop")
-        if name in told
-    }
+    plain = ("outer_db", "centre_db", "law", "zero_deg", "turn", "page", "ring_levels", "inks", "covers", "pins", "crop")
     x_y_db = ("x_px", "y_px", "level_db")
     return Settings(
-        **plain,
-        **lists,
-        crop=_tuples(told.get("crop")),
+        **{name: _tuples(told[name]) for name in plain if name in told},
         marks=tuple(Mark(**dict(zip(x_y_db, values, strict=True))) for values in told.get("marks", ())),
         step_deg=told.get("step_deg", 1.0),
         scale=_scale_back(record["scale"]) if record["scale"].get("source") == "record" else None,
