@@ -3,9 +3,10 @@
 A table holds one error a row and not how the errors of two rows hang together. The parts of a reading's
 budget tell the kinds: noise of the picture is independent from row to row; what pulls a line (a crossing, a
 pixel pattern, a filled side) reaches over a few rows; scale and grid errors are common to all rows (a wrong
-ring radius lifts every level, a displaced centre lifts one side and lowers the other). The assumption here is
-a fixed share of each row's variance for each kind. Were all errors common, differences of near levels would
-come out too sure; were all independent, so would what is averaged over rows; the mixture leaves neither out.
+ring radius lifts every level, a displaced centre lifts one side and lowers the other). The assumption here
+is a fixed share of each row's variance for each kind. Were all errors common, differences of near levels
+would come out too sure; were all independent, so would what is averaged over rows; the mixture leaves
+neither out.
 """
 
 import numpy as np

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-__all__ = ["HALF_POWER_DB", "Lobes", "find_lobes"]
+__all__ = ["HALF_POWER_DB", "Lobes", "find_lobes", "turning_rows"]
 
 HALF_POWER_DB = 10 * np.log10(2)  # 3.0103
 LEAST_DB = 1.0  # rise from a null to a lobe that counts; common practice, no source
@@ -53,7 +53,7 @@ def find_lobes(levels_db, error95_db):
     levels, errors = levels_db.tolist(), error95_db.tolist()
     unknown = np.flatnonzero(~np.isfinite(levels_db))
     if len(unknown) == 0:
-        turns = _walk(levels + levels[:1], errors + errors[:1])
+        turns = turning_rows(levels + levels[:1], errors + errors[:1])
         right = _beyond_half_power(turns, levels)
         left = _beyond_half_power([row - n for row in reversed(turns)], levels)
         if not right or not left:
@@ -62,21 +62,21 @@ def find_lobes(levels_db, error95_db):
         left = [row for row in left if row >= right[0] - n]
         return Lobes(right=tuple(right), left=tuple(left), closed=True)
     first, last = int(unknown[0]), int(unknown[-1])
-    right = _walk(levels[:first], errors[:first])
+    right = turning_rows(levels[:first], errors[:first])
     back = [0, *range(n - 1, last, -1)]
-    left = [-row for row in _walk([levels[k] for k in back], [errors[k] for k in back])]
+    left = [-row for row in turning_rows([levels[k] for k in back], [errors[k] for k in back])]
     right, left = (tuple(_beyond_half_power(turns, levels)) for turns in (right, left))
     return Lobes(right=right, left=left, closed=False)
 
 
-def _walk(levels, errors):
-    """Rows of null, lobe, null ... along levels that begin at a peak; the last one is always a null."""
+def turning_rows(levels, errors, *, least_db=LEAST_DB):
+    """Rows of minimum, maximum, minimum ... along levels that begin at a peak; the last is a minimum."""
     turns, falling, best = [], True, 0
     for row, level in enumerate(levels):
         moved = level - levels[best] if falling else levels[best] - level
         if moved < 0:
             best = row
-        elif moved > LEAST_DB and moved > 0.7 * (errors[row] ** 2 + errors[best] ** 2) ** 0.5:
+        elif moved > least_db and moved > 0.7 * (errors[row] ** 2 + errors[best] ** 2) ** 0.5:
             turns.append(best)
             falling, best = not falling, row
     return turns[: len(turns) - 1 + len(turns) % 2]

@@ -3,10 +3,10 @@
 Every function takes levels of shape (m, n), dB, m tables of n rows around the circle (the table as read and
 draws from its errors), and gives m results, NaN where a table has none. Positions are in rows.
 
-Between rows a curve is followed by a polynomial: a peak by the least-squares quartic through its top, so that
-one noisy row does not make the peak; a crossing by the cubic through the four rows about it; a null by the
-parabola of power through three rows, which is exact for a field that passes zero evenly, whether the null is
-filled or not.
+Between rows a curve is followed by a polynomial: a peak by the least-squares quartic through its top, so
+that one noisy row does not make the peak; a crossing by the cubic through the four rows about it; a null by
+the parabola of power through three rows, which is exact for a field that passes zero evenly, whether the
+null is filled or not.
 """
 
 import numpy as np

@@ -1,7 +1,8 @@
-"""Published ways to fill the sphere from two cuts, and the integral over it. Every one is an estimate off the cuts.
+"""Published ways to fill the sphere from two cuts, and the integral over it. Every one is an estimate off the
+cuts.
 
-Levels are dB under the antenna's peak in the elevation cut, `across` the azimuth cut under the point that both
-cuts share. Arrays over the sphere are (elevations, azimuths).
+Levels are dB under the antenna's peak in the elevation cut, `across` the azimuth cut under the point that
+both cuts share. Arrays over the sphere are (elevations, azimuths).
 """
 
 import numpy as np

@@ -1,7 +1,7 @@
 """Two tables held against each other: the difference at every bearing with its error, and what it amounts to.
 
-The two readings are taken to be independent, so that their errors add as squares (JCGM 100:2008, 5.1.2). Two
-traces of one chart share its grid and scale; their difference is then surer than said here.
+The two readings are taken to be independent, so that their errors add as squares (JCGM 100:2008, 5.1.2).
+Two traces of one chart share its grid and scale; their difference is then surer than said here.
 """
 
 import csv

@@ -1,4 +1,6 @@
-"""A picture of a comparison: the traces over each other on an even dB grid, their differences by bearing below."""
+"""A picture of a comparison: the traces over each other on an even dB grid, their differences by bearing
+below.
+"""
 
 import numpy as np
 

@@ -6,9 +6,10 @@ and nulls are relative to the main lobe's peak and negative; front-to-back ratio
 where the printed bearings grow. The worst side lobe is the largest level outside the first nulls, back lobe
 included. Ripple is peak to peak.
 
-Errors are half-widths of 95 % intervals, by Monte Carlo over the rows' errors (JCGM 101:2008; what is assumed
-about how rows hang together is in `_draws`). Which lobes and nulls there are is settled once, on the table as
-read. A figure says nothing of the chart's own accuracy, nor of the bearing error that all rows share.
+Errors are half-widths of 95 % intervals, by Monte Carlo over the rows' errors (JCGM 101:2008; what is
+assumed about how rows hang together is in `_draws`). Which lobes and nulls there are is settled once, on
+the table as read. A figure says nothing of the chart's own accuracy, nor of the bearing error that all rows
+share.
 """
 
 import math

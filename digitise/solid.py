@@ -1,11 +1,14 @@
-"""Two cuts into the pattern in every direction, and its directivity. Off the cuts this is an estimate, and named so.
+"""Two cuts into the pattern in every direction, and its directivity. Off the cuts this is an estimate, and
+named so.
 
-The cuts meet at one point: the azimuth cut's bearing in the elevation cut's plane, at the elevation where the
-azimuth cut was taken (the horizon, or the cone of the beam). The azimuth cut is referred to that point, once, so
-that a tilted beam is not counted twice. Levels that were read stay: on the cuts themselves the sphere holds them.
+The cuts meet at one point: the azimuth cut's bearing in the elevation cut's plane, at the elevation where
+the azimuth cut was taken (the horizon, or the cone of the beam). The azimuth cut is referred to that point,
+once, so that a tilted beam is not counted twice. Levels that were read stay: on the cuts themselves the
+sphere holds them.
 
-The directivity's error has two parts that are said apart: what the reading of the cuts leaves open (Monte Carlo,
-JCGM 101:2008), and how far the methods disagree, which is a sign of what two cuts cannot tell and no bound on it.
+The directivity's error has two parts that are said apart: what the reading of the cuts leaves open (Monte
+Carlo, JCGM 101:2008), and how far the methods disagree, which is a sign of what two cuts cannot tell and no
+bound on it.
 """
 
 import math
