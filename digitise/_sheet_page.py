@@ -1,4 +1,4 @@
-"""A white sheet with text, panels and legends, for the pictures of comparisons and of whole-sphere patterns."""
+"""A white sheet with text, panels and legends, for pictures of comparisons and whole-sphere patterns."""
 
 import textwrap
 

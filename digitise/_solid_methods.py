@@ -1,5 +1,4 @@
-"""Published ways to fill the sphere from two cuts, and the integral over it. Every one is an estimate off the
-cuts.
+"""Published ways to fill the sphere from two cuts, and the integral over it. All are estimates off the cuts.
 
 Levels are dB under the antenna's peak in the elevation cut, `across` the azimuth cut under the point that
 both cuts share. Arrays over the sphere are (elevations, azimuths).
@@ -14,12 +13,12 @@ HYBRID_N = 20.0  # of the 2005 paper, from memory; an open code takes 3.5, which
 CROSS_K = 2.0
 # What each method is known to do: errors on closed-form patterns, off the cuts, held by tests/test_solid.py.
 LIMITS = {
-    "summing": "exact where the pattern is a product of both cuts (dipole, column of sectors); elsewhere, and behind "
-    "the antenna, off by several dB and by 20 dB or more in side lobes of round beams",
+    "summing": "exact where the pattern is a product of both cuts (dipole, column of sectors); elsewhere, "
+    "and behind the antenna, off by several dB and by 20 dB or more in side lobes of round beams",
     "cross-weighted": "even in the beam off by some dB (2 dB rms and 14 dB at most for a column of sectors)",
     "hybrid": "near summing in the beam, and with its faults for round beams and behind the antenna",
-    "projection": "keeps the read back half and tilt; off by up to 14 dB for sectors and square beams, 20 dB for "
-    "round ones",
+    "projection": "keeps the read back half and tilt; off by up to 14 dB for sectors and square beams, 20 dB "
+    "for round ones, and as deep behind as the back null was read",
 }
 
 
@@ -57,7 +56,7 @@ def fill_sphere(method, across_db, front_db, back_db, off_deg):
 
 
 def cell_weights(elevation_deg):
-    """Share of the sphere that goes with each row of elevation, -90 to 90: the integral of cos over its cell."""
+    """Share of the sphere of each row of elevation, -90 to 90: the integral of cos over its cell."""
     edges = np.concatenate(([-90.0], (elevation_deg[1:] + elevation_deg[:-1]) / 2, [90.0]))
     return np.diff(np.sin(np.radians(edges))) / 2
 

@@ -1,4 +1,4 @@
-"""Two tables held against each other: the difference at every bearing with its error, and what it amounts to.
+"""Two tables against each other: the difference at every bearing with its error, and what it amounts to.
 
 The two readings are taken to be independent, so that their errors add as squares (JCGM 100:2008, 5.1.2).
 Two traces of one chart share its grid and scale; their difference is then surer than said here.
@@ -86,7 +86,7 @@ def compare_tables(first, second, *, level="relative", turn_deg=0.0):
 
 
 def comparison_csv(names, comparisons):
-    """CSV text: every row of every comparison; names of the tables, the first one is what the others are against."""
+    """CSV text: every row of every comparison; the first of the names is what the others are against."""
     out = io.StringIO()
     writer = csv.writer(out, lineterminator="\n")
     writer.writerow(CSV_COLUMNS)
@@ -123,7 +123,7 @@ def comparison_text(names, comparisons):
 
 
 def _at(table, angle_deg, level):
-    """Level, error and state at other bearings, on straight lines; a limit or a gap on either side stays one."""
+    """Level, error and state at other bearings, on straight lines; a limit or a gap beside one stays one."""
     n = len(table.angle_deg)
     place = np.round((np.asarray(angle_deg) % 360) * n / 360, 6)
     low = np.floor(place).astype(int)

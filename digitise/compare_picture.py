@@ -1,6 +1,4 @@
-"""A picture of a comparison: the traces over each other on an even dB grid, their differences by bearing
-below.
-"""
+"""A picture of a comparison: the traces on one even dB grid, their differences by bearing below."""
 
 import numpy as np
 
@@ -159,7 +157,7 @@ def _pieces(x, y, dash):
     along = np.concatenate(([0.0], np.cumsum(np.hypot(np.diff(x), np.diff(y)))))
     ends = np.cumsum(np.tile(dash, int(along[-1] // sum(dash)) + 1))
     pieces = []
-    for start, end in zip(np.concatenate(([0], ends[1::2])), ends[::2]):
+    for start, end in zip(np.concatenate(([0], ends[1::2])), ends[::2], strict=False):
         inner = along[(along > start) & (along < min(end, along[-1]))]
         at = np.concatenate(([start], inner, [min(end, along[-1])]))
         if start < along[-1]:

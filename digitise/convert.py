@@ -1,4 +1,4 @@
-"""From tables to the open exchange formats and back: what was read, what could not be kept, what to look at."""
+"""From tables to the open exchange formats and back, with what could not be kept."""
 
 import math
 import os

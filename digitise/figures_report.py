@@ -11,8 +11,8 @@ __all__ = ["figures_csv", "figures_json", "figures_text"]
 
 FORMAT = "digitise-figures/1"
 ASSUMED = (
-    "errors are half-widths of 95 % intervals from the tables' own errors, partly common to all rows and partly "
-    "not; levels of lobes and nulls are relative to the main lobe's peak; right is where bearings grow"
+    "errors are half-widths of 95 % intervals from the tables' own errors, partly common to all rows and "
+    "partly not; levels of lobes and nulls are relative to the main lobe's peak; right is where bearings grow"
 )
 CSV_COLUMNS = (
     "table",

@@ -1,5 +1,4 @@
-"""Two cuts into the pattern in every direction, and its directivity. Off the cuts this is an estimate, and
-named so.
+"""Two cuts into the pattern in every direction, an estimate off the cuts, and its directivity.
 
 The cuts meet at one point: the azimuth cut's bearing in the elevation cut's plane, at the elevation where
 the azimuth cut was taken (the horizon, or the cone of the beam). The azimuth cut is referred to that point,
@@ -42,8 +41,8 @@ class Solid:
     method : one of METHODS; limits : what it is known to get wrong
     directivity_dbi : and error95_db, the half-width from the reading of the cuts alone
     others_dbi : method -> directivity by it, or None where it could not be used
-    gap_behind_db : elevation cut less azimuth cut where they meet behind the antenna, NaN when not known: 0 if both
-        are of one antenna and well read
+    gap_behind_db : elevation cut less azimuth cut where they meet behind the antenna, NaN when not known;
+        0 if both are of one antenna and well read
     assumed : sentences
     """
 
@@ -71,7 +70,7 @@ class Solid:
 
 @dataclass(frozen=True, kw_only=True)
 class GainCheck:
-    """A stated gain held against the directivity: verdict "agrees", "differs" or "cannot tell", and a sentence."""
+    """A stated gain against the directivity: verdict "agrees", "differs" or "cannot tell", and a sentence."""
 
     gain_dbi: float
     verdict: str
@@ -106,12 +105,12 @@ def make_solid(
     ----------
     method : one of METHODS
     step_deg : of the sphere; must divide 90
-    azimuth_front_deg : bearing of the azimuth table in the elevation cut's plane; None for the quarter (0, 90,
-        180, 270) nearest to its peak
-    elevation_front_deg : bearing of the elevation table at the horizon in front; None for the quarter nearest to
-        its peak
-    up : "growing" or "falling", the way the elevation table's bearings go from the front horizon up; "" takes a
-        tilted beam to point down
+    azimuth_front_deg : bearing of the azimuth table in the elevation cut's plane; None for the quarter
+        (0, 90, 180, 270) nearest to its peak
+    elevation_front_deg : bearing of the elevation table at the horizon in front; None for the quarter
+        nearest to its peak
+    up : "growing" or "falling", the way the elevation table's bearings go from the front horizon up;
+        "" takes a tilted beam to point down
     azimuth_at_deg : elevation at which the azimuth cut was taken
 
     Raises `UsageError` for a cut without values where the method needs them.
@@ -156,18 +155,19 @@ def check_gain(solid, gain_dbi):
     loss = solid.directivity_dbi - gain_dbi
     margin = math.hypot(solid.error95_db, solid.spread_db)
     said = (
-        f"stated gain {gain_dbi:.1f} dBi, estimated directivity {solid.directivity_dbi:.1f} dBi: {loss:+.1f} dB loss, "
+        f"stated gain {gain_dbi:.1f} dBi, estimated directivity {solid.directivity_dbi:.1f} dBi: "
+        f"{loss:+.1f} dB loss, "
         f"sure to about {margin:.1f} dB (reading and spread of the methods)"
     )
     if loss < -margin:
         return GainCheck(
             gain_dbi=gain_dbi, verdict="differs",
-            sentence=f"{said}; no antenna has more gain than directivity: gain, cuts or method cannot be right",
+            sentence=f"{said}; no antenna has more gain than directivity: gain, cuts or method are wrong",
         )  # fmt: skip
     if loss > USUAL_LOSS_DB + margin:
         return GainCheck(
             gain_dbi=gain_dbi, verdict="differs",
-            sentence=f"{said}; more than usual losses explain: dBd taken for dBi, or cuts of another antenna?",
+            sentence=f"{said}; more than usual losses: dBd taken for dBi, or cuts of another antenna?",
         )  # fmt: skip
     if margin > USUAL_LOSS_DB:
         return GainCheck(gain_dbi=gain_dbi, verdict="cannot tell", sentence=said)
@@ -181,7 +181,7 @@ def _stand(azimuth, elevation, azimuth_front_deg, elevation_front_deg, up):
     if ahead is None:
         ahead = _quarter(_peak_deg(azimuth))
         assumed.append(
-            f"the elevation cut lies in the azimuth cut's plane at {ahead:g} deg, the quarter nearest its peak"
+            f"the elevation cut lies at the azimuth cut's {ahead:g} deg, the quarter nearest its peak"
         )
     front, peak = elevation_front_deg, _peak_deg(elevation)
     if front is None:
@@ -243,7 +243,7 @@ def _check_values(cuts, method):
             at = float(angles[np.argmax(unknown)])
             behind = "behind, " if levels is cuts.back else ""
             raise UsageError(
-                f"the {name} cut has no value {behind}at {at:g} deg from the front ({unknown.mean():.0%} lack one)",
+                f"the {name} cut has no value {behind}at {at:g} deg from the front",
                 remedy="use --method summing, which needs the front half only"
                 if behind
                 else "read it whole first",

@@ -27,18 +27,20 @@ def solid_csv(solid):
 
 
 def solid_text(solid, names, check=None):
-    """Lines: directivity with both parts of its error, the other methods, what was assumed, limits, caution."""
+    """Lines: directivity with both parts of its error, other methods, what was assumed, limits, caution."""
     row, column = np.unravel_index(int(np.argmax(solid.relative_db)), solid.relative_db.shape)
     yield f"{ESTIMATE}."
     yield f"cuts         {names[0]} (azimuth), {names[1]} (elevation)"
     yield f"method       {solid.method}: {solid.limits}"
     yield (
-        f"directivity  {solid.directivity_dbi:.2f} dBi, +- {max(solid.error95_db, 0.01):.2f} dB from the reading of the "
-        f"cuts; the methods differ by {solid.spread_db:.1f} dB ({_others(solid)})"
+        f"directivity  {solid.directivity_dbi:.2f} dBi, +- {max(solid.error95_db, 0.01):.2f} dB from "
+        f"the reading of the cuts; the methods differ by {solid.spread_db:.1f} dB ({_others(solid)})"
     )
-    yield f"peak         azimuth {solid.azimuth_deg[column]:g} deg, elevation {solid.elevation_deg[row]:g} deg"
+    across, tall = solid.azimuth_deg[column], solid.elevation_deg[row]
+    yield f"peak         azimuth {across:g} deg, elevation {tall:g} deg"
     if math.isfinite(solid.gap_behind_db):
-        yield f"behind       the elevation cut is {solid.gap_behind_db:+.1f} dB against the azimuth cut where they meet"
+        gap = solid.gap_behind_db
+        yield f"behind       the elevation cut is {gap:+.1f} dB against the azimuth cut where they meet"
     for sentence in solid.assumed:
         yield f"assumed      {sentence}"
     if check:

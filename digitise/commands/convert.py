@@ -13,6 +13,7 @@ from ..outputs import check_folder, write_file
 
 __all__ = ["add_arguments", "run"]
 
+ELSEWHERE = "the levels are as good as the files they come from; no evidence that a direction is safe"
 WORDS = ("", "azimuth", "elevation")
 DATE = re.compile(r"(19|20)\d\d(0[1-9]|1[0-2])(0[1-9]|[12]\d|3[01])")
 
@@ -51,7 +52,8 @@ def run(args):
         designators=args.designators, coordinates=args.coordinates, error95_db=args.error95,
     )  # fmt: skip
     made = convert(
-        args.files, to=args.to, options=options, planes=_each(args.cut, args, "--cut"), fronts=_each(args.front, args, "--front"), facts=_facts(args), kind=args.kind,
+        args.files, to=args.to, options=options, planes=_each(args.cut, args, "--cut"),
+        fronts=_each(args.front, args, "--front"), facts=_facts(args), kind=args.kind,
         level=args.level, unit=args.unit,
     )  # fmt: skip
     _write(made, args)
@@ -66,8 +68,7 @@ def run(args):
 
         print(f"digitise: caution: {CAUTION}", file=sys.stderr)
     else:
-        print("digitise: caution: the levels are as good as the files they come from; no evidence that a direction "
-              "is safe", file=sys.stderr)  # fmt: skip
+        print(f"digitise: caution: {ELSEWHERE}", file=sys.stderr)
     return 0
 
 
@@ -103,7 +104,7 @@ def _write(made, args):
 def _add_angles(group):
     group.add_argument(
         "--front", metavar="DEG", type=_bearings, default=(0.0,),
-        help="the table's printed bearing in front, in elevation of the horizon in front (0); one for all or one each",
+        help="the table's printed bearing in front, at the horizon (0); one for all or one each",
     )  # fmt: skip
     group.add_argument(
         "--turn",

@@ -13,7 +13,7 @@ def add_arguments(parser):
     form.add_argument("--csv", action="store_true", help="print CSV, one row a figure of a table")
     parser.add_argument(
         "--claim", metavar="FIGURE=VALUE,...", default="",
-        help="what the datasheet states, such as beamwidth=65,ftb>=25,tilt=6+-0.5; each is held against the table",
+        help="what the datasheet states, such as beamwidth=65,ftb>=25,tilt=6+-0.5, held against each table",
     )  # fmt: skip
     add_cut_options(parser)
 

@@ -35,7 +35,7 @@ def add_arguments(parser):
     )  # fmt: skip
     places.add_argument(
         "--up", choices=("growing", "falling"), default="",
-        help="the way the elevation cut's bearings go from the horizon up (a tilted beam is taken to point down)",
+        help="the way the elevation cut's bearings go from the horizon up (a tilted beam points down)",
     )  # fmt: skip
     places.add_argument(
         "--azimuth-at", metavar="DEG", type=float, default=0.0,

@@ -1,4 +1,4 @@
-"""Reading an NSMA WG16.99.050 file: what real files do wrong is noted, what cannot be understood is refused."""
+"""Reading an NSMA WG16.99.050 file: small faults are noted, what cannot be understood is refused."""
 
 import math
 import re
@@ -169,7 +169,7 @@ class _Reader:
         if abs(points[-1][2] - points[0][2]) > SAME_DB:
             raise malformed(
                 self.source, points[-1][0],
-                f"the direction {points[-1][1]:g} stands twice with levels {points[0][2]:g} and {points[-1][2]:g}",
+                f"{points[-1][1]:g} degrees stand twice, with levels {points[0][2]:g} and {points[-1][2]:g}",
             )  # fmt: skip
         return points[:-1]
 
@@ -191,19 +191,20 @@ class _Reader:
         plane = PLANES.get(cut["designator"], "")
         if not plane:
             self.note(cut["line"], f"cut {cut['designator'][:12]!r} is neither azimuth nor elevation")
-        bearing = self.options.of_file(plane, angle)
-        order = np.argsort(bearing, kind="stable")
-        if np.any(np.diff(bearing[order]) <= 0):
+        at = self.options.of_file(plane, angle)
+        order = np.argsort(at, kind="stable")
+        if np.any(np.diff(at[order]) <= 0):
             raise malformed(self.source, cut["line"], "two points of the cut name one direction")
         return Cut(
-            plane=plane, name=cut["designator"], designator=cut["designator"], polarisation=cut.get("polarisation", ""),
-            frequency_mhz=cut["frequency"], unit={"DBI": "dBi", "DBD": "dBd"}.get(unit, "dB"), rounding_db=rounding,
-            angle_deg=bearing[order], level_db=level[order], error95_db=np.full(len(order), np.nan), state=state[order],
+            plane=plane, name=cut["designator"], designator=cut["designator"], frequency_mhz=cut["frequency"],
+            polarisation=cut.get("polarisation", ""), unit={"DBI": "dBi", "DBD": "dBd"}.get(unit, "dB"),
+            rounding_db=rounding, angle_deg=at[order], level_db=level[order], state=state[order],
+            error95_db=np.full(len(order), np.nan),
         )  # fmt: skip
 
     def _check_counts(self):
         blocks = self.counts.get("frequencies", [])
-        for number, n_cuts, said in blocks:
+        for _, n_cuts, said in blocks:
             if said and said[1] != n_cuts:
                 self.note(said[0], f"NUMCUT says {said[1]:g} cuts, {n_cuts} follow")
         if "NOFREQ" in self.fields:

@@ -175,7 +175,8 @@ def _cuts_of(theta, phi, loss, clockwise, text, source):
             Cut(
                 plane=plane, name="H" if plane == "azimuth" else "V", angle_deg=angle[keep],
                 level_db=-loss[chosen][keep] + 0.0, error95_db=np.full(len(keep), np.nan),
-                state=np.full(len(keep), "seen", dtype="U8"), rounding_db=0.5 * 10.0 ** -_decimals(loss[chosen]),
+                state=np.full(len(keep), "seen", dtype="U8"),
+                rounding_db=0.5 * 10.0 ** -_decimals(loss[chosen]),
             )
         )  # fmt: skip
     if not cuts:

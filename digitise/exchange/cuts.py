@@ -108,7 +108,7 @@ class ExchangeOptions:
     file_turn : how a file's do (clockwise; readers of NSMA files disagree, so a comment says it)
     up : the way the table's elevation bearings go from the front horizon up (growing); a file's grow upward
     angles : plain CSV: "0..359", "-180..179" or "-180..180", the last with the closing point
-    values : plain CSV: "relative" (0 and below), "loss" (positive), "field" (1 and below); "" when reading: by look
+    values : plain CSV: "relative" (0 and below), "loss" (positive), "field" (1 and below); "" reads by look
     errors : plain CSV: write error and state as columns of their own
     step_deg : of what is written or read back; NaN keeps the points there are
     decimals : of levels (3)
@@ -209,8 +209,8 @@ def cut_from_table(table, *, options, name="", level="relative", unit="dB"):
 def table_from_cut(cut, *, options):
     """The `Table` of a cut, and sentences on what had to be assumed or worked out.
 
-    Points that lie on an even step keep their values, and rows without a point are missing. Others, and all when
-    `options.step_deg` asks for another step, are worked out on straight lines between points and marked bridged.
+    Points that lie on an even step keep their values, and rows without a point are missing. Others, and all
+    when `options.step_deg` asks for another step, are worked out on straight lines and marked bridged.
     """
     said = []
     bearing = options.to_table(cut.plane, cut.angle_deg)

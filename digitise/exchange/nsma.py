@@ -15,7 +15,7 @@ from .. import __version__
 from ..exceptions import UsageError
 from ._nsma_read import read_nsma
 from ._nsma_tags import DESCRIPTIONS, FREE, LENGTHS, LONGEST_POINT, fit
-from .cuts import Exported, resampled
+from .cuts import PLANES, Exported, resampled
 
 __all__ = ["read", "write"]
 
@@ -113,7 +113,7 @@ def _cut_lines(cut, options):
     angle = options.to_file(cut.plane, cut.angle_deg)
     angle = np.where(angle >= 180, angle - 360, angle)
     order = np.argsort(angle, kind="stable")
-    designator = cut.designator or dict(zip(("azimuth", "elevation"), options.designators.split(","))).get(
+    designator = cut.designator or dict(zip(PLANES, options.designators.split(","), strict=True)).get(
         cut.plane, "H"
     )
     yield ("PATCUT", designator)

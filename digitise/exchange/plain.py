@@ -32,7 +32,8 @@ ANGLES = (
     "phi",
 )
 LEVELS = {
-    "relative_db": "relative", "level_db": "relative", "level": "", "db": "", "gain": "", "gain_db": "", "value": "",
+    "relative_db": "relative", "level_db": "relative",
+    "level": "", "db": "", "gain": "", "gain_db": "", "value": "",
     "loss_db": "loss", "loss": "loss", "attenuation_db": "loss", "attenuation": "loss",
     "relative_field": "field", "field": "field",
 }  # fmt: skip
@@ -109,7 +110,7 @@ def level_text(level_db, values, decimals):
 
 
 def to_level(values, kind, rounding, source, lines):
-    """dB of levels as a file states them, and where a field is too small to have any."""
+    """Work out dB of levels as a file states them, and where a field is too small to have any."""
     if kind == "relative":
         return values + 0.0, np.zeros(len(values), bool)
     if kind == "loss":
@@ -144,7 +145,7 @@ def _field_rounding(level_db, decimals):
 
 
 def _split(rows):
-    """Every row's cells: at tabs or semicolons (with decimal commas allowed), else at commas, else at blanks."""
+    """Split rows at tabs or semicolons (with decimal commas allowed), else at commas, else at blanks."""
     sample = rows[min(1, len(rows) - 1)][1]
     for mark in ("\t", ";"):
         if mark in sample:
@@ -174,7 +175,8 @@ def _columns(cells, source, options):
     level = next((k for k, name in enumerate(head) if name in LEVELS), None)
     if angle is None or level is None:
         raise malformed(
-            source, cells[0][0], f"no column of {'angles' if angle is None else 'levels'} is named in the header",
+            source, cells[0][0],
+            f"no column of {'angles' if angle is None else 'levels'} is named in the header",
             "name them angle_deg and relative_db, loss_db or relative_field",
         )  # fmt: skip
     error = head.index("error95_db") if "error95_db" in head else None

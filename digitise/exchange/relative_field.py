@@ -1,4 +1,4 @@
-"""The table of relative field that 47 CFR 73.316(c) asks for: 10-degree steps, and every maximum and minimum.
+"""The relative-field table that 47 CFR 73.316(c) asks for: 10-degree steps, every maximum and minimum.
 
 As in the 2006 to 2009 text: field relative to 1.0 at the maximum, steps no greater than 10 degrees, maxima
 and minima with their azimuths; a ratio over 15 dB, or for some stations a change over 2 dB in 10 degrees,
@@ -115,6 +115,6 @@ def _checks(angle, level):
         )
     if change > LARGEST_CHANGE_DB:
         checks.append(
-            f"the level changes by up to {change:.1f} dB in 10 degrees; that text names 2 dB for some stations"
+            f"the level changes by up to {change:.1f} dB in 10 degrees; that text has 2 dB for some stations"
         )
     return tuple(checks)

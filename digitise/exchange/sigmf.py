@@ -1,4 +1,4 @@
-"""The antenna extension (v1.0.0) of a SigMF metadata file: gain in dBi, azimuth 0..359 and elevation -90..90.
+"""Antenna extension (v1.0.0) of a SigMF metadata file: dBi at azimuth 0..359 and elevation -90..90.
 
 The two patterns and the gain are as in the extension's specification; the frame around them (a
 metadata-only file of core version 1.0.0) is from memory. Levels are absolute, so the gain must be known.
@@ -84,7 +84,8 @@ def read(data, source, options):
         decimals = max(_decimals(value) for value in node[name])
         cuts.append(
             Cut(
-                plane=plane, name="H" if plane == "azimuth" else "V", unit="dBi", rounding_db=0.5 * 10.0**-decimals,
+                plane=plane, name="H" if plane == "azimuth" else "V", unit="dBi",
+                rounding_db=0.5 * 10.0**-decimals,
                 angle_deg=bearing[order], level_db=levels[order], error95_db=np.full(len(order), np.nan),
                 state=np.full(len(order), "seen", dtype="U8"),
             )
