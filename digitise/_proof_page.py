@@ -285,7 +285,7 @@ def _row_words(node):
         return "no row has a value"
     rows = ", ".join(f"{count} {state}" for state, count in node["rows"].items() if count)
     error = f"median error {node['median_error95_db']:.2g} dB"
-    return f"peak {node['peak_db']:.2f} dB at {node['peak_deg']:g}\u00b0;  {error};  rows: {rows}"
+    return f"peak {round(node['peak_db'], 2) + 0.0:.2f} dB at {node['peak_deg']:g}\u00b0;  {error};  rows: {rows}"
 
 
 def _figure_cells(node):

@@ -185,7 +185,7 @@ def _trace(trace, table_name, cut):
         "name": trace.name,
         "width_px": to_plain(float(trace.width_px), 4),
         "table": table_name,
-        "peak_db": None if peak is None else round(float(table.chart_db[peak]), 3),
+        "peak_db": None if peak is None else round(float(table.chart_db[peak]), 3) + 0.0,
         "peak_deg": None if peak is None else round(float(table.angle_deg[peak]), 6),
         "median_error95_db": to_plain(_median(table.error95_db), 4),
         "rows": {state: int(np.sum(table.state == state)) for state in STATES},

@@ -111,7 +111,7 @@ def _print_summary(chart, folder):
         if trace["peak_db"] is None:
             said.append("no row has a value")
         else:
-            said.append(f"peak {trace['peak_db']:.2f} dB at {trace['peak_deg']:g} deg")
+            said.append(f"peak {round(trace['peak_db'], 2) + 0.0:.2f} dB at {trace['peak_deg']:g} deg")
             width = trace["figures"]["beamwidth"]
             if width["value"] is not None:
                 said.append(f"beamwidth {width['value']:g} +- {width['error95']:g} deg")
