@@ -27,7 +27,7 @@ class Course:
     x, y : (n,) refined positions, sheet px; nx, ny : (n,) unit normals
     u_px : (n,) standard uncertainty of the position along the normal
     kind : (n,) int8: 0 seen whole, 1 inferred from one edge, 2 merged on both sides, 3 no ink
-    width_px : drawn line width
+    width_px : drawn line width (its coverage summed across)
     """
 
     x: np.ndarray
@@ -48,13 +48,13 @@ def refine_course(x, y, cover, *, fill=0.0):
     cover : (h, w) float32 coverage, 0 to 1
     fill : coverage of a fill on one side of the line, 0 when there is none
     """
-    width = _line_width(x, y, cover)
+    drawn, width = _line_width(x, y, cover)
     for _ in range(2):
         nx, ny = _normals(x, y)
         shift, u, kind = _locate(x, y, nx, ny, cover, width, fill)
         shift = _smooth(np.where(kind < 3, shift, 0.0), np.where(kind < 3, 1 / u**2, 1e-3))
         x, y = x + shift * nx, y + shift * ny
-    return Course(x=x, y=y, nx=nx, ny=ny, u_px=u, kind=kind, width_px=width)
+    return Course(x=x, y=y, nx=nx, ny=ny, u_px=u, kind=kind, width_px=drawn)
 
 
 def _profiles(x, y, nx, ny, cover, reach):
@@ -74,12 +74,16 @@ def _remap(image, px, py):
 
 
 def _line_width(x, y, cover):
-    """Drawn width: area under the profile of the places where the line stands alone."""
+    """Drawn width (area under the profile) and the profile's own width (area over peak: wider when blurred), px."""
     nx, ny = _normals(x, y)
     s, m = _profiles(x, y, nx, ny, cover, 8.0)
-    alone = (m[:, 0] < 0.1) & (m[:, -1] < 0.1) & (m.max(axis=1) > 0.35)
-    areas = np.clip(m[alone], 0, 1).sum(axis=1) * STEP_PX
-    return float(np.clip(np.median(areas), 0.7, 14.0)) if alone.sum() >= 12 else 2.0
+    peak = m.max(axis=1)
+    alone = (m[:, 0] < 0.1) & (m[:, -1] < 0.1) & (peak > 0.5 * np.percentile(peak, 80)) & (peak > 0.15)
+    if alone.sum() < 12:
+        return 2.0, 2.5
+    areas = np.clip(m[alone], 0, None).sum(axis=1) * STEP_PX
+    drawn = float(np.clip(np.median(areas), 0.7, 16.0))
+    return drawn, float(np.clip(np.median(areas / peak[alone]), drawn, 18.0))
 
 
 def _normals(x, y):
@@ -105,7 +109,7 @@ def _locate(x, y, nx, ny, cover, width, fill):
     summed = cv2.blur(weight, (kernel, 1), borderType=cv2.BORDER_CONSTANT) - 0.002 * np.abs(s)
     middle = summed.argmax(axis=1)
     peak = np.maximum(m[rows, middle], 1e-3)
-    level = np.maximum(peak, 0.2)[:, None]
+    level = np.maximum(peak, 0.5 * np.percentile(peak, 80))[:, None]
     index = np.arange(k)
     background = fill
     low = m < 0.5 * (level + background)
@@ -138,7 +142,7 @@ def _locate(x, y, nx, ny, cover, width, fill):
     kind = np.where(whole, 0, np.where(one, 1, 2)).astype(np.int8)
     both = ~whole & only_right & only_left
     shift = np.where(both, (right + left) / 2, shift)
-    kind = np.where(peak < 0.25, 3, kind).astype(np.int8)
+    kind = np.where(peak < 0.4 * np.percentile(peak, 80), 3, kind).astype(np.int8)
     u = np.where(kind == 1, EDGE_PX, u)
     spread = np.clip(wide - width, 0, 2 * reach) / np.sqrt(12)
     u = np.where(kind == 2, np.maximum(0.3, spread), u)

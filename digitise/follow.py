@@ -166,18 +166,18 @@ def _costs(ink, hidden, depth, width):
 
 def _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows, fill):
     columns, rows = _walk(enter, leave)
-    on_ink = ink[columns, np.clip(rows, 0, ink.shape[1] - 1)]
     support = float(np.mean(np.maximum(ink[np.arange(len(enter)), enter], ink[np.arange(len(leave)), leave])))
     step = (angles[-1] - angles[0]) / max(len(angles) - 1, 1)
     plane = angles[0] + columns * step
     x, y = sheet.to_sheet(rows / sheet.outer_px, plane)
-    x, y, floor, plane = _evenly(x, y, rows < floor_rows, plane)
+    x, y, plane = _evenly(x, y, plane)
     course = refine_course(x, y, layer.body, fill=fill)
     u, v = sheet.to_plane(course.x, course.y)
     rho = np.hypot(u, v)
     # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.
     bearing = plane + ((np.degrees(np.arctan2(u, -v)) - plane + 180) % 360 - 180)
-    return _resample(course, rho, bearing, floor, angles, sheet, whole, support)
+    at_centre = np.maximum(enter, leave) < floor_rows
+    return _resample(course, rho, bearing, at_centre, floor_rows, angles, sheet, whole, support)
 
 
 def _walk(enter, leave):
@@ -190,7 +190,7 @@ def _walk(enter, leave):
     return columns, rows
 
 
-def _evenly(x, y, floor, plane):
+def _evenly(x, y, plane):
     """Resample the path about 1 px apart along its smoothed course."""
     kernel = np.ones(5) / 5
     xs = np.convolve(np.pad(x, 2, mode="edge"), kernel, mode="valid")
@@ -198,44 +198,37 @@ def _evenly(x, y, floor, plane):
     length = np.concatenate([[0], np.cumsum(np.hypot(np.diff(xs), np.diff(ys)))])
     keep = np.concatenate([[True], np.diff(length) > 1e-9])
     at = np.arange(0, length[-1], 1.0)
-    index = np.clip(np.searchsorted(length, at), 0, len(x) - 1)
-    return (
-        np.interp(at, length[keep], xs[keep]), np.interp(at, length[keep], ys[keep]), floor[index],
-        np.interp(at, length[keep], plane[keep]),
-    )  # fmt: skip
+    return tuple(np.interp(at, length[keep], values[keep]) for values in (xs, ys, plane))
 
 
-def _resample(course, rho, bearing, floor, angles, sheet, whole, support):
+def _resample(course, rho, bearing, at_centre, floor_rows, angles, sheet, whole, support):
     """Level curve on an even angle grid, from the samples in order along the path."""
     step = 1.0 / SAMPLES_PER_DEG
     start = np.ceil(angles[0] / step) * step
-    grid_deg = np.arange(start, angles[-1] + 1e-9, step) if not whole else np.arange(0, 360, step)
-    order = _forward(bearing, course.u_px)
-    b = bearing[order]
-    if whole:
-        b = np.concatenate([b[-400:] - 360, b, b[:400] + 360]) if len(b) > 400 else np.concatenate([b - 360, b, b + 360])
-        wrap = (lambda v: np.concatenate([v[-400:], v, v[:400]])) if len(order) > 400 else (lambda v: np.tile(v, 3))
-    else:
-        wrap = lambda v: v  # noqa: E731
-    b, first = np.unique(b, return_index=True)
+    grid_deg = np.arange(0, 360, step) if whole else np.arange(start, angles[-1] + 1e-9, step)
+    # Within a few pixels of the centre an angle means nothing; those columns are set below.
+    order = np.argsort(bearing, kind="stable")
+    order = order[rho[order] * sheet.outer_px > max(floor_rows - 1, 2)]
+    if order.size < 2:
+        return None
+    b, first = np.unique(bearing[order], return_index=True)
+    order = order[first]
+    period = 360.0 if whole else None
 
     def at(values):
-        return np.interp(grid_deg, b, wrap(values[order])[first])
+        return np.interp(grid_deg, b, values[order], period=period)
 
-    seen = course.kind.astype(float)
-    curve = at(rho)
-    slope = np.gradient(curve, step)
-    kind = at(seen)
-    bridge = np.where(kind > 0.5, at(np.where(course.kind > 0, course.u_px, 0.0)), 0.0) / sheet.outer_px
-    state = np.where(at(floor.astype(float)) > 0.5, "floor", np.where(kind > 1.5, "bridged", "seen"))
+    column = np.clip(np.round((grid_deg - angles[0]) % 360 / (angles[1] - angles[0])).astype(int), 0, len(angles) - 1)
+    floor = at_centre[column]
+    curve = np.where(floor, 0.5 * floor_rows / sheet.outer_px, at(rho))
+    slope = np.where(floor, 0.0, np.gradient(curve, step))
+    kind = np.where(floor, 2.0, at(course.kind.astype(float)))
+    spread = np.where(course.kind > 0, course.u_px, 0.0)
+    bridge = np.where(floor, 0.5 * floor_rows, np.where(kind > 0.5, at(spread), 0.0)) / sheet.outer_px
+    state = np.where(floor, "floor", np.where(kind > 1.5, "bridged", "seen"))
     slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
     return Trace(
         plane_deg=grid_deg, rho=curve, u_px=np.minimum(at(course.u_px), 0.2), slope=slope, radial_share=slant,
-        u_rho_bridge=bridge, state=state, clear=kind < 0.5, support=support, width_px=course.width_px / sheet.reduction,
-        sheet_outer_px=sheet.outer_px,
+        u_rho_bridge=bridge, state=state, clear=kind < 0.5, support=support,
+        width_px=course.width_px / sheet.reduction, sheet_outer_px=sheet.outer_px,
     )  # fmt: skip
-
-
-def _forward(bearing, u_px):
-    """Indices of the samples that go forward in angle: a noisy flank may step back by a hair."""
-    return np.argsort(bearing, kind="stable")

@@ -168,7 +168,7 @@ def _trace_reading(found, grid, scale, bearing, settings):
     table, rows_budget = _tabulate(trace, budget, grid, scale, bearing, settings.step_deg)
     return TraceReading(
         name="", ink=found.ink, dash="fill" if found.filled else found.dash, table=table, budget=rows_budget,
-        width_px=trace.width_px, reasons=tuple(_trace_reasons(trace, table, scale)),
+        width_px=trace.width_px, reasons=tuple(_trace_reasons(found, table, scale)),
     )  # fmt: skip
 
 
@@ -211,8 +211,10 @@ def _state_at(trace, plane_deg):
     return state if wraps else np.where(outside & ~near_end, "missing", state)
 
 
-def _trace_reasons(trace, table, scale):
+def _trace_reasons(found, table, scale):
     """Reasons to look at one trace, each with its number."""
+    if found.doubt > 0:
+        yield reason("trace-doubtful", found.doubt)
     state = table.state
     drawn = state != "missing"
     bridged = float(np.mean(state[drawn] == "bridged")) if drawn.any() else 1.0

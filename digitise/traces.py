@@ -18,6 +18,7 @@ from .ink import find_inks, separate_ink
 __all__ = ["FoundTrace", "find_traces"]
 
 MOST_PER_INK = 4
+LEAST_LENGTH = 0.5  # outer radii: ink along a path that is worth returning in doubt
 LEAST_STRETCH = 0.45  # outer radii: ink along the longest well-inked stretch of a trace
 LEAST_ON_INK = 0.30  # share of the path on ink; dotted lines have about a third
 SOLID_ON_INK = 0.85  # the same of a solid line
@@ -31,6 +32,7 @@ class FoundTrace:
 
     ink : "#rrggbb" as found (or as told); dash : "solid", "dashed" or "dotted"; filled : bool
     trace : follow.Trace; length : drawn length on ink, in outer radii
+    doubt : 0 when the ink proves the trace, else the share of the path that has none
     """
 
     ink: str
@@ -38,6 +40,7 @@ class FoundTrace:
     filled: bool
     trace: Trace
     length: float
+    doubt: float
 
 
 def find_traces(sheet, grid, *, settings):
@@ -48,7 +51,7 @@ def find_traces(sheet, grid, *, settings):
     if settings.inks:
         for told in settings.inks:
             rgb = _parse(told)
-            traces = _traces_of_ink(rgb, palette, sheet, grid, settings, told)
+            traces = _traces_of_ink(rgb, palette, sheet, grid, settings, told, told=True)
             if not traces:
                 there = ", ".join(ink.hex for ink in inks[:6]) or "none"
                 raise NotReadError(
@@ -60,7 +63,7 @@ def find_traces(sheet, grid, *, settings):
     for ink in inks:
         if ink.length_px < 0.25 * sheet.outer_px:
             continue
-        found += _traces_of_ink(ink.rgb, palette, sheet, grid, settings, ink.hex)
+        found += _traces_of_ink(ink.rgb, palette, sheet, grid, settings, ink.hex, told=False)
     found = _without_doubles(found)
     if not found:
         raise NotReadError("no trace was found on the chart", stage="ink", remedy="name its colour with --ink '#rrggbb'")
@@ -71,7 +74,7 @@ def _parse(told):
     return np.array([int(told[k : k + 2], 16) for k in (1, 3, 5)], float)
 
 
-def _traces_of_ink(rgb, palette, sheet, grid, settings, name):
+def _traces_of_ink(rgb, palette, sheet, grid, settings, name, *, told):
     if np.linalg.norm(rgb - sheet.paper_rgb) < 20:
         return []
     layer = remove_grid(separate_ink(sheet, rgb, palette), sheet, grid)
@@ -80,29 +83,37 @@ def _traces_of_ink(rgb, palette, sheet, grid, settings, name):
     pins = tuple(grid.to_plane(np.float64(x), np.float64(y)) for x, y in settings.pins)
     found = []
     for _ in range(MOST_PER_INK):
-        item = None
-        for solid in (True, False):
-            trace = follow_trace(layer, sheet, grid, fill=fill, pins=pins, solid=solid)
-            item = trace and _accepted(trace, layer, sheet, grid, fill, name, solid)
-            if item:
-                break
-        if not item:
+        item = _next_trace(layer, sheet, grid, fill, pins, name, insist=told and not found)
+        if item is None:
             break
         found.append(item)
         if fill:
             break
-        layer = _erase(layer, trace, sheet)
+        layer = _erase(layer, item.trace, sheet)
         pins = ()
     return found
 
 
-def _accepted(trace, layer, sheet, grid, fill, name, solid):
-    """The trace as a `FoundTrace` when the ink along it makes it one, else None."""
-    evidence = _evidence(trace, layer, sheet, fill)
-    enough = evidence.stretch > LEAST_STRETCH and evidence.share > (SOLID_ON_INK if solid else LEAST_ON_INK)
-    if not enough or _is_ring(trace, grid):
-        return None
-    return FoundTrace(ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length)
+def _next_trace(layer, sheet, grid, fill, pins, name, *, insist):
+    """The next trace of an ink, a solid one first; None when what is left is no trace.
+
+    insist : the user named this ink, so the best path is returned even in doubt, as long as it has ink of its own
+    """
+    best = None
+    for solid in (True, False):
+        trace = follow_trace(layer, sheet, grid, fill=fill, pins=pins, solid=solid)
+        if trace is None:
+            continue
+        evidence = _evidence(trace, layer, sheet, fill)
+        sure = evidence.stretch > LEAST_STRETCH and evidence.share > (SOLID_ON_INK if solid else LEAST_ON_INK)
+        item = FoundTrace(
+            ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length, doubt=1 - evidence.share
+        )
+        if sure and not _is_ring(trace, grid):
+            return replace(item, doubt=0.0)
+        if evidence.length > LEAST_LENGTH and (best is None or item.doubt < best.doubt):
+            best = item
+    return best if insist else None
 
 
 def _with_covers(layer, sheet, covers):
