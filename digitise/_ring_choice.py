@@ -17,13 +17,16 @@ __all__ = ["Candidate", "choose_rings", "even_step"]
 BLOCK_ARC_PX = 24.0  # sectors are at least this long, to hold a dash and its gap
 MAX_BLOCKS, MIN_BLOCKS = 72, 12
 NEAR_PX = 0.6  # a sector holds the line when it lies this near the usual radius
-MIN_RADIUS_PX = 9.0  # nearer the centre, spokes and traces run into one
+MIN_RADIUS_PX = 10.5  # nearer the centre, spokes and traces run into one
 SMALL_RADIUS_PX = 26.0  # below it a ring needs better evidence
 MIN_SCORE = 0.45  # of the radial profile, for a ring that stands by itself
 MIN_SHARE = 0.55  # of the sectors
 MAX_WANDER_PX = 0.75
+MAX_FORETOLD_WANDER_PX = 0.45
 WEAK_SHARE = 0.33  # enough where the even step foretells a ring
 STEP_MISS_PX = 0.9
+MIN_LAW_GAP_PX = 6.0
+LAW_RATIOS = (10 ** (-1 / 20), 10 ** (-1 / 10), 0.89**0.5)  # radius a dB: field, power, log-periodic
 REACH_PX = 5.0  # half length of the cuts across a candidate
 
 
@@ -84,7 +87,10 @@ def choose_rings(image, homography, rho, score, *, arc_deg, avoid_deg=(), avoid_
     step = even_step(np.array([c.rho for c in [rim, *rings]]) * outer_px)
     rings = _without_strangers(rings, step, outer_px)
     if step is not None:
-        rings += _foretold(found, rings, rim, step, sign, outer_px, candidate)
+        places, min_share = step[1] + step[0] * np.arange(-200, 201), WEAK_SHARE
+    else:
+        places, min_share = _law_places(rings, rim, outer_px), MIN_SHARE
+    rings += _foretold(found, rings, rim, places, sign, outer_px, candidate, min_share)
     return [rim, *sorted(rings, key=lambda c: -c.rho)]
 
 
@@ -101,29 +107,46 @@ def _without_strangers(rings, step, outer_px):
     kept = []
     for c in rings:
         others = [o for o in rings if o is not c]
-        contrast = np.median([o.contrast for o in others])
         share = np.median([o.share for o in others])
-        odd = c.contrast > 1.8 * contrast or c.contrast < 0.5 * contrast or c.share < 0.8 * share
+        odd = c.contrast > 1.7 * max(o.contrast for o in others) or c.share < 0.8 * share
         supported = step is not None and _off_step(c, step, outer_px) < STEP_MISS_PX
         if supported or not odd:
             kept.append(c)
     return kept
 
 
-def _foretold(found, rings, rim, step, sign, outer_px, candidate):
-    """Fainter or half-hidden rings at the places that the even step foretells."""
-    size, first = step
+def _foretold(found, rings, rim, places_px, sign, outer_px, candidate, min_share):
+    """Fainter or half-hidden rings at radii that the step or the law of the others foretells."""
     usual = np.median([c.contrast for c in rings]) if rings else rim.contrast
+    usual_drawn = np.median([c.points.drawn for c in rings]) if rings else rim.points.drawn
     more = []
-    for k in range(int(np.ceil((MIN_RADIUS_PX - first) / size)), int((rim.rho * outer_px - 2 - first) // size) + 1):
-        place = first + k * size
-        if any(abs(c.rho * outer_px - place) < 2 * STEP_MISS_PX for c in [rim, *rings]):
+    for place in places_px:
+        if not MIN_RADIUS_PX < place < rim.rho * outer_px - 2:
+            continue
+        if any(abs(c.rho * outer_px - place) < 2 * STEP_MISS_PX for c in [rim, *rings, *more]):
             continue
         near = [c for c in found if abs(c.rho * outer_px - place) < STEP_MISS_PX and np.sign(c.score) == sign]
         best = max([*near, candidate(place / outer_px, sign * MIN_SCORE)], key=lambda c: c.share)
-        if best.share > WEAK_SHARE and best.points.drawn > WEAK_SHARE and 0.4 < best.contrast / usual < 2.5:
+        fits = best.share > min_share and best.points.drawn > min(0.25, 0.6 * usual_drawn)
+        if fits and best.wander_px < MAX_FORETOLD_WANDER_PX and 0.4 < best.contrast / usual < 2.5:
             more.append(best)
     return more
+
+
+def _law_places(rings, rim, outer_px):
+    """Radii of whole dB under the law (REFERENCES: field, power, log-periodic) that all rings obey, or none."""
+    if len(rings) < 3:
+        return []
+    ratio = np.array([c.rho for c in rings]) / rim.rho
+    edge = rim.rho * outer_px
+    best, best_miss = None, 0.5
+    for per_db in LAW_RATIOS:
+        level = np.round(np.log(ratio) / np.log(per_db))
+        miss = np.abs(per_db**level - ratio) * edge
+        if miss.max() < STEP_MISS_PX and len(np.unique(level)) == len(level) and np.median(miss) < best_miss:
+            best, best_miss = per_db, float(np.median(miss))
+    places = [] if best is None else edge * best ** np.arange(1.0, 41.0)
+    return [place for place in places if place * (1 - best) > MIN_LAW_GAP_PX]
 
 
 def _stands_alone(c, outer_px):
@@ -172,7 +195,7 @@ def even_step(radius_px):
 def _character(points, radius_px):
     """Share of the sectors that hold a ring near its usual radius, scatter of their positions (px), contrast."""
     n, m = points.ink.shape
-    blocks = int(np.clip(2 * np.pi * radius_px / BLOCK_ARC_PX, MIN_BLOCKS, MAX_BLOCKS))
+    blocks = min(int(np.clip(2 * np.pi * radius_px / BLOCK_ARC_PX, MIN_BLOCKS, MAX_BLOCKS)), n)
     edge = np.linspace(0, n, blocks + 1).astype(int)
     ink = np.add.reduceat(points.ink, edge[:-1], axis=0) / np.diff(edge)[:, None]
     s = (np.arange(m) - m // 2) * STEP_PX

@@ -52,7 +52,7 @@ class PlaneFit:
     spoke_sigma_px: np.ndarray
 
 
-def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True):
+def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True, alike=False):
     """Fit the chart plane to measured lines.
 
     Parameters
@@ -60,13 +60,15 @@ def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True):
     rings, spokes : lists of LinePoints; the radius of the first ring is the unit that stays
     spoke_deg : (m,) plane angles that the spokes must have
     start : (8,) plane parameters; ring_rho : (n,) first radii
-    tilt : whether a perspective may be tried
+    tilt : whether a perspective may be tried; alike : weigh all lines alike, for a start that may hold a trace, which
+        runs truer about the wrong centre than the rings do
 
     Returns
     -------
     PlaneFit
     """
     points = _Points(rings, spokes, spoke_deg)
+    points.alike = alike
     begin = np.array(start, float)
     if not len(spokes):
         begin[TURN] = 0
@@ -221,6 +223,8 @@ def _line_sigma(points, residual):
         if last - first > 5:
             middle = (last - first) // 2
             sigma[k] = 1.4826 * np.partition(size[first:last], middle)[middle]
+    if points.alike:
+        sigma[:] = np.median(sigma)
     return np.maximum(sigma, MIN_SIGMA_PX)
 
 

@@ -78,6 +78,18 @@ def spoke_points(image, homography, plane_deg, rho_from, rho_to, *, reach_px=4.0
     return _cut(image, x0, y0, -ty / length, tx / length, rho, reach_px, sign, width_px, bow_px=None)
 
 
+def _usual_contrast(contrast, beside):
+    """Contrast of the line itself among cuts that also hold gaps between dashes, and traces that cross it."""
+    noise = 1.4826 * float(np.median(np.abs(beside)))
+    above = contrast[contrast > max(1.0, 2.5 * noise)]
+    if len(above) < 4:
+        return float(np.median(contrast)) if len(contrast) else 0.0
+    usual = float(np.percentile(above, 65))
+    for _ in range(3):
+        usual = float(np.median(above[above > 0.4 * usual]))
+    return usual
+
+
 def _cut(image, x0, y0, nx, ny, at, reach_px, sign, width_px, *, bow_px):
     """Cuts along (nx, ny) about (x0, y0)."""
     half = int(np.ceil(reach_px / STEP_PX))
@@ -99,13 +111,12 @@ def _cut(image, x0, y0, nx, ny, at, reach_px, sign, width_px, *, bow_px):
     raw = sign * ink
     ink = np.maximum(raw, 0)
     contrast = ink[:, middle].max(axis=1)
-    strong = contrast[contrast > 0.25 * np.percentile(contrast, 90)] if len(contrast) else contrast
-    usual = float(np.median(strong)) if len(strong) else 0.0
+    usual = _usual_contrast(contrast, raw[:, ~middle])
     if width_px is None:
-        typical = ink[contrast > 0.5 * usual] if usual > 0 else ink
-        full = np.percentile(contrast, 90) if usual > 0 else 1.0
-        shape = np.median(typical, axis=0) if len(typical) else np.zeros_like(s)
-        width_px = float(np.clip(shape.sum() * STEP_PX / max(full, 1e-6), 0.5, 1.6 * reach_px))
+        typical = ink[(contrast > 0.5 * usual) & (contrast < 1.7 * usual + 1)]
+        if len(typical):
+            width_px = np.median(typical, axis=0).sum() * STEP_PX / max(np.percentile(typical.max(axis=1), 75), 1e-6)
+        width_px = float(np.clip(width_px or 1.0, 0.5, 1.6 * reach_px))
     centre = np.zeros(len(cut))
     for _ in range(3):
         window = np.clip(width_px / 2 + 1.75 - np.abs(s[None] - centre[:, None]), 0, 0.5)

@@ -22,6 +22,8 @@ FLOOR_LEVELS = 0.35  # weakest line, grey levels of the detector's answer
 NOISE_FACTOR = 3.0
 APART_PX = 3.5  # lines closer than this are one
 LOBE_PX = 10.0  # reach of the detector's side lobes
+ARC_SCORE = 0.25  # rings that show where the chart is drawn
+MIN_GAP_DEG = 100.0
 LOBE_SHARE = 0.6  # and their size, next to the line's own answer
 
 
@@ -105,33 +107,36 @@ def _lobes(radius_px, level):
     return ((apart < LOBE_PX) & stronger & (level[:, None] * level[None, :] < 0)).any(axis=1)
 
 
-def drawn_arc(profile, rho, sign):
-    """Sectors in which the strong rings are drawn: boolean (N_BLOCKS,), and the arc (first, last) in degrees.
+def drawn_arc(profile):
+    """Sectors in which the chart is drawn: boolean (N_BLOCKS,), and the arc (first, last) in degrees.
 
-    A gap counts when no ring is drawn over 100 degrees or more; else the chart is whole.
+    The chart is part of a circle only when its rim is empty over MIN_GAP_DEG or more and full elsewhere, and the
+    other rings are empty there too; else it is whole.
     """
+    whole = np.ones(N_BLOCKS, bool), np.array([0.0, 360.0])
+    rho, score, level = profile.peaks(ARC_SCORE)
+    near_rim = np.flatnonzero((rho > 0.93) & (rho < 1.07))
+    if not len(near_rim):
+        return whole
+    rim = near_rim[np.argmax(np.abs(level[near_rim]))]
     votes = np.clip(profile.answer / profile.floor, -1, 1)
-    columns = np.clip(np.round(rho / (profile.rho[1] - profile.rho[0])).astype(int), 1, votes.shape[1] - 2)
-    seen = np.zeros(N_BLOCKS)
-    for column, s in zip(columns, sign):
-        seen += (s * votes[:, column - 1 : column + 2]).max(axis=1)
-    drawn = seen / max(len(columns), 1) > 0.3
+
+    def drawn(k):
+        c = int(np.clip(round(rho[k] / profile.rho[1]), 1, votes.shape[1] - 2))
+        return (np.sign(score[k]) * votes[:, c - 1 : c + 2]).max(axis=1) > 0.4
+
+    on_rim = drawn(rim)
+    if on_rim.all() or not on_rim.any():
+        return whole
+    starts = np.flatnonzero(~on_rim & np.roll(on_rim, 1))
+    length, start = max((int(np.argmax(np.roll(on_rim, -start))), int(start)) for start in starts)
     width = 360.0 / N_BLOCKS
-    if drawn.all() or not drawn.any():
-        return np.ones(N_BLOCKS, bool), np.array([0.0, 360.0])
-    # The longest run of empty sectors, around the circle.
-    best_start, best_length = 0, 0
-    for start in np.flatnonzero(~drawn & np.roll(drawn, 1)):
-        length = 0
-        while length < N_BLOCKS and not drawn[(start + length) % N_BLOCKS]:
-            length += 1
-        if length > best_length:
-            best_start, best_length = int(start), length
-    if best_length * width < 100:
-        return np.ones(N_BLOCKS, bool), np.array([0.0, 360.0])
     mask = np.ones(N_BLOCKS, bool)
-    mask[(best_start + np.arange(best_length)) % N_BLOCKS] = False
-    return mask, np.array([((best_start + best_length) * width) % 360, (best_start * width) % 360])
+    mask[(start + np.arange(length)) % N_BLOCKS] = False
+    others = [drawn(k)[~mask].mean() for k in range(len(rho)) if 0.3 < rho[k] < 0.93 and drawn(k)[mask].mean() > 0.6]
+    if length * width < MIN_GAP_DEG or on_rim[mask].mean() < 0.85 or np.median(others or [0.0]) > 0.2:
+        return whole
+    return mask, np.array([((start + length) * width) % 360, (start * width) % 360])
 
 
 def centre_profile(image, homography, *, reach_px=7.0, rounds=6):

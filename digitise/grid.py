@@ -112,15 +112,14 @@ def find_grid(picture, box):
         raise _no_grid(picture)
     plane = np.linalg.inv(to_full) @ plane
     plane = centre_profile(work, plane / plane[2, 2])
-    whole = np.array([0.0, 360.0])
-    spokes = find_spokes(work, plane, arc_deg=whole)
-    plane = _align(work, plane, spokes)
+    _, arc = drawn_arc(ring_profile(work, plane))
+    spokes = find_spokes(work, plane, arc_deg=arc)
+    plane = _align(work, plane, spokes, arc)
     if plane is None:
         raise _no_grid(picture)
-    spokes = find_spokes(work, plane, arc_deg=whole)
+    spokes = find_spokes(work, plane, arc_deg=arc)
     profile = ring_profile(work, plane, spoke_deg=spokes.drawn_deg)
-    rho, score, _ = profile.peaks(STRONG)
-    blocks, arc = drawn_arc(profile, rho, np.sign(score))
+    blocks, arc = drawn_arc(profile)
     rho, score, _ = profile.peaks(WEAK, blocks)
     full = gray8.astype(np.float32)
     plane = to_full @ plane
@@ -175,7 +174,7 @@ def _first_plane(gray8, box):
     return h / h[2, 2]
 
 
-def _align(work, plane, spokes):
+def _align(work, plane, spokes, arc):
     """Bring the strong rings into line on the reduced picture; None when there are none."""
     for tilt in (False, True):
         profile = ring_profile(work, plane, reach=1.1, spoke_deg=spokes.drawn_deg)
@@ -184,10 +183,11 @@ def _align(work, plane, spokes):
         if not len(order):
             return None
         rings = [
-            ring_points(work, plane, rho[k], sign=np.sign(score[k]), n_max=180, avoid_deg=spokes.drawn_deg)
+            ring_points(work, plane, rho[k], sign=np.sign(score[k]), n_max=180, avoid_deg=spokes.drawn_deg, arc_deg=arc)
             for k in order
         ]
-        plane = fit_plane(rings, [], [], start=parameters_of(plane), ring_rho=rho[order], tilt=tilt).homography
+        start = parameters_of(plane)
+        plane = fit_plane(rings, [], [], start=start, ring_rho=rho[order], tilt=tilt, alike=True).homography
     return plane
 
 
