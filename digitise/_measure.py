@@ -5,8 +5,7 @@ draws from its errors), and gives m results, NaN where a table has none. Positio
 
 Between rows a curve is followed by a polynomial: a peak by the least-squares quartic through its top, so
 that one noisy row does not make the peak; a crossing by the cubic through the four rows about it; a null by
-the parabola of power through three rows, which is exact for a field that passes zero evenly, whether the
-null is filled or not.
+a cubic of the field that changes its sign there, or, when it is filled, by a parabola of the power.
 """
 
 import numpy as np
@@ -17,6 +16,7 @@ TOP_DB = 0.6  # rows within this of the largest are a lobe's top; a quartic foll
 TOP_DEG = 15.0  # but no wider on either side
 FINE = 161  # points that the quartic is evaluated at
 NEAR_TOP_DB = 0.01  # the peak stands at the middle of what is so near to the largest value
+FILLED_SHARE = 0.1  # a null is filled when its vertex holds more of the power that the lower neighbour has
 SAFE_STEEP_DB = 6.0  # rows more than this apart are joined by a straight line: a cubic would swing
 
 
@@ -70,39 +70,58 @@ def level_at(levels, place):
 
 
 def top(levels, rows):
-    """Largest level (dB) among contiguous rows, and its place in rows, between rows by a parabola."""
+    """Largest level (dB) among contiguous rows, and its place in rows, between rows by a parabola of field."""
     part = levels[:, rows % levels.shape[1]]
     j = np.argmax(np.where(np.isnan(part), -np.inf, part), axis=1)
-    shift, rise = _vertex(levels, rows[0] + j)
-    return part[np.arange(len(j)), j] + rise, rows[0] + j + shift
+    shift, rise = _vertex(levels, rows[0] + j, per_db=1 / 20)
+    return part[np.arange(len(j)), j] + 20 * np.log10(1 + rise), rows[0] + j + shift
 
 
 def bottom_place(levels, rows):
     """Place (rows) of the smallest level among contiguous rows, and by how much two ways to find it differ.
 
-    The place is the vertex of the parabola of power; the other way, tried at the first table, takes the field
-    for a straight line that passes zero between the lowest row and the lower one of its neighbours.
+    A null that the field passes through is where the cubic through four rows of signed field is zero; a filled
+    one is the vertex of the parabola of power, which tells the two apart by its own depth. The difference is
+    that of the first table.
     """
     n = levels.shape[1]
     part = levels[:, rows % n]
     j = rows[0] + np.argmin(np.where(np.isnan(part), np.inf, part), axis=1)
-    shift, _ = _vertex(levels, j, of_power=True)
-    left, low, right = (10 ** (levels[0, (j[0] + k) % n] / 20) for k in (-1, 0, 1))
-    straight = -low / (low + left) if left < right else low / (low + right)
-    return j + shift, float(np.nan_to_num(abs(straight - shift[0])))
+    shift, deeper = _vertex(levels, j, per_db=-1 / 10)
+    each = np.arange(len(j))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        left2, left, low, right, right2 = (10 ** (levels[each, (j + k) % n] / 20) for k in (-2, -1, 0, 1, 2))
+        to_left = _rough(left2, left, -low, -right, -right2) < _rough(left2, left, low, -right, -right2)
+        side = np.where(to_left, -1, 1)
+        near, behind = np.where(to_left, left, right), np.where(to_left, right, left)
+        beyond = np.where(to_left, left2, right2)
+        straight = low / (low + near)
+        cubic = _cubic_root((behind, low, -near, -beyond), straight)
+        filled = 1 - deeper > FILLED_SHARE * (np.minimum(left, right) / low) ** 2
+    cubic = np.where((cubic >= 0) & (cubic <= 1), cubic, straight)
+    through = side * cubic
+    through = np.where(np.isfinite(through), through, shift)
+    place = np.where(filled, shift, through)
+    return j + place, float(abs(through[0] - shift[0]))
 
 
-def _vertex(levels, at, *, of_power=False):
-    """Shift (rows, within half a row) and rise of the parabola's vertex over the largest of three levels.
+def _rough(*values):
+    """Sum of the sizes of second differences: of two readings of signs, the true one is the smoother."""
+    return sum(np.abs(a - 2 * b + c) for a, b, c in zip(values, values[1:], values[2:], strict=False))
 
-    With `of_power`, the shift of the vertex below the smallest of three powers.
+
+def _vertex(levels, at, *, per_db):
+    """Shift (rows, within half a row) and rise of a parabola's vertex over the middle of three values.
+
+    The values are field (`per_db` 1/20) about a largest level, or power (-1/10) about a smallest one, there
+    turned over, so that what rises is the depth; both in units of the middle value.
     """
     n = levels.shape[1]
     each = np.arange(len(at))
-    a, b, c = (levels[each, (at + k) % n] for k in (-1, 0, 1))
-    if of_power:
-        a, b, c = (-(10 ** ((value - b) / 10)) for value in (a, b, c))
-    bend = a - 2 * b + c
+    left, middle, right = (levels[each, (at + k) % n] for k in (-1, 0, 1))
+    sign = np.sign(per_db)
+    a, c = (sign * 10 ** ((value - middle) * abs(per_db)) for value in (left, right))
+    bend = a - 2 * sign + c
     with np.errstate(divide="ignore", invalid="ignore"):
         shift = 0.5 * (a - c) / bend
     good = (bend < 0) & (np.abs(shift) <= 0.5)
