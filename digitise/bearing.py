@@ -54,12 +54,16 @@ def make_bearing(grid, *, settings, labels=None):
     zero_deg = None if settings.zero_deg is None else _told_zero(grid, settings.zero_deg)
     if zero_deg is not None and settings.turn is not None:
         return Bearing(zero_deg=zero_deg, turn=settings.turn, u_deg=float(grid.skew_u_deg), source="told")
-    lacking = [name for name, told in (("--zero", zero_deg), ("--turn", settings.turn)) if told is None]
-    raise NotReadError(
-        "where the chart prints 0 degrees and which way angles grow is not told, and labels are not read here",
-        remedy=f'give {" and ".join(lacking)}, or install "digitise[labels]"',
-        stage="bearing",
-    )
+    if labels is None or not labels.engine:
+        lacking = [name for name, told in (("--zero", zero_deg), ("--turn", settings.turn)) if told is None]
+        raise NotReadError(
+            "where the chart prints 0 degrees and which way angles grow is not told, and labels are not read here",
+            remedy=f'give {" and ".join(lacking)}, or install "digitise[labels]"',
+            stage="bearing",
+        )
+    from ._bearing_read import bearing_from_labels
+
+    return bearing_from_labels(grid, labels, zero_deg=zero_deg, turn=settings.turn)
 
 
 def _told_zero(grid, page_deg):
