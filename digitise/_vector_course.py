@@ -1,0 +1,154 @@
+"""Where a drawn line meets the ray of a bearing: exact crossings of its segments, the outermost when there are several."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from .frozen import lock_arrays
+
+__all__ = ["Crossings", "at_bearings"]
+
+BRIDGE_RHO = 0.12  # the longest jump of the pen that is bridged, outer radii
+CENTRE_RHO = 0.003  # a line that comes so near has reached the chart's centre
+TOUCH_RHO = 3e-5  # a ray that passes an end so near meets it: a hundredth of a px at a radius of 400
+MAX_TOUCH_DEG = 0.01
+SHARPEST = 1.0  # radians between two chords of a curve: a sharper turn is a corner (a null's tip)
+STEEPEST = 50.0  # d rho / d degree: a radial line has no slope
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Crossings:
+    """A line at n plane angles.
+
+    rho : (n,) NaN where it is not drawn
+    slope : (n,) d rho / d plane angle, per degree
+    radial_share : (n,) cosine of the angle between the line and the circle through it, 0 to 1
+    sag_rho : (n,) how far a smooth curve through the drawn points may stray from the chord there
+    jump_rho : (n,) length of the pen's jump that was bridged there, 0 where drawn
+    centre : whether the line reaches the chart's centre
+    """
+
+    rho: np.ndarray
+    slope: np.ndarray
+    radial_share: np.ndarray
+    sag_rho: np.ndarray
+    jump_rho: np.ndarray
+    centre: bool
+
+    def __post_init__(self):
+        lock_arrays(self)
+
+
+def at_bearings(rho, plane_deg, wanted_deg, *, vertex=None, bridged=True):
+    """Cross a line with rays.
+
+    Parameters
+    ----------
+    rho, plane_deg : (m,) the line's points in order, NaN where the pen was up
+    wanted_deg : (n,) plane angles of the rays
+    vertex : (m,) bool, points that the drawing names itself, for the sag; None takes none
+    bridged : go straight over short jumps of the pen, also from the last point to the first
+
+    Returns
+    -------
+    Crossings
+    """
+    start, end, jump, sag = _segments(rho, plane_deg, vertex, bridged)
+    wanted = np.asarray(wanted_deg, float).ravel()
+    ray, segment = _meetings(start, end, wanted)
+    direction = np.stack([np.sin(np.radians(wanted)), -np.cos(np.radians(wanted))], axis=1)[ray]
+    a, b = start[segment], end[segment]
+    side_a, side_b = _cross(direction, a), _cross(direction, b)
+    along = side_a - side_b
+    radial = np.abs(along) < 1e-12
+    share = np.clip(side_a / np.where(radial, 1.0, along), 0.0, 1.0)
+    far = np.einsum("ij,ij->i", a, direction) > np.einsum("ij,ij->i", b, direction)
+    share = np.where(radial, np.where(far, 0.0, 1.0), share)
+    reach = np.einsum("ij,ij->i", a + share[:, None] * (b - a), direction)
+    ok = reach >= -1e-9
+    ray, segment, share, reach = ray[ok], segment[ok], share[ok], np.maximum(reach[ok], 0.0)
+
+    # Drawn before bridged, then outermost: the last of each ray in this order.
+    order = np.lexsort((reach, jump[segment] == 0, ray))
+    ray, segment, share, reach = ray[order], segment[order], share[order], reach[order]
+    last = np.flatnonzero(np.diff(ray, append=-1) != 0)
+    n = len(wanted)
+    out = {name: np.full(n, np.nan) for name in ("rho", "slope", "radial_share", "sag_rho", "jump_rho")}
+    at = ray[last]
+    out["rho"][at] = reach[last]
+    out["slope"][at], out["radial_share"][at] = _slant(start[segment[last]], end[segment[last]], wanted[at], reach[last])
+    out["sag_rho"][at] = sag[segment[last]] * 4 * share[last] * (1 - share[last])
+    out["jump_rho"][at] = jump[segment[last]]
+    known = np.isfinite(rho)
+    return Crossings(**out, centre=bool(known.any() and rho[known].min() < CENTRE_RHO))
+
+
+def _segments(rho, plane_deg, vertex, bridged):
+    """start, end (k, 2) in the plane, jump (k,) bridged length or 0, sag (k,) at the middle, outer radii."""
+    u, v = rho * np.sin(np.radians(plane_deg)), -rho * np.cos(np.radians(plane_deg))
+    points = np.stack([u, v], axis=1)
+    known = np.flatnonzero(np.isfinite(points).all(axis=1))
+    if len(known) < 2:
+        empty = np.zeros((0, 2))
+        return empty, empty, np.zeros(0), np.zeros(0)
+    first, second = known[:-1], known[1:]
+    start, end = points[first], points[second]
+    up = second - first > 1
+    length = np.hypot(*(end - start).T)
+    jump = np.where(up, length, 0.0)
+    keep = ~up | (bridged & (length <= BRIDGE_RHO))
+    sag = np.zeros(len(start)) if vertex is None else _sag(start, end, vertex[first] & vertex[second] & ~up)
+    start, end, jump, sag = start[keep], end[keep], jump[keep], sag[keep]
+    gap = float(np.hypot(*(points[known[0]] - points[known[-1]])))
+    if bridged and 1e-9 < gap <= BRIDGE_RHO and len(known) > 2:
+        start, end = np.vstack([start, points[known[-1]]]), np.vstack([end, points[known[0]]])
+        jump, sag = np.append(jump, gap), np.append(sag, 0.0)
+    return start, end, jump, sag
+
+
+def _sag(start, end, chord):
+    """Rise of a smooth curve over each chord: length times turn over 8, the turn that of the neighbouring chords."""
+    step = end - start
+    length = np.hypot(*step.T)
+    if len(step) < 2:
+        return np.zeros(len(step))
+    course = np.arctan2(step[:, 1], step[:, 0])
+    turn = np.abs((np.diff(course) + np.pi) % (2 * np.pi) - np.pi)
+    turn = np.minimum(turn, SHARPEST)
+    bend = np.maximum(np.concatenate([[0.0], turn]), np.concatenate([turn, [0.0]]))
+    return np.where(chord, length * bend / 8, 0.0)
+
+
+def _meetings(start, end, wanted):
+    """(ray, segment) index pairs of every segment and the rays within its angle."""
+    a = np.degrees(np.arctan2(start[:, 0], -start[:, 1])) % 360
+    turn = (np.degrees(np.arctan2(end[:, 0], -end[:, 1])) - a + 180) % 360 - 180
+    # A flank may run from one drawn point to the next along a ray: rounding must not lose its outer end.
+    least = np.radians(MAX_TOUCH_DEG)
+    touch_a, touch_b = (np.degrees(np.minimum(TOUCH_RHO / np.maximum(np.hypot(*p.T), TOUCH_RHO), least)) for p in (start, end))
+    low = np.where(turn >= 0, a - touch_a, a + turn - touch_b)
+    high = np.where(turn >= 0, a + turn + touch_b, a + touch_a)
+    order = np.argsort(wanted % 360, kind="stable")
+    ordered = (wanted % 360)[order]
+    three = np.concatenate([ordered - 360, ordered, ordered + 360])
+    first, stop = np.searchsorted(three, low), np.searchsorted(three, high, side="right")
+    count = stop - first
+    segment = np.repeat(np.arange(len(count)), count)
+    offset = np.arange(count.sum()) - np.repeat(np.cumsum(count) - count, count)
+    index = np.repeat(first, count) + offset
+    return order[index % max(len(ordered), 1)], segment
+
+
+def _slant(start, end, plane_deg, rho):
+    """d rho / d degree, and the cosine of the slant, of segments at plane angles."""
+    out = np.stack([np.sin(np.radians(plane_deg)), -np.cos(np.radians(plane_deg))], axis=1)
+    round_ = np.stack([-out[:, 1], out[:, 0]], axis=1)
+    step = end - start
+    radial, tangential = np.einsum("ij,ij->i", step, out), np.einsum("ij,ij->i", step, round_)
+    flat = np.where(np.abs(tangential) < 1e-12, 1e-12, tangential)
+    slope = np.clip(np.radians(1.0) * rho * radial / flat, -STEEPEST, STEEPEST)
+    return slope, np.abs(tangential) / np.maximum(np.hypot(radial, tangential), 1e-12)
+
+
+def _cross(a, b):
+    return a[:, 0] * b[:, 1] - a[:, 1] * b[:, 0]
