@@ -10,6 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ._ring_points import STEP_PX, ring_points
+from ._robust import median, scatter
 from ._unwrap import outer_radius
 
 __all__ = ["Candidate", "choose_rings", "even_step"]
@@ -27,6 +28,7 @@ WEAK_SHARE = 0.33  # enough where the even step foretells a ring
 STEP_MISS_PX = 0.9
 MIN_LAW_GAP_PX = 6.0
 LAW_RATIOS = (10 ** (-1 / 20), 10 ** (-1 / 10), 0.89**0.5)  # radius a dB: field, power, log-periodic
+N_CUTS = 150  # at most, across a candidate
 REACH_PX = 5.0  # half length of the cuts across a candidate
 
 
@@ -68,7 +70,7 @@ def choose_rings(image, homography, rho, score, *, arc_deg, avoid_deg=(), avoid_
             arc_deg=arc_deg,
             reach_px=REACH_PX,
             sign=np.sign(s),
-            n_max=180,
+            n_max=N_CUTS,
             avoid_deg=avoid_deg,
             avoid_px=avoid_px,
         )
@@ -203,11 +205,11 @@ def _character(points, radius_px):
     positive = np.maximum(ink, 0) * window
     centre = (positive * s).sum(axis=1) / np.maximum(positive.sum(axis=1), 1e-9)
     peak = positive.max(axis=1)
-    noise = 1.4826 * float(np.median(np.abs(ink[:, ~window])))
+    noise = scatter(ink[:, ~window])
     there = peak > max(2.5 * noise, 1e-6)
     if there.sum() < 4:
         return 0.0, 9.0, 0.0
-    held = there & (peak > 0.3 * np.median(peak[there]))
-    middle = np.median(centre[held])
-    wander = 1.4826 * float(np.median(np.abs(centre[held] - middle)))
-    return float((held & (np.abs(centre - middle) < NEAR_PX)).mean()), wander, float(np.median(peak[there]))
+    held = there & (peak > 0.3 * median(peak[there]))
+    middle = median(centre[held])
+    wander = scatter(centre[held], middle)
+    return float((held & (np.abs(centre - middle) < NEAR_PX)).mean()), wander, median(peak[there])

@@ -14,6 +14,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ._robust import median, scatter
+
 __all__ = ["PlaneFit", "fit_plane", "homography_of", "parameters_of"]
 
 # order of the plane's parameters
@@ -190,13 +192,14 @@ def _iterate(points, plane, rho, model):
             sigma = _line_sigma(points, residual)
         scaled = residual / (TUKEY * sigma[points.line])
         weight = np.where(np.abs(scaled) < 1, (1 - scaled**2) ** 2, 0) / sigma[points.line] ** 2
-        full = _with_radii(points, jac[:, model], np.exp(plane[SIZE]))
-        weighted = full * weight[:, None]
-        normal = weighted.T @ full + np.diag(hold)
+        full = jac[:, model]
+        px = np.exp(plane[SIZE])
+        normal, gradient = _normal_equations(points, full, residual, weight, px)
+        normal += np.diag(hold)
         pull = np.r_[plane[model] - first_plane[model], rho[1:] - first_rho[1:]] * hold
         scale = np.sqrt(np.maximum(np.diag(normal), 1e-12))
         unit = normal / np.outer(scale, scale) + 1e-9 * np.eye(len(scale))
-        step = -np.linalg.solve(unit, (weighted.T @ residual + pull) / scale) / scale
+        step = -np.linalg.solve(unit, (gradient + pull) / scale) / scale
         plane[model] += step[: len(model)]
         rho[1:] += step[len(model) :]
         if round_ >= 2 and np.abs(step[:2]).max() < 3e-4:
@@ -204,27 +207,38 @@ def _iterate(points, plane, rho, model):
     return _State(plane, rho, model, residual, weight, sigma, full, normal)
 
 
-def _with_radii(points, jac, px):
-    """Append the derivatives to the radii of all rings but the first."""
-    n = len(jac)
-    full = np.zeros((n, jac.shape[1] + points.n_rings - 1))
-    full[:, : jac.shape[1]] = jac
-    own = points.is_ring & (points.line > 0)
-    full[np.flatnonzero(own), jac.shape[1] - 1 + points.line[own]] = -px
-    return full
+def _normal_equations(points, jac, residual, weight, px):
+    """Normal matrix and gradient for the plane's parameters, then the radii of all rings but the first.
+
+    A radius touches its own ring alone, with derivative -px, so its rows are sums over that ring's points.
+    """
+    m, n = jac.shape[1], points.n_rings
+    weighted = jac * weight[:, None]
+    normal = np.zeros((m + n - 1, m + n - 1))
+    gradient = np.empty(m + n - 1)
+    normal[:m, :m] = weighted.T @ jac
+    gradient[:m] = weighted.T @ residual
+    if n > 1:
+
+        def ring_sums(values):
+            return np.bincount(points.line, values, minlength=points.n_lines)[1:n]
+
+        normal[:m, m:] = -px * np.stack([ring_sums(column) for column in weighted.T])
+        normal[m:, :m] = normal[:m, m:].T
+        normal[m:, m:] = np.diag(px * px * ring_sums(weight))
+        gradient[m:] = -px * ring_sums(weight * residual)
+    return normal, gradient
 
 
 def _line_sigma(points, residual):
     """Robust scatter of each line about the model (n_lines,), px."""
     sigma = np.ones(points.n_lines)
     edges = np.searchsorted(points.line, np.arange(points.n_lines + 1))
-    size = np.abs(residual)
     for k, (first, last) in enumerate(zip(edges[:-1], edges[1:])):
         if last - first > 5:
-            middle = (last - first) // 2
-            sigma[k] = 1.4826 * np.partition(size[first:last], middle)[middle]
+            sigma[k] = scatter(residual[first:last])
     if points.alike:
-        sigma[:] = np.median(sigma)
+        sigma[:] = median(sigma)
     return np.maximum(sigma, MIN_SIGMA_PX)
 
 
@@ -240,7 +254,7 @@ def _better(rich, plain, points):
     for k in range(points.n_lines):
         own = line == k
         if own.any():
-            spread[own] = max(1.4826 * np.median(np.abs(mean[0][own])), MIN_SIGMA_PX)
+            spread[own] = max(scatter(mean[0][own]), MIN_SIGMA_PX)
     cost = [np.sum(np.minimum((m / spread) ** 2, TUKEY**2)) for m in mean]
     return cost[1] - cost[0] > MIN_GAIN
 
@@ -251,14 +265,17 @@ def _finish(points, state):
     scale = np.sqrt(np.maximum(np.diag(state.normal), 1e-12))
     outer = np.outer(scale, scale)
     inverse = np.linalg.inv(state.normal / outer + 1e-9 * np.eye(len(scale))) / outer
-    scores = jac * (state.weight * state.residual)[:, None]
-    push = np.zeros((points.n_clusters, jac.shape[1]))
-    np.add.at(push, points.cluster, scores)
+    px = np.exp(plane[SIZE])
+    force = state.weight * state.residual
+    push = np.zeros((points.n_clusters, len(scale)))
+    for k in range(n_model):
+        push[:, k] = np.bincount(points.cluster, jac[:, k] * force, minlength=points.n_clusters)
+    own = points.is_ring & (points.line > 0)
+    np.add.at(push, (points.cluster[own], n_model - 1 + points.line[own]), -px * force[own])
     spread = push.T @ push * points.n_clusters / max(points.n_clusters - len(scale), 1)
     full = inverse @ spread @ inverse
     cov = np.zeros((N_PLANE, N_PLANE))
     cov[np.ix_(state.model, state.model)] = full[:n_model, :n_model]
-    px = np.exp(plane[SIZE])
     for k, floor in ((CX, SYSTEMATIC_PX / 2), (CY, SYSTEMATIC_PX / 2), (SIZE, SYSTEMATIC_PX / px)):
         cov[k, k] += floor**2
     to_h = np.empty((8, N_PLANE))

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ._robust import median, quantile, scatter
 from ._unwrap import apply_homography, outer_radius, sample
 
 __all__ = ["LinePoints", "ring_points", "spoke_points"]
@@ -80,13 +81,13 @@ def spoke_points(image, homography, plane_deg, rho_from, rho_to, *, reach_px=4.0
 
 def _usual_contrast(contrast, beside):
     """Contrast of the line itself among cuts that also hold gaps between dashes, and traces that cross it."""
-    noise = 1.4826 * float(np.median(np.abs(beside)))
+    noise = scatter(beside[::3])
     above = contrast[contrast > max(1.0, 2.5 * noise)]
     if len(above) < 4:
-        return float(np.median(contrast)) if len(contrast) else 0.0
-    usual = float(np.percentile(above, 65))
+        return median(contrast)
+    usual = quantile(above, 0.65)
     for _ in range(3):
-        usual = float(np.median(above[above > 0.4 * usual]))
+        usual = median(above[above > 0.4 * usual])
     return usual
 
 
@@ -107,7 +108,7 @@ def _cut(image, x0, y0, nx, ny, at, reach_px, sign, width_px, *, bow_px):
     ink = ramp - cut
     middle = np.abs(s) <= max(1.0, 0.35 * reach_px)
     if sign is None:
-        sign = 1.0 if np.median(ink[:, middle].mean(axis=1)) + 1e-3 * ink[:, middle].mean() >= 0 else -1.0
+        sign = 1.0 if median(ink[:, middle].mean(axis=1)) >= 0 else -1.0
     raw = sign * ink
     ink = np.maximum(raw, 0)
     contrast = ink[:, middle].max(axis=1)
@@ -115,7 +116,7 @@ def _cut(image, x0, y0, nx, ny, at, reach_px, sign, width_px, *, bow_px):
     if width_px is None:
         typical = ink[(contrast > 0.5 * usual) & (contrast < 1.7 * usual + 1)]
         if len(typical):
-            width_px = np.median(typical, axis=0).sum() * STEP_PX / max(np.percentile(typical.max(axis=1), 75), 1e-6)
+            width_px = np.median(typical, axis=0).sum() * STEP_PX / max(quantile(typical.max(axis=1), 0.75), 1e-6)
         width_px = float(np.clip(width_px or 1.0, 0.5, 1.6 * reach_px))
     centre = np.zeros(len(cut))
     for _ in range(3):

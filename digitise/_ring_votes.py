@@ -21,6 +21,7 @@ NOISE_FACTOR = 4.0  # and this many times the noise of the gradient
 MAX_VOTERS = 40_000
 N_DIRECTIONS = 90
 VOTE_CAP = 4.0  # one direction cannot count for more than this many standard deviations
+HUB_POINTS = 10_000  # edge pixels that refine a centre
 RHO_BIN_PX = 2.0
 CENTRE_STEP_PX = 4.0  # spacing of the candidate centres on the reduced picture
 N_SECTORS = 72  # of a circle, each drawn or not
@@ -140,14 +141,16 @@ def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=(0.15, 0.10,
     Robust Gauss-Newton on the angle between gradient and M (p - c) for ring pixels, and on its departure from a
     right angle for spoke pixels; tolerances in radians, falling.
     """
+    step = max(1, len(edges.x) // HUB_POINTS)
+    at_x, at_y, at_gx, at_gy = edges.x[::step], edges.y[::step], edges.gx[::step], edges.gy[::step]
     for tolerance in tolerances:
-        dx, dy = edges.x - x, edges.y - y
+        dx, dy = at_x - x, at_y - y
         r = np.hypot(dx, dy)
         near = r > 4
         if reach_px is not None:
             near &= r < reach_px
         dx, dy, r = dx[near], dy[near], r[near]
-        gx, gy = edges.gx[near], edges.gy[near]
+        gx, gy = at_gx[near], at_gy[near]
         mx, my = (1 + a) * dx + b * dy, b * dx + (1 - a) * dy
         ring = (gx * my - gy * mx) / r
         spoke = (gx * dx + gy * dy) / r

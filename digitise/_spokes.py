@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
+from ._robust import scatter
 from ._unwrap import outer_radius, unwrap
 
 __all__ = ["Spokes", "find_spokes"]
@@ -45,16 +46,17 @@ NO_SPOKES = Spokes(deg=np.zeros(0), step_deg=float("nan"), skew_deg=0.0, score=n
 def find_spokes(image, homography, *, arc_deg):
     """Find the comb of spokes on a float32 grey picture, as `Spokes`; the homography's turn is taken as given."""
     score = _angle_profile(image, homography)
-    inside = _inside(np.arange(N_ANGLES) * 360.0 / N_ANGLES, arc_deg, 1.0)
+    inside = _inside(np.arange(N_ANGLES) * 360.0 / N_ANGLES, arc_deg, 1.5)
     peak_deg, peak_score = _peaks(np.where(inside, score, 0))
     if not len(peak_deg):
         return NO_SPOKES
+    sign = 1.0 if np.sum(peak_score) >= 0 else -1.0
+    size = np.where(inside, np.maximum(sign * score, 0), 0).astype(np.float32)
+    near = cv2.dilate(np.r_[size[-4:], size, size[:4]][None], np.ones((1, 7), np.uint8))[0][4:-4]
     best = None
     for step in STEPS_DEG:
-        comb = _best_comb(score, step, peak_deg, peak_score, arc_deg)
-        if comb is None:
-            continue
-        if best is None or comb[0] > best[0] + 0.5:
+        comb = _best_comb(near, inside, step, peak_deg, np.abs(peak_score))
+        if comb is not None and (best is None or comb[0] > best[0] + 0.5):
             best = comb
     if best is None:
         return NO_SPOKES
@@ -79,7 +81,7 @@ def _angle_profile(image, homography):
         part = polar[:, columns]
         answer[:, columns] = 0.5 * (np.roll(part, value, axis=0) + np.roll(part, -value, axis=0)) - part
     blocks = answer.reshape(N_ANGLES, N_PARTS, PER_PART).mean(axis=2)
-    noise = 1.4826 * float(np.median(np.abs(blocks)))
+    noise = scatter(blocks)
     return np.clip(blocks / max(3 * noise, FLOOR_LEVELS), -1, 1).mean(axis=1)
 
 
@@ -104,26 +106,27 @@ def _peaks(score):
     return (at + np.clip(shift, -0.5, 0.5)) * 360.0 / N_ANGLES % 360, score[at]
 
 
-def _best_comb(score, step, peak_deg, peak_score, arc_deg):
+def _best_comb(near, inside, step, peak_deg, peak_size):
     """Best phase of a comb with this step: (merit, step, phase, line angles, line scores) or None."""
-    best = None
-    sign = 1.0 if np.sum(peak_score) >= 0 else -1.0
-    size = np.maximum(sign * score, 0)
-    near = cv2.dilate(np.r_[size[-4:], size, size[:4]].astype(np.float32)[None], np.ones((1, 7), np.uint8))[0][4:-4]
-    tried = np.unique(np.round(peak_deg % step, 1))
-    for phase in tried[:40]:
-        apart = (peak_deg - phase + step / 2) % step - step / 2
-        close = np.abs(apart) < 0.8
-        refined = phase + float(np.average(apart[close], weights=np.abs(peak_score[close]))) if close.any() else phase
-        lines = (refined + step * np.arange(round(360 / step))) % 360
-        lines = np.sort(lines[_inside(lines, arc_deg, 1.5)])
-        if len(lines) < 2:
-            continue
-        line_score = near[np.round(lines * N_ANGLES / 360).astype(int) % N_ANGLES]
-        share = float(np.mean(line_score > PRESENT))
-        if share < COMB_SHARE:
-            continue
-        merit = float(np.sum(line_score)) - 0.35 * len(lines)
-        if best is None or merit > best[0]:
-            best = (merit, step, refined, lines, line_score)
-    return best
+    per_deg = N_ANGLES / 360
+    at = np.arange(round(step * per_deg))[:, None] + np.arange(round(360 / step)) * step * per_deg
+    at = np.round(at).astype(int) % N_ANGLES
+    counted, score = inside[at], near[at]
+    n = counted.sum(axis=1)
+    share = ((score > PRESENT) & counted).sum(axis=1) / np.maximum(n, 1)
+    merit = np.where((n >= 2) & (share >= COMB_SHARE), (score * counted).sum(axis=1) - 0.35 * n, -1)
+    top = int(np.argmax(merit))
+    if merit[top] <= 0:
+        return None
+    # the dilated score has a flat top: take its middle, then the peaks themselves
+    level = np.flatnonzero(merit > merit[top] - 1e-3)
+    phase = float(np.mean(level[np.abs(level - top) < 6])) / per_deg
+    apart = (peak_deg - phase + step / 2) % step - step / 2
+    close = np.abs(apart) < 0.8
+    if close.any():
+        phase += float(np.sum(apart[close] * peak_size[close]) / np.sum(peak_size[close]))
+    lines = (phase + step * np.arange(round(360 / step))) % 360
+    index = np.round(lines * per_deg).astype(int) % N_ANGLES
+    lines, index = lines[inside[index]], index[inside[index]]
+    order = np.argsort(lines)
+    return float(merit[top]), step, phase, lines[order], near[index][order]

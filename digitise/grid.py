@@ -25,6 +25,10 @@ __all__ = ["Grid", "find_grid"]
 
 WORK_OUTER_PX = 320.0  # rings are looked for on a picture reduced to this outer radius
 HUB_PIXELS = 0.12e6  # and the first centre on one of this many px
+MIN_DRAWN = 0.15  # share of a ring's arc: less is an accident
+MAX_PASSES = 3
+SETTLED_PX = 0.1  # the lines are not measured again once the plane moves less
+AVOID_PX = 2.5  # ring points keep this far from spokes
 STRONG, WEAK = 0.4, 0.15  # mean vote of the sectors for a ring
 
 
@@ -127,7 +131,7 @@ def find_grid(picture, box):
     rings = choose_rings(full, plane, rho, score, arc_deg=arc, avoid_deg=spokes.drawn_deg)
     if not rings:
         raise _no_grid(picture)
-    return _measure(full, plane, rings, arc, (box.x, box.y))
+    return _measure(full, plane, rings, spokes, arc, (box.x, box.y))
 
 
 def _no_grid(picture):
@@ -191,30 +195,43 @@ def _align(work, plane, spokes, arc):
     return plane
 
 
-def _measure(full, plane, rings, arc, origin):
+def _measure(full, plane, rings, spokes, arc, origin):
     """Sub-pixel fit of everything, as a `Grid` in picture px."""
     plane = plane @ np.diag([rings[0].rho, rings[0].rho, 1.0])
     plane /= plane[2, 2]
     rho = np.array([ring.rho for ring in rings]) / rings[0].rho
-    sign = [ring.points.sign for ring in rings]
-    spokes = find_spokes(full, plane, arc_deg=arc)
+    sign, width = [ring.points.sign for ring in rings], [ring.points.width_px for ring in rings]
     parameters = parameters_of(plane)
     parameters[3] = np.radians(spokes.skew_deg)
-    width = [ring.points.width_px for ring in rings]
-    for _ in range(2):
+    lines = [spoke_points(full, plane, a, 0.25, 0.97) for a in spokes.drawn_deg]
+    for _ in range(MAX_PASSES):
         plane = homography_of(parameters)
         rings = [
-            ring_points(full, plane, r, arc_deg=arc, reach_px=max(3.0, w / 2 + 2.5), sign=s)
+            ring_points(
+                full,
+                plane,
+                r,
+                arc_deg=arc,
+                reach_px=max(3.0, w / 2 + 2.5),
+                sign=s,
+                avoid_deg=spokes.deg,
+                avoid_px=AVOID_PX,
+            )
             for r, s, w in zip(rho, sign, width)
         ]
-        lines = [spoke_points(full, plane, a, 0.25, 0.97) for a in spokes.deg]
+        keep = [k == 0 or p.drawn > MIN_DRAWN for k, p in enumerate(rings)]
+        rho, sign, width, rings = (
+            rho[keep], *([v for v, ok in zip(values, keep) if ok] for values in (sign, width, rings))
+        )
         fit = fit_plane(rings, lines, spokes.deg, start=parameters, ring_rho=rho)
+        moved = np.abs(fit.homography[:2] - plane[:2]).max()
         parameters, rho = fit.parameters, fit.ring_rho
+        if moved < SETTLED_PX:
+            break
     shift = np.array([[1, 0, origin[0]], [0, 1, origin[1]], [0, 0, 1.0]])
     h = shift @ fit.homography
     move = np.eye(8)
     move[0, 6], move[1, 7], move[3, 6], move[4, 7] = origin[0], origin[0], origin[1], origin[1]
-    move[0, 6], move[1, 7] = origin[0], origin[0]
     reasons = ()
     return Grid(
         homography=h,
