@@ -36,7 +36,12 @@ def grid_part(grid):
     names = ("homography", "covariance", "ring_rho", "ring_rho_u", "ring_drawn", "ring_width_px", "spoke_deg")
     names += ("spoke_step_deg", "spoke_width_px", "arc_deg", "skew_deg", "skew_u_deg", "residual_px")
     plain = {name: to_plain(getattr(grid, name)) for name in names}
-    return {"centre_px": [grid.centre_x, grid.centre_y], "outer_px": grid.outer_px, **plain}
+    return {
+        "centre_px": [grid.centre_x, grid.centre_y],
+        "outer_px": grid.outer_px,
+        **plain,
+        "reasons": reasons_part(grid.reasons),
+    }
 
 
 def grid_back(node):

@@ -8,6 +8,7 @@ opened or written.
 
 import json
 import os
+from dataclasses import replace
 
 import numpy as np
 
@@ -27,7 +28,7 @@ __all__ = ["FORMAT", "make_record", "read_record", "settings_as_told", "settings
 FORMAT = "digitise-record/1"
 MAX_RECORD_BYTES = 50_000_000  # ten traces at the finest step have about 5 MB
 N_PARAMETERS = {"even": 2, "field": 2, "power": 2, "log-periodic": 2, "rings": 0}
-BY_HAND = "by hand"
+FROM_RECORD = "record"
 ROW_DIGITS = 3  # significant digits of the per-row parts of the error
 
 
@@ -102,8 +103,9 @@ def settings_from_record(path, *, sha256=None):
     """The `Settings` of an earlier record, for the same template or the same picture.
 
     The scale and the bearing are taken over as they were found, and what was told besides levels and angles
-    as it was told. What belongs to one picture alone (pins, a grid corrected by hand, the page, which of its
-    charts) is taken only when `sha256`, that of the picture to be read now, is the record's own.
+    as it was told. What belongs to one picture alone (the grid, pins, the page, which of its charts) is taken
+    only when `sha256`, that of the picture to be read now, is the record's own: then nothing is measured anew
+    that the rows hang on, and the table comes out the same.
     """
     record = read_record(path)
     try:
@@ -118,7 +120,8 @@ def settings_from_record(path, *, sha256=None):
             step_deg=told.get("step_deg", 1.0),
             pins=_tuples(told.get("pins", ())) if same else (),
             page=told.get("page") if same else None,
-            grid=grid_back(record["grid"]) if same and "grid" in told else None,
+            grid=_grid_back(record["grid"]) if same else None,
+            grid_from=told.get("grid", FROM_RECORD),
             chart=(record["chart"]["number"], record["chart"]["of"])
             if same and record["chart"]["of"] > 1
             else None,
@@ -137,15 +140,28 @@ def settings_as_told(record):
     record : as `read_record` returns it; raises `UsageError` when the settings contradict each other
     """
     told, chart = record["told"], record["chart"]
-    plain = ("outer_db", "centre_db", "law", "zero_deg", "turn", "page", "ring_levels", "inks", "covers", "pins", "crop")
+    plain = (
+        "outer_db",
+        "centre_db",
+        "law",
+        "zero_deg",
+        "turn",
+        "page",
+        "ring_levels",
+        "inks",
+        "covers",
+        "pins",
+        "crop",
+    )
     x_y_db = ("x_px", "y_px", "level_db")
     return Settings(
         **{name: _tuples(told[name]) for name in plain if name in told},
         marks=tuple(Mark(**dict(zip(x_y_db, values, strict=True))) for values in told.get("marks", ())),
         step_deg=told.get("step_deg", 1.0),
-        scale=_scale_back(record["scale"]) if record["scale"].get("source") == "record" else None,
-        bearing=_bearing_back(record["bearing"]) if record["bearing"].get("source") == "record" else None,
-        grid=grid_back(record["grid"]) if "grid" in told else None,
+        scale=_scale_back(record["scale"]) if record["scale"].get("source") == FROM_RECORD else None,
+        bearing=_bearing_back(record["bearing"]) if record["bearing"].get("source") == FROM_RECORD else None,
+        grid=_grid_back(record["grid"]) if "grid" in told else None,
+        grid_from=told.get("grid", FROM_RECORD),
         chart=(chart["number"], chart["of"]) if chart["of"] > 1 else None,
     )
 
@@ -162,7 +178,7 @@ def _told(settings):
     if settings.marks:
         told["marks"] = [[mark.x_px, mark.y_px, mark.level_db] for mark in settings.marks]
     if settings.grid is not None:
-        told["grid"] = BY_HAND
+        told["grid"] = settings.grid_from
     told["step_deg"] = settings.step_deg
     return told
 
@@ -221,15 +237,20 @@ def _check(record):
         take(trace, "table", str)
     if not all(isinstance(item, str) for item in take(record, "review", list)):
         raise Malformed("review is not a list of strings")
-    if "grid" in take(record, "told", dict):
-        grid_back(take(record, "grid", dict))
+    _grid_back(take(record, "grid", dict))
     _scale_back(take(record, "scale", dict))
     _bearing_back(take(record, "bearing", dict))
     _check_told(take(record, "told", dict))
 
 
 def _check_told(told):
-    for name, shape in (("ring_levels", (None,)), ("crop", (4,)), ("covers", (None, 4)), ("pins", (None, 2)), ("marks", (None, 3))):
+    for name, shape in (
+        ("ring_levels", (None,)),
+        ("crop", (4,)),
+        ("covers", (None, 4)),
+        ("pins", (None, 2)),
+        ("marks", (None, 3)),
+    ):
         if name in told:
             take_numbers(told, name, shape)
     if not all(isinstance(ink, str) for ink in take(told, "inks", list, default=[])):
@@ -239,6 +260,10 @@ def _check_told(told):
     for name in ("law", "turn", "grid"):
         take(told, name, str, default="")
     take(told, "page", int, default=1)
+
+
+def _grid_back(node):
+    return replace(grid_back(node), reasons=_reasons_back(node))
 
 
 def _scale_back(node):
@@ -260,7 +285,7 @@ def _scale_back(node):
         anchor_db=np.array(anchors_db, float),
         unit=take(node, "unit", str),
         residual_px=take_number(node, "residual_px", or_null=True),
-        source="record",
+        source=FROM_RECORD,
         reasons=_reasons_back(node),
     )
 
@@ -273,7 +298,7 @@ def _bearing_back(node):
         zero_deg=take_number(node, "zero_deg"),
         turn=turn,
         u_deg=take_number(node, "u_deg"),
-        source="record",
+        source=FROM_RECORD,
         signed=take(node, "signed", bool, default=False),
         reasons=_reasons_back(node),
     )

@@ -39,7 +39,7 @@ class Settings:
     page : 1-based page of a PDF
     step_deg : step of the table, degrees
     scale, bearing : a Scale and a Bearing taken over from an earlier record, used in place of finding them
-    grid : a Grid corrected by hand, used in place of finding it
+    grid : a Grid used in place of finding it; grid_from : "by hand", or "record" for an earlier record's
     chart : (k, n), read only the k-th, from 1 in reading order, of the n charts on the picture
     """
 
@@ -59,6 +59,7 @@ class Settings:
     scale: object = None
     bearing: object = None
     grid: object = None
+    grid_from: str = "by hand"
     chart: tuple | None = None
 
     def __post_init__(self):

@@ -412,6 +412,11 @@ def test_like_takes_the_settings_and_options_override_them(tmp_path):
     assert told.bearing.zero_deg == 0.0
     turned = parsed("--like", like, "--turn", "ccw")
     assert (turned.bearing.turn, turned.bearing.zero_deg) == ("ccw", 0.0)
+    assert parsed("--like", like, sha256=SHA256).grid is not None
+    for words in (("--crop", "0,0,300,300"), ("--page", "2")):
+        elsewhere = parsed("--like", like, *words, sha256=SHA256)
+        assert (elsewhere.grid, elsewhere.pins) == (None, ())
+    assert parsed("--like", like, "--page", "2", "--pin", "7,8", sha256=SHA256).pins == ((7.0, 8.0),)
     zeroed = parsed("--like", like, "--zero", "right")
     assert (zeroed.bearing, zeroed.zero_deg, zeroed.turn) == (None, 90.0, "cw")
 

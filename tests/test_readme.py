@@ -1,4 +1,4 @@
-"""The README keeps pace with the program: commands, options, columns, and the test command that `.ci/run` takes."""
+"""The README keeps pace with the program: commands, options, columns, and the test command."""
 
 import argparse
 import re

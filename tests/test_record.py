@@ -1,6 +1,7 @@
 """The record: complete, exact where a later reading takes it over, refused with a reason when malformed."""
 
 import json
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -153,6 +154,23 @@ def test_pins_and_page_belong_to_the_same_picture_alone(tmp_path):
     assert (same.pins, same.page) == (((5.0, 6.0),), 2)
     assert (other.pins, other.page) == ((), None)
     assert other.scale is not None
+
+
+def test_the_grid_is_taken_over_for_the_same_picture(tmp_path):
+    """Exactly, with its doubts, so that nothing is measured anew; another picture's grid is found there."""
+    reading = hand_reading()
+    doubt = reason("grid-residual", 1.5)
+    object.__setattr__(reading.grid, "reasons", (doubt,))
+    path = saved(tmp_path, make_record(reading, tables=["panel.csv"]))
+
+    settings = settings_from_record(path, sha256=SHA256)
+
+    for name in ("homography", "covariance", "ring_rho", "ring_rho_u", "spoke_deg", "arc_deg"):
+        assert np.array_equal(getattr(settings.grid, name), getattr(reading.grid, name)), name
+    assert settings.grid.reasons == (doubt,)
+    again = make_record(replace(reading, settings=settings), tables=["panel.csv"])
+    assert again["told"]["grid"] == "record"
+    assert settings_from_record(path).grid is None
 
 
 def test_doubt_is_taken_over_with_the_scale(tmp_path):

@@ -105,6 +105,8 @@ def settings_from_args(args, *, sha256=None):
     like = settings_from_record(args.like, sha256=sha256)
     if told.keys() & {"outer_db", "centre_db", "marks", "law", "ring_levels"}:
         told["scale"] = None
+    if told.keys() & {"crop", "page"}:  # the grid and the pins of the record may lie elsewhere
+        told = {"grid": None, "chart": None, "pins": ()} | told
     if "zero_deg" in told:
         told["bearing"] = None
         told.setdefault("turn", like.bearing.turn)
