@@ -30,21 +30,24 @@ def cheapest_path(cost, paper, *, closed):
     climb = np.cumsum(paper * np.float32(CLIMB_PER_ROW) + np.float32(CLIMB_ON_INK), axis=1, dtype=np.float32)
     if not closed:
         return _solve(cost, climb, np.zeros(cost.shape[1], np.float32))
-    # Two turns fix the closing row: the second turn starts from what the first one ends with.
-    shift = _best_start(cost)
+    shift, start = _certain_start(cost)
     rolled, rolled_climb = np.roll(cost, -shift, axis=0), np.roll(climb, -shift, axis=0)
-    start = _solve(rolled, rolled_climb, np.zeros(cost.shape[1], np.float32))[1][-1]
+    if start is None:
+        # Two turns fix the closing row: the second turn starts from what the first one ends with.
+        start = _solve(rolled, rolled_climb, np.zeros(cost.shape[1], np.float32))[1][-1]
     only = np.full(cost.shape[1], np.inf, np.float32)
     only[start] = 0
     enter, leave = _solve(rolled, rolled_climb, only, end=start)
     return np.roll(enter, shift), np.roll(leave, shift)
 
 
-def _best_start(cost):
-    """A column where one row is far cheaper than the others: there the path is certain."""
-    lowest = cost.min(axis=1)
-    spread = np.mean(cost < 0.5, axis=1)
-    return int(np.argmin(lowest + spread))
+def _certain_start(cost):
+    """A column where one run of rows is far cheaper than the others, and its row; None for the row in doubt."""
+    cheap = cost < 0.5
+    column = int(np.argmin(cost.min(axis=1) + cheap.mean(axis=1)))
+    rows = np.flatnonzero(cheap[column])
+    one_run = rows.size > 0 and rows[-1] - rows[0] == rows.size - 1 and rows.size < 12
+    return column, int(rows[rows.size // 2]) if one_run else None
 
 
 def _solve(cost, climb, before, end=None):

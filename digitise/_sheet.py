@@ -53,9 +53,7 @@ class Sheet:
         """Sheet x, y (px) of chart-plane points; arrays broadcast."""
         angle = np.radians(plane_deg)
         u, v = rho * np.sin(angle), -rho * np.cos(angle)
-        h = self.homography
-        w = h[2, 0] * u + h[2, 1] * v + h[2, 2]
-        return (h[0, 0] * u + h[0, 1] * v + h[0, 2]) / w, (h[1, 0] * u + h[1, 1] * v + h[1, 2]) / w
+        return _project(self.homography, u, v)
 
     def to_plane(self, x_px, y_px):
         """Chart-plane u, v of sheet points; arrays broadcast."""
@@ -97,13 +95,15 @@ def cut_sheet(picture, grid):
 
 
 def _project(h, x, y):
+    if h[2, 0] == 0 and h[2, 1] == 0:
+        return h[0, 0] * x + h[0, 1] * y + h[0, 2], h[1, 0] * x + h[1, 1] * y + h[1, 2]
     w = h[2, 0] * x + h[2, 1] * y + h[2, 2]
     return (h[0, 0] * x + h[0, 1] * y + h[0, 2]) / w, (h[1, 0] * x + h[1, 1] * y + h[1, 2]) / w
 
 
 def _fit_paper(rgb, rho, u, v):
     """Commonest colour inside the rim and a quadratic surface through the pixels near it."""
-    step = max(1, int(np.sqrt(rho.size / 60000)))
+    step = max(1, int(np.sqrt(rho.size / 25000)))
     thin = (slice(None, None, step), slice(None, None, step))
     inside = rho[thin] < 0.97
     px, u, v = rgb[thin][inside], u[thin][inside], v[thin][inside]
@@ -155,5 +155,8 @@ def commonest_colour(px):
 
 
 def _surface(coefficients, u, v):
+    """Paper colour under pixels: one colour (3,) when it hardly varies, else (h, w, 3)."""
+    if np.abs(coefficients[1:]).max() < 0.5:
+        return coefficients[0].astype(np.float32)
     planes = [c[0] + c[1] * u + c[2] * v + c[3] * u * u + c[4] * u * v + c[5] * v * v for c in coefficients.T]
     return np.stack(planes, axis=-1).astype(np.float32)

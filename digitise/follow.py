@@ -38,7 +38,6 @@ class Trace:
     u_rho_bridge : (n,) extra standard uncertainty of rho where the ink is hidden or merged
     state : (n,) str, one of table.STATES
     clear : (n,) bool, the line stands alone there: its whole profile was seen
-    support : share of the path that runs on ink
     width_px : drawn line width, sheet px; sheet_outer_px : sheet px per unit rho
     """
 
@@ -50,7 +49,6 @@ class Trace:
     u_rho_bridge: np.ndarray
     state: np.ndarray
     clear: np.ndarray
-    support: float
     width_px: float
     sheet_outer_px: float
 
@@ -58,12 +56,12 @@ class Trace:
         lock_arrays(self)
 
 
-def follow_trace(layer, sheet, grid, *, fill=0.0, pins=(), solid=False):
+def follow_trace(layer, sheet, frame, *, fill=0.0, pins=(), solid=False):
     """Follow the strongest trace of a `Layer`.
 
     Parameters
     ----------
-    layer : ink.Layer; sheet : _sheet.Sheet; grid : grid.Grid
+    layer : ink.Layer; sheet : _sheet.Sheet; frame : _frame.Frame of the sheet
     fill : coverage of the trace's own filled area, 0 when not filled
     pins : tuple of (rho, plane_deg) that the trace goes through
     solid : look for a solid line: dashes count little and their gaps are not bridged
@@ -81,34 +79,17 @@ def follow_trace(layer, sheet, grid, *, fill=0.0, pins=(), solid=False):
     lifted = np.where(faint, SPECK_WORTH * lifted, lifted)
     bridged = [bridge_dashes(lifted, pieces, reference)] if pieces.dashed and not solid else []
     deep, width = _depth(lifted, reference)
-    angles, (evidence, hidden, depth, *bridged) = _unwrapped([lifted, layer.hidden, deep, *bridged], sheet, grid)
-    ink = np.clip((evidence - 0.15 * reference) / (0.5 * reference), 0, 1).astype(np.float32)
+    evidence, hidden, depth, *bridged = (frame.unwrap(m) for m in (lifted, layer.hidden, deep, *bridged))
+    ink = np.clip((evidence - 0.15 * reference) / (0.5 * reference), 0, 1)
     if bridged:
         np.maximum(ink, GAP_WORTH * np.clip((bridged[0] - 0.3) / 0.4, 0, 1), out=ink)
-    _apply_pins(ink, hidden, angles, sheet, pins)
-    whole = _is_whole(grid)
-    cost, paper, floor_rows = _costs(ink, hidden, depth, width)
-    enter, leave = cheapest_path(cost, paper, closed=whole)
+    _apply_pins(ink, hidden, frame, pins)
+    floor_rows = int(width * frame.reduction / 2 + 2)
+    cost, paper = _costs(ink, hidden, depth, floor_rows)
+    enter, leave = cheapest_path(cost, paper, closed=frame.whole)
     if np.mean(np.maximum(enter, leave) < floor_rows) > 0.98:
         return None
-    return _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows, fill)
-
-
-def _is_whole(grid):
-    start, end = grid.arc_deg
-    return (end - start) >= 359.0
-
-
-def _unwrapped(maps, sheet, grid):
-    """Angles, and each map on the unwrapped plane, (n_columns, n_rows), one row a sheet px."""
-    start, end = float(grid.arc_deg[0]), float(grid.arc_deg[1])
-    extent = end - start if end > start else end - start + 360.0
-    n = int(np.ceil(2 * np.pi * sheet.outer_px * extent / 360.0))
-    angles = start + (np.arange(n) + 0.5) * extent / n
-    rows = np.arange(int(sheet.outer_px * 1.04) + 2) / sheet.outer_px
-    x, y = sheet.to_sheet(rows[None, :], angles[:, None])
-    x, y = x.astype(np.float32), y.astype(np.float32)
-    return angles, [cv2.remap(image, x, y, cv2.INTER_LINEAR, borderValue=0) for image in maps]
+    return _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill)
 
 
 def _line_peak(layer, sheet):
@@ -121,11 +102,11 @@ def _line_peak(layer, sheet):
     return float(np.clip(np.percentile(strong, 60), 0.3, 1.0))
 
 
-def _apply_pins(ink, hidden, angles, sheet, pins):
+def _apply_pins(ink, hidden, frame, pins):
     """Make a pinned place certain and the rest of its columns bare."""
     for rho, plane_deg in pins:
-        column = int(np.argmin(np.abs((angles - plane_deg + 180) % 360 - 180)))
-        row = int(np.clip(round(rho * sheet.outer_px), 0, ink.shape[1] - 1))
+        column = int(np.argmin(np.abs((frame.angles - plane_deg + 180) % 360 - 180)))
+        row = int(np.clip(round(rho * frame.outer_rows), 0, ink.shape[1] - 1))
         near = slice(max(column - 1, 0), column + 2)
         ink[near] = 0
         hidden[near] = 0
@@ -141,35 +122,30 @@ def _depth(cover, level):
     return np.clip((depth - 0.7 * width - 0.5) / (0.5 * width), 0, 1).astype(np.float32), width
 
 
-def _costs(ink, hidden, depth, width):
-    """Cost of crossing each cell, bareness for climbing, and how many rows count as the centre."""
+def _costs(ink, hidden, depth, floor_rows):
+    """Cost of crossing each cell, and its bareness for climbing, both (n_columns, n_rows) float32."""
     solid = ink > 0.5
-    above = np.zeros(ink.shape, np.float32)
-    passed = np.zeros(len(ink), bool)
-    inside = np.zeros(len(ink), bool)
-    deep = np.zeros(ink.shape, np.float32)
-    deepest = np.zeros(len(ink), np.float32)
-    for r in range(ink.shape[1] - 1, -1, -1):
-        # Ink counts as left above once paper parts it from the path: a flank's own ink does not.
-        passed |= inside & ~solid[:, r]
-        inside = solid[:, r]
-        above[:, r] = passed
-        # Solid ink between here and the run's upper end: the level lies further out.
-        deepest = np.where(inside, np.maximum(deepest, depth[:, r]), 0)
-        deep[:, r] = deepest
-    paper = 1 - np.maximum(ink, HIDDEN_WORTH * hidden)
-    cost = paper + TOO_DEEP * deep + LEFT_ABOVE * above
-    floor_rows = int(width / 2 + 2)
+    # Ink counts as left above once paper parts it from the path: a flank's own ink does not.
+    ends = np.zeros(solid.shape, bool)
+    ends[:, :-1] = solid[:, 1:] & ~solid[:, :-1]
+    above = np.logical_or.accumulate(ends[:, ::-1], axis=1)[:, ::-1]
+    # Solid ink between a cell and the outer end of its run: the level lies further out.
+    solid_rows, depth_rows = np.ascontiguousarray(solid.T), np.ascontiguousarray(depth.T)
+    deep = np.zeros(depth_rows.shape, np.float32)
+    deepest = np.zeros(depth_rows.shape[1], np.float32)
+    for r in range(len(deep) - 1, -1, -1):
+        deepest = np.maximum(deepest, depth_rows[r]) * solid_rows[r]
+        deep[r] = deepest
+    paper = (1 - np.maximum(ink, HIDDEN_WORTH * hidden)).astype(np.float32)
+    cost = paper + np.float32(TOO_DEEP) * deep.T + np.float32(LEFT_ABOVE) * above
     cost[:, :floor_rows] = np.maximum(cost[:, :floor_rows], FLOOR_COST)
-    return cost.astype(np.float32), paper.astype(np.float32), floor_rows
+    return cost, paper
 
 
-def _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows, fill):
+def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill):
     columns, rows = _walk(enter, leave)
-    support = float(np.mean(np.maximum(ink[np.arange(len(enter)), enter], ink[np.arange(len(leave)), leave])))
-    step = (angles[-1] - angles[0]) / max(len(angles) - 1, 1)
-    plane = angles[0] + columns * step
-    x, y = sheet.to_sheet(rows / sheet.outer_px, plane)
+    plane = frame.angles[columns]
+    x, y = sheet.to_sheet(rows / frame.outer_rows, plane)
     x, y, plane = _evenly(x, y, plane)
     course = refine_course(x, y, layer.body, fill=fill)
     u, v = sheet.to_plane(course.x, course.y)
@@ -177,7 +153,7 @@ def _trace_from_path(enter, leave, angles, ink, layer, sheet, whole, floor_rows,
     # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.
     bearing = plane + ((np.degrees(np.arctan2(u, -v)) - plane + 180) % 360 - 180)
     at_centre = np.maximum(enter, leave) < floor_rows
-    return _resample(course, rho, bearing, at_centre, floor_rows, angles, sheet, whole, support)
+    return _resample(course, rho, bearing, at_centre, floor_rows / frame.reduction, frame, sheet)
 
 
 def _walk(enter, leave):
@@ -201,34 +177,35 @@ def _evenly(x, y, plane):
     return tuple(np.interp(at, length[keep], values[keep]) for values in (xs, ys, plane))
 
 
-def _resample(course, rho, bearing, at_centre, floor_rows, angles, sheet, whole, support):
+def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet):
     """Level curve on an even angle grid, from the samples in order along the path."""
     step = 1.0 / SAMPLES_PER_DEG
+    angles = frame.angles
     start = np.ceil(angles[0] / step) * step
-    grid_deg = np.arange(0, 360, step) if whole else np.arange(start, angles[-1] + 1e-9, step)
+    grid_deg = np.arange(0, 360, step) if frame.whole else np.arange(start, angles[-1] + 1e-9, step)
     # Within a few pixels of the centre an angle means nothing; those columns are set below.
     order = np.argsort(bearing, kind="stable")
-    order = order[rho[order] * sheet.outer_px > max(floor_rows - 1, 2)]
+    order = order[rho[order] * sheet.outer_px > max(floor_px - 1, 2)]
     if order.size < 2:
         return None
     b, first = np.unique(bearing[order], return_index=True)
     order = order[first]
-    period = 360.0 if whole else None
+    period = 360.0 if frame.whole else None
 
     def at(values):
         return np.interp(grid_deg, b, values[order], period=period)
 
     column = np.clip(np.round((grid_deg - angles[0]) % 360 / (angles[1] - angles[0])).astype(int), 0, len(angles) - 1)
     floor = at_centre[column]
-    curve = np.where(floor, 0.5 * floor_rows / sheet.outer_px, at(rho))
+    curve = np.where(floor, 0.5 * floor_px / sheet.outer_px, at(rho))
     slope = np.where(floor, 0.0, np.gradient(curve, step))
     kind = np.where(floor, 2.0, at(course.kind.astype(float)))
     spread = np.where(course.kind > 0, course.u_px, 0.0)
-    bridge = np.where(floor, 0.5 * floor_rows, np.where(kind > 0.5, at(spread), 0.0)) / sheet.outer_px
+    bridge = np.where(floor, 0.5 * floor_px, np.where(kind > 0.5, at(spread), 0.0)) / sheet.outer_px
     state = np.where(floor, "floor", np.where(kind > 1.5, "bridged", "seen"))
     slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
     return Trace(
         plane_deg=grid_deg, rho=curve, u_px=np.minimum(at(course.u_px), 0.2), slope=slope, radial_share=slant,
-        u_rho_bridge=bridge, state=state, clear=kind < 0.5, support=support,
+        u_rho_bridge=bridge, state=state, clear=kind < 0.5,
         width_px=course.width_px / sheet.reduction, sheet_outer_px=sheet.outer_px,
     )  # fmt: skip

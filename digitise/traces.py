@@ -10,6 +10,7 @@ from dataclasses import dataclass, replace
 import cv2
 import numpy as np
 
+from ._frame import make_frame
 from ._grid_cover import remove_grid
 from .exceptions import NotReadError
 from .follow import Trace, follow_trace
@@ -47,11 +48,12 @@ def find_traces(sheet, grid, *, settings):
     """Find and follow all traces; raises `NotReadError` when there is none or a told ink is not on the chart."""
     inks = find_inks(sheet)
     palette = [ink.rgb for ink in inks]
+    frame = make_frame(sheet, grid)
     found = []
     if settings.inks:
         for told in settings.inks:
             rgb = _parse(told)
-            traces = _traces_of_ink(rgb, palette, sheet, grid, settings, told, told=True)
+            traces = _traces_of_ink(rgb, palette, sheet, grid, frame, settings, told, told=True)
             if not traces:
                 there = ", ".join(ink.hex for ink in inks[:6]) or "none"
                 raise NotReadError(
@@ -63,7 +65,7 @@ def find_traces(sheet, grid, *, settings):
     for ink in inks:
         if ink.length_px < 0.25 * sheet.outer_px:
             continue
-        found += _traces_of_ink(ink.rgb, palette, sheet, grid, settings, ink.hex, told=False)
+        found += _traces_of_ink(ink.rgb, palette, sheet, grid, frame, settings, ink.hex, told=False)
     found = _without_doubles(found)
     if not found:
         raise NotReadError("no trace was found on the chart", stage="ink", remedy="name its colour with --ink '#rrggbb'")
@@ -74,7 +76,7 @@ def _parse(told):
     return np.array([int(told[k : k + 2], 16) for k in (1, 3, 5)], float)
 
 
-def _traces_of_ink(rgb, palette, sheet, grid, settings, name, *, told):
+def _traces_of_ink(rgb, palette, sheet, grid, frame, settings, name, *, told):
     if np.linalg.norm(rgb - sheet.paper_rgb) < 20:
         return []
     layer = remove_grid(separate_ink(sheet, rgb, palette), sheet, grid)
@@ -83,25 +85,33 @@ def _traces_of_ink(rgb, palette, sheet, grid, settings, name, *, told):
     pins = tuple(grid.to_plane(np.float64(x), np.float64(y)) for x, y in settings.pins)
     found = []
     for _ in range(MOST_PER_INK):
-        item = _next_trace(layer, sheet, grid, fill, pins, name, insist=told and not found)
+        item = _next_trace(layer, sheet, grid, frame, fill, pins, name, insist=told and not found)
         if item is None:
             break
         found.append(item)
         if fill:
             break
         layer = _erase(layer, item.trace, sheet)
+        if _ink_left(layer, sheet, item.trace) < LEAST_STRETCH:
+            break
         pins = ()
     return found
 
 
-def _next_trace(layer, sheet, grid, fill, pins, name, *, insist):
+def _ink_left(layer, sheet, trace):
+    """Drawn length, in outer radii, that the ink away from the hub would make at the trace's width."""
+    left = (layer.cover > 0.4) & (sheet.rho > HUB_RHO) & (sheet.rho < 1)
+    return float(left.sum()) / max(trace.width_px * sheet.reduction, 1.0) / sheet.outer_px
+
+
+def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist):
     """The next trace of an ink, a solid one first; None when what is left is no trace.
 
     insist : the user named this ink, so the best path is returned even in doubt, as long as it has ink of its own
     """
     best = None
     for solid in (True, False):
-        trace = follow_trace(layer, sheet, grid, fill=fill, pins=pins, solid=solid)
+        trace = follow_trace(layer, sheet, frame, fill=fill, pins=pins, solid=solid)
         if trace is None:
             continue
         evidence = _evidence(trace, layer, sheet, fill)
