@@ -1,0 +1,1 @@
+"""Published reference values, each with where it comes from and how it was confirmed."""
