@@ -70,7 +70,10 @@ def level_at(levels, place):
 
 
 def top(levels, rows):
-    """Largest level (dB) among contiguous rows, and its place in rows, between rows by a parabola of field."""
+    """Largest level (dB) among contiguous rows, and its place in rows.
+
+    Between rows by a parabola of field.
+    """
     part = levels[:, rows % levels.shape[1]]
     j = np.argmax(np.where(np.isnan(part), -np.inf, part), axis=1)
     shift, rise = _vertex(levels, rows[0] + j, per_db=1 / 20)
@@ -80,9 +83,9 @@ def top(levels, rows):
 def bottom_place(levels, rows):
     """Place (rows) of the smallest level among contiguous rows, and by how much two ways to find it differ.
 
-    A null that the field passes through is where the cubic through four rows of signed field is zero; a filled
-    one is the vertex of the parabola of power, which tells the two apart by its own depth. The difference is
-    that of the first table.
+    A null that the field passes through is where the cubic through four rows of signed field is zero; a
+    filled one is the vertex of the parabola of power, which tells the two apart by its own depth. The
+    difference is that of the first table.
     """
     n = levels.shape[1]
     part = levels[:, rows % n]

@@ -1,4 +1,7 @@
-"""Tables of patterns with a known formula, as a perfect reading would give them, for the tests of what tables feed."""
+"""Tables of patterns with a known formula, as a perfect reading would give them.
+
+For the tests of what tables feed.
+"""
 
 import numpy as np
 
@@ -8,7 +11,7 @@ __all__ = ["bearings", "table_of", "with_noise", "without"]
 
 
 def bearings(n=360):
-    """n even bearings from 0, degrees."""
+    """N even bearings from 0, degrees."""
     return np.arange(n) * 360 / n
 
 

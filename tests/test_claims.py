@@ -56,7 +56,10 @@ def test_verdicts(text, expected):
 
 
 def test_rounding_of_the_stated_value_counts():
-    """65 is anything from 64.5 to 65.5 (JCGM 100:2008, 4.3.7); 65.0 is not: 65.11 with no error of its own differs."""
+    """65 is anything from 64.5 to 65.5 (JCGM 100:2008, 4.3.7).
+
+    65.0 is not: 65.11 with no error of its own differs.
+    """
     exact = figures_of(table_of(patterns.sector(DEG), error95_db=0.0, floor_db=-40.0))
 
     assert verdict("beamwidth=65", exact) == "agrees"
@@ -76,7 +79,7 @@ def test_a_larger_reading_error_agrees_with_more():
     "text", ["sidelobe_upper=-12.8", "sidelobe_upper=12.8", "sidelobe_upper>=12", "sidelobe_upper<=-12"]
 )
 def test_suppression_and_level_mean_the_same(text):
-    """Side lobes are stated as a level below 0 or as a suppression above it (the array's first is -12.8 dB)."""
+    """Side lobes are stated as a level below 0 or as a suppression above it (here -12.8 dB)."""
     assert verdict(text, TILTED) == "agrees"
 
 

@@ -78,7 +78,8 @@ def test_noise_of_the_stated_size_is_within_the_errors():
     """Two noisy readings of one pattern differ by more than their errors on about 5 % of the rows."""
     rng = np.random.default_rng(8)
     shares = [
-        compare_tables(with_noise(SECTOR, rng), with_noise(SECTOR, rng), level="chart").outside_share for _ in range(20)
+        compare_tables(with_noise(SECTOR, rng), with_noise(SECTOR, rng), level="chart").outside_share
+        for _ in range(20)
     ]
 
     assert 0.035 < np.mean(shares) < 0.065
@@ -112,9 +113,14 @@ def test_unknown_words_are_refused(how):
 
 
 def test_picture_shows_each_table_in_its_own_colour():
-    """The picture holds two lines of different colours and the band of the difference; gaps do not stop it."""
+    """The picture holds two lines of different colours and the band of the difference.
+
+    Gaps do not stop it.
+    """
     other = without(table_of(patterns.first_order(DEG), floor_db=-40), slice(100, 130))
-    image = draw_comparison(["a.csv", "b.csv"], [SECTOR, other], [compare_tables(SECTOR, other)], level="relative")
+    image = draw_comparison(
+        ["a.csv", "b.csv"], [SECTOR, other], [compare_tables(SECTOR, other)], level="relative"
+    )
     rgb = np.asarray(image).reshape(-1, 3).astype(int)
     vivid = rgb[np.ptp(rgb, axis=1) > 120]
 

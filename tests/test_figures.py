@@ -1,7 +1,7 @@
-"""The trade's figures against handbook and standard values, directly on sampled patterns; errors that hold; absences.
+"""The trade's figures against handbook and standard values on sampled patterns, errors that hold, absences.
 
-Sources. "Handbook" is Balanis and Kraus for wires, apertures and arrays, from memory; "computed" values are exact for
-the formula, worked out beforehand by numerical integration and root finding, apart from this code.
+Sources. "Handbook" is Balanis and Kraus for wires, apertures and arrays, from memory; "computed" values are
+exact for the formula, worked out beforehand by numerical integration and root finding, apart from this code.
 """
 
 import math
@@ -53,7 +53,7 @@ def test_half_power_widths_of_wires(level_db, expected_deg):
 
 
 def u_of(length_wl):
-    """u = pi L t with t itself and not its sine: widths are then the small-angle constants over L exactly."""
+    """U = pi L t with t itself and not its sine: widths are then the small-angle constants over L exactly."""
     return np.pi * length_wl * np.where(np.abs(T) < 1e-9, 1e-9, T)
 
 
@@ -70,7 +70,10 @@ LINES_AND_DISCS = [  # name, field(u), HPBW rad, FNBW deg, first side lobe dB; p
 
 @pytest.mark.parametrize(("name", "field", "width_rad", "nulls_deg", "lobe_db"), LINES_AND_DISCS)
 def test_apertures(name, field, width_rad, nulls_deg, lobe_db):
-    """Width, first-null width and first side lobe of line and disc apertures: handbook constants, computed exactly."""
+    """Width, first-null width and first side lobe of line and disc apertures.
+
+    Handbook constants, computed exactly.
+    """
     figures = figures_of(table_of(db(field(u_of(4.7)))))
 
     assert figures["beamwidth"].value == pytest.approx(math.degrees(width_rad) / 4.7, abs=INTERPOLATED_DEG)
@@ -97,7 +100,10 @@ def test_first_side_lobe_of_uniform_arrays(n, lobe_db):
     ("n", "spacing", "first_null"), [(8, 0.5, 14.4775), (8, 0.9, 7.9808), (4, 0.5, 30.0)]
 )
 def test_nulls_of_uniform_arrays(n, spacing, first_null):
-    """Nulls at sin t = lambda / (N d) (handbook): the first-null width is twice that, within its stated error."""
+    """Nulls at sin t = lambda / (N d) (handbook).
+
+    The first-null width is twice that, within its stated error.
+    """
     figure = figures_of(table_of(patterns.linear_array(DEG, n=n, spacing_wl=spacing)))["null_width"]
 
     assert figure.value == pytest.approx(2 * first_null, abs=figure.error95)
@@ -113,7 +119,10 @@ def test_nulls_of_uniform_arrays(n, spacing, first_null):
 )  # fmt: skip
 @pytest.mark.filterwarnings("ignore:This window is not suitable for spectral analysis")
 def test_dolph_chebyshev_arrays(n, suppression, width_deg):
-    """All side lobes at the design level (Dolph 1946, from memory); exact widths from the closed form, computed."""
+    """All side lobes at the design level (Dolph 1946, from memory).
+
+    Exact widths from the closed form, computed.
+    """
     weights = chebwin(n, suppression)
     phase = np.pi * np.sin(T)[:, None] * np.arange(n)
     figures = figures_of(table_of(db(np.abs(np.exp(1j * phase) @ weights) / weights.sum())))
@@ -142,7 +151,10 @@ def test_first_order_patterns(a, width_deg, back_db, null_deg, side_db):
 
 
 def test_field_cardioid():
-    """Half power 131.06, exactly -3 dB 130.85, -10 dB at 111.56 off axis, 23.48 dB over 180 +- 30 (computed)."""
+    """Half power 131.06, exactly -3 dB 130.85, -10 dB at 111.56 off axis.
+
+    23.48 dB over 180 +- 30 (computed).
+    """
     figures = figures_of(table_of(patterns.first_order(DEG)))
 
     assert figures["beamwidth"].value == pytest.approx(131.06, abs=0.01)
@@ -166,7 +178,10 @@ def test_power_cardioid():
 
 @pytest.mark.parametrize(("width", "depth"), [(65.0, 30.0), (70.0, 25.0), (65.0, 20.0)])
 def test_standard_sector_cuts(width, depth):
-    """3GPP TR 38.901 table 7.3-1, TR 36.814 A.2.1.1, TR 36.942 4.2.1: the width is stated at exactly -3 dB."""
+    """3GPP TR 38.901 table 7.3-1, TR 36.814 A.2.1.1, TR 36.942 4.2.1.
+
+    The width is stated at exactly -3 dB.
+    """
     figures = figures_of(table_of(patterns.sector(DEG, half_power_deg=width, front_to_back_db=depth)))
 
     assert figures["beamwidth3"].value == pytest.approx(width, abs=INTERPOLATED_DEG)
@@ -176,7 +191,10 @@ def test_standard_sector_cuts(width, depth):
 
 
 def test_reference_pattern_of_a_dish_on_a_fine_table():
-    """ITU-R F.699 (second-hand), D/lambda 50: G = Gmax - 0.0025 (50 t)^2 falls 3 dB at 0.6928; tenth-degree rows."""
+    """ITU-R F.699 (second-hand), D/lambda 50: G = Gmax - 0.0025 (50 t)^2 falls 3 dB at 0.6928.
+
+    Tenth-degree rows.
+    """
     fine = (bearings(3600) + 180) % 360 - 180
     level = np.maximum(-0.0025 * (50 * fine) ** 2, -50.0)
 
@@ -184,7 +202,10 @@ def test_reference_pattern_of_a_dish_on_a_fine_table():
 
 
 def test_electrical_tilt():
-    """Feed phase beta = -360 (d / lambda) sin(tilt): 30.10 degrees an element tilt 6 degrees at 0.8 (computed)."""
+    """Feed phase beta = -360 (d / lambda) sin(tilt).
+
+    30.10 degrees an element tilt 6 degrees at 0.8 (computed).
+    """
     tilted = patterns.linear_array(DEG, n=8, spacing_wl=0.8, phase_deg=30.10)  # to falling bearings
     level = patterns.backed(tilted, DEG)
     figures = figures_of(table_of(level, floor_db=-40.0), cut="elevation", up="growing", boresight_deg=0.0)
@@ -199,7 +220,10 @@ def test_electrical_tilt():
 
 
 def test_null_fill_is_the_level_of_the_first_null_below():
-    """A field with a pedestal in quadrature has its nulls filled to the pedestal: -20 dB, 10 % of the field."""
+    """A field with a pedestal in quadrature has its nulls filled to the pedestal.
+
+    -20 dB, 10 % of the field.
+    """
     fine = bearings(3600)
     tilted = patterns.backed(patterns.linear_array(fine, n=8, spacing_wl=0.7, phase_deg=20), fine)
     power = 10 ** (tilted / 10) + 0.01
@@ -221,7 +245,10 @@ def test_ripple_of_an_omni():
 
 
 def test_peak_between_rows():
-    """A beam 5 degrees wide that points at 30.4 is found there, at its own level, and not at the nearest row."""
+    """A beam 5 degrees wide that points at 30.4 is found there, at its own level.
+
+    And not at the nearest row.
+    """
     off = (DEG - 30.4 + 180) % 360 - 180
     figures = figures_of(table_of(2.0 - np.minimum(12 * (off / 5) ** 2, 30), floor_db=-40.0))
 
@@ -240,9 +267,11 @@ PATTERNS = {
 @pytest.mark.parametrize("near_deg", [0.0, 2.0])
 @pytest.mark.parametrize("name", PATTERNS)
 def test_errors_hold(name, near_deg):
-    """Truth lies within the stated 95 % error for nearly all noisy tables, whether near rows share errors or not.
+    """Truth lies within the stated 95 % error for nearly all noisy tables.
 
-    60 seeded tables a pattern, errors growing on slopes as in a reading; under 85 % would be 4 sigma off 95 %.
+    Whether near rows share errors or not.
+
+    60 seeded tables a pattern, errors growing on slopes as in a reading; fewer is 6 sigma off 95 %.
     """
     rng = np.random.default_rng(71)
     slope = np.abs(np.gradient(np.maximum(PATTERNS[name], -40)))
@@ -260,7 +289,10 @@ def test_errors_hold(name, near_deg):
 
 
 def test_errors_are_not_idle():
-    """Twice the row errors give about twice the figure's error, and the error is not far from the noise it stands for."""
+    """Twice the row errors give about twice the figure's error.
+
+    And the error is not far from the noise it stands for.
+    """
     found = [figures_of(table_of(PATTERNS["sector"], error95_db=size)) for size in (0.1, 0.2)]
     slope = 24 * 32.5 / 65**2  # dB per degree at half power of the sector
 
@@ -306,7 +338,10 @@ def test_half_a_chart():
 
 
 def test_a_gap_in_the_beam():
-    """Missing rows between the peak and half power: no width is made up, nor a worst side lobe of the beam itself."""
+    """Missing rows between the peak and half power.
+
+    No width is made up, nor a worst side lobe of the beam itself.
+    """
     figures = figures_of(without(table_of(PATTERNS["array"], floor_db=-40), slice(8, 12)))
 
     assert figures["beamwidth"].reason == "rows without a value lie in the way"

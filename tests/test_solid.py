@@ -1,7 +1,9 @@
-"""Two cuts into the sphere: directivities of closed forms, each method's known errors, what is read stays read.
+"""Two cuts into the sphere: directivities of closed forms, each method's known errors.
 
-Directivities are those of REFERENCES.md section 2 (handbook values, computed exactly); the methods' errors those of
-its section 5, computed there on the same closed forms.
+What is read stays read.
+
+Directivities are those of REFERENCES.md section 2 (handbook values, computed exactly); the methods' errors
+those of its section 5, computed there on the same closed forms.
 """
 
 import math
@@ -92,13 +94,14 @@ def test_dipole_from_its_cuts_is_exact():
 DISC_U = np.pi * 5 * np.hypot(Y, Z)
 TRUTHS = {
     "column of sectors": -np.minimum(12 * (OFF / 65) ** 2, 30)[None, :] + db(column(8, 0.8, Z)),
-    "tilted column": -np.minimum(12 * (OFF / 65) ** 2, 30)[None, :] + db(column(8, 0.8, Z + np.sin(np.radians(6)))),
+    "tilted column": -np.minimum(12 * (OFF / 65) ** 2, 30)[None, :]
+    + db(column(8, 0.8, Z + np.sin(np.radians(6)))),
     "square": db(np.sinc(4 * Y) * np.sinc(4 * Z) * OBLIQUE),
     "disc": db(np.where(DISC_U < 1e-9, 1, 2 * j1(DISC_U) / np.maximum(DISC_U, 1e-9)) * OBLIQUE),
     "cardioid": db(OBLIQUE),
 }
-# rms over the sphere, rms where the truth is over -20 dB, largest: REFERENCES.md section 5. The first two names are
-# not given there in full (which element, which spacing), so only what does not hang on them is compared.
+# rms over the sphere, rms where the truth is over -20 dB, largest: REFERENCES.md section 5. The columns are
+# not given there in full (which element, which spacing), so only what does not hang on that is compared.
 PUBLISHED = [
     ("square", "summing", 1.7, 0.2, 14),
     ("square", "cross-weighted", 4.8, 1.8, 18),
@@ -125,26 +128,36 @@ def cuts_of(truth):
 
 @pytest.mark.parametrize(("name", "method", "rms_db", "rms_upper_db", "largest_db"), PUBLISHED)
 def test_known_errors_of_the_methods(name, method, rms_db, rms_upper_db, largest_db):
-    """What a method gets wrong on a closed form is as much as was computed beforehand, within 0.3 dB (1 dB of the largest)."""
+    """What a method gets wrong on a closed form is as much as was computed beforehand.
+
+    Within 0.3 dB (1 dB of the largest).
+    """
     truth = TRUTHS[name]
     error = np.maximum(fill_sphere(method, *cuts_of(truth), OFF), CLIP_DB) - np.maximum(truth, CLIP_DB)
     weight = np.cos(np.radians(TALL))[:, None] * np.ones(360)
     upper = truth > -20
 
     assert math.sqrt(np.average(error**2, weights=weight)) == pytest.approx(rms_db, abs=0.3)
-    assert math.sqrt(np.average(error[upper] ** 2, weights=weight[upper])) == pytest.approx(rms_upper_db, abs=0.3)
+    assert math.sqrt(np.average(error[upper] ** 2, weights=weight[upper])) == pytest.approx(
+        rms_upper_db, abs=0.3
+    )
     assert np.abs(error).max() == pytest.approx(largest_db, abs=1.0)
 
 
 def test_a_tilted_beam_is_not_counted_twice():
-    """With the azimuth cut referred to the point that both cuts share, a column tilted by 6 degrees is exact."""
+    """With the azimuth cut referred to the point that both cuts share.
+
+    A column tilted by 6 degrees is exact.
+    """
     truth = TRUTHS["tilted column"]
     azimuth = table_of(np.roll(np.maximum(truth[90], CLIP_DB), 180), floor_db=-90)
     front, back = (np.maximum(truth[:, column], CLIP_DB) for column in (180, 0))
     elevation = np.empty(360)
     for k, tall in enumerate(TALL.astype(int)):
         elevation[(180 - tall) % 360] = back[k]
-    elevation[TALL.astype(int) % 360] = front  # last: the formula's poles hang on azimuth, and the front counts
+    elevation[TALL.astype(int) % 360] = (
+        front  # last: the formula's poles hang on azimuth, and the front counts
+    )
     solid = make_solid(azimuth, table_of(elevation, floor_db=-90), up="growing", elevation_front_deg=0.0)
 
     upper = np.roll(truth, 0, axis=1) > -20
@@ -155,18 +168,25 @@ def test_a_tilted_beam_is_not_counted_twice():
 
 AZIMUTH = table_of(patterns.sector(DEG), error95_db=0.2, floor_db=-40)
 ELEVATION = table_of(
-    patterns.backed(patterns.linear_array(DEG - 6, n=8, spacing_wl=0.8), DEG, back_db=-30), error95_db=0.2, floor_db=-40
+    patterns.backed(patterns.linear_array(DEG - 6, n=8, spacing_wl=0.8), DEG, back_db=-30),
+    error95_db=0.2,
+    floor_db=-40,
 )
 
 
 @pytest.mark.parametrize("method", METHODS)
 def test_what_was_read_stays(method):
-    """On both cuts the sphere holds the levels of the tables and says so, whatever the method makes of the rest."""
+    """On both cuts the sphere holds the levels of the tables and says so.
+
+    Whatever the method makes of the rest.
+    """
     solid = make_solid(AZIMUTH, ELEVATION, method=method)  # 6 degrees towards growing bearings: taken as down
     front = int(np.argmin(np.abs(solid.azimuth_deg)))
     lift = np.max(solid.relative_db[:, front]) - np.max(ELEVATION.relative_db)
 
-    np.testing.assert_allclose(solid.relative_db[:, front] - lift, ELEVATION.relative_db[(-TALL.astype(int)) % 360], atol=1e-9)
+    np.testing.assert_allclose(
+        solid.relative_db[:, front] - lift, ELEVATION.relative_db[(-TALL.astype(int)) % 360], atol=1e-9
+    )
     assert set(solid.source[:, front]) == {SOURCES.index("elevation cut")}
     middle = np.delete(solid.source[90], [front, 0])
     assert set(middle) == {SOURCES.index("azimuth cut")}
@@ -219,7 +239,11 @@ def test_reading_error_of_the_directivity_holds():
 
 @pytest.mark.parametrize(
     ("off_db", "verdict", "words"),
-    [(-0.5, "agrees", "loss"), (9.0, "differs", "no antenna has more gain"), (-9.0, "differs", "dBd taken for dBi")],
+    [
+        (-0.5, "agrees", "loss"),
+        (9.0, "differs", "no antenna has more gain"),
+        (-9.0, "differs", "dBd taken for dBi"),
+    ],
 )
 def test_gain_check(off_db, verdict, words):
     """A gain over the directivity is impossible, one far under it unlikely."""
@@ -245,7 +269,7 @@ def test_half_an_elevation_cut():
 
     assert solid.others_dbi["projection"] is None
     assert math.isnan(solid.gap_behind_db)
-    with pytest.raises(UsageError, match="no value behind.*summing"):
+    with pytest.raises(UsageError, match=r"no value behind.*summing"):
         make_solid(AZIMUTH, half, method="projection")
 
 

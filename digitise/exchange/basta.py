@@ -97,7 +97,7 @@ def read(data, source, options):
     """An `Antenna` of the cuts that a file's rows make; raises `PictureError` with the line where it can."""
     text, node = parse_json(data, source)
     system = node.get("Coordinate_System", "SPCS_Polar")
-    if system not in PHI_CLOCKWISE:
+    if not isinstance(system, str) or system not in PHI_CLOCKWISE:
         raise malformed(
             source, line_of(text, "Coordinate_System"), f"coordinate system {str(system)[:20]!r} is not known"
         )
@@ -154,9 +154,10 @@ def _to_sphere(cut, options):
 
 def _cuts_of(theta, phi, loss, clockwise, text, source):
     cuts = []
+    poles = np.isclose(theta, 0) | np.isclose(theta, 180)  # one direction each, whatever phi says
     for plane, chosen in (
         ("azimuth", np.isclose(theta, HORIZON_DEG)),
-        ("elevation", np.isclose(phi % 180, 0)),
+        ("elevation", np.isclose(phi % 180, 0) & ~(poles & ~np.isclose(phi % 360, 0))),
     ):
         if chosen.sum() < 3:
             continue

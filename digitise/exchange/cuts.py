@@ -31,6 +31,7 @@ PLANES = ("azimuth", "elevation")
 DBI_OVER_DBD = 2.15  # the trade's offset (common practice, no source); a half-wave dipole has 2.1509 dBi
 FINEST_DEG = 0.05
 EVEN_DEG = 2e-3  # angles are written with three decimals
+NEIGHBOURS_SHARE = 0.8  # of the points of a table with gaps have a neighbour one step on
 WIDEST_GAP_DEG = 30.0  # farther apart than this, points are not joined
 
 
@@ -227,7 +228,8 @@ def table_from_cut(cut, *, options):
             else f"as told, {told:g} dB"
         )
         said.append(f"the file holds no errors: error95_db is {source}, which is not the error of the levels")
-    n = _even_rows(cut.angle_deg) if math.isnan(options.step_deg) else round(360 / options.step_deg)
+    even = _even_rows(cut.angle_deg)
+    n = even if math.isnan(options.step_deg) else round(360 / options.step_deg)
     if n is None:
         n = 360
         said.append(
@@ -238,10 +240,13 @@ def table_from_cut(cut, *, options):
     own = np.abs((cut.angle_deg - angles[at] + 180) % 360 - 180) < EVEN_DEG
     levels, errors_out = np.full(n, np.nan), np.full(n, np.nan)
     state = np.full(n, "missing", dtype="U8")
-    if own.sum() < len(cut.angle_deg):
+    if n != even:
         levels, errors_out, state = _between(cut, errors, angles)
-        if not math.isnan(options.step_deg):
-            said.append(f"{len(cut.angle_deg)} points worked out every {360 / n:g} degrees on straight lines")
+        worked_out = np.isfinite(levels).sum() - own.sum()
+        if worked_out > 0 and not math.isnan(options.step_deg):
+            said.append(f"{worked_out} levels worked out on straight lines between points, marked bridged")
+        if own.sum() < len(own) and not math.isnan(options.step_deg):
+            said.append(f"{len(own) - own.sum()} of {len(own)} points, which lie between the new steps")
     levels[at[own]], errors_out[at[own]], state[at[own]] = cut.level_db[own], errors[own], cut.state[own]
     return build_table(angles, levels, errors_out, state), tuple(said)
 
@@ -253,7 +258,9 @@ def resampled(cut, step_deg):
     table, said = table_from_cut(replace(cut, plane=""), options=ExchangeOptions(step_deg=step_deg))
     new = cut_from_table(table, options=ExchangeOptions(), level="chart", unit=cut.unit)
     kept = {name: getattr(new, name) for name in ("angle_deg", "level_db", "error95_db", "state")}
-    return replace(cut, **kept), tuple(sentence for sentence in said if "straight" in sentence)
+    return replace(cut, **kept), tuple(
+        sentence for sentence in said if "straight" in sentence or "between" in sentence
+    )
 
 
 def levels_at(cut, angle_deg):
@@ -264,19 +271,17 @@ def levels_at(cut, angle_deg):
 
 
 def _even_rows(angle_deg):
-    """The number of even steps in the circle that all angles lie on, or None."""
+    """The number of even steps in the circle that the angles lie on, most beside each other, or None."""
     if len(angle_deg) < 2:
         return None
     apart = np.diff(np.append(angle_deg, angle_deg[0] + 360))
     least = float(apart.min())
-    for divide in (1, 2, 3, 4, 5):
-        n = round(360 * divide / least) if least > 0 else 0
-        if not 2 <= n <= 360 / FINEST_DEG + 1:
-            continue
-        step = 360 / n
-        if np.all(np.abs(angle_deg - np.round(angle_deg / step) * step) < EVEN_DEG):
-            return n
-    return None
+    n = round(360 / least) if least > 0 else 0
+    if not 2 <= n <= 360 / FINEST_DEG + 1:
+        return None
+    step = 360 / n
+    on_step = np.abs(angle_deg - np.round(angle_deg / step) * step) < EVEN_DEG
+    return n if on_step.all() and np.mean(apart < 1.01 * step) >= NEIGHBOURS_SHARE else None
 
 
 def _between(cut, errors, angles):
