@@ -131,11 +131,10 @@ def _with_covers(layer, sheet, covers):
     if not covers:
         return layer
     cover, hidden, body = layer.cover.copy(), layer.hidden.copy(), layer.body.copy()
-    height, width = cover.shape
     for x, y, w, h in covers:
         x0, y0 = sheet.from_picture(x - 0.5, y - 0.5)
         x1, y1 = sheet.from_picture(x + w - 0.5, y + h - 0.5)
-        area = np.s_[max(0, round(y0)) : min(height, round(y1)), max(0, round(x0)) : min(width, round(x1))]
+        area = np.s_[max(0, round(y0)) : max(0, round(y1)), max(0, round(x0)) : max(0, round(x1))]
         cover[area] = body[area] = 0
         hidden[area] = 1
     return replace(layer, cover=cover, hidden=hidden, body=body)
