@@ -66,13 +66,15 @@ class Figure:
         return f"{value:.{place}f}", f"{error:.{place}f}"
 
 
-def present(key, values, *, extra=0.0, **more):
+def present(key, values, *, extra=0.0, at_deg=math.nan, **more):
     """A figure from its value as read and the draws; absent when the draws leave it open."""
     error95 = half_width95(values) + extra
     if not math.isfinite(values[0]) or not math.isfinite(error95):
         return absent(key, "the reading's errors leave it undecided")
     title, unit = FIGURES[key]
-    return Figure(key=key, title=title, unit=unit, value=float(values[0]), error95=error95, **more)
+    return Figure(
+        key=key, title=title, unit=unit, value=float(values[0]), error95=error95, at_deg=float(at_deg), **more
+    )
 
 
 def absent(key, reason):
