@@ -5,13 +5,11 @@ import textwrap
 import numpy as np
 from PIL import Image, ImageDraw
 
+from ._proof_page import DIM, MARGIN_PX, PAPER, RULE, TEXT, WIDTH_PX
 from ._proof_text import font, printable
 
 __all__ = ["DIM", "MARGIN_PX", "PAPER", "RULE", "TEXT", "WIDTH_PX", "SheetPage", "nice_step"]
 
-WIDTH_PX = 1400
-MARGIN_PX = 24
-TEXT, DIM, RULE, PAPER = (24, 28, 34), (96, 104, 114), (208, 212, 218), (255, 255, 255)
 LONGEST_PX = 6000
 
 

@@ -1,7 +1,7 @@
 """Handbook values once more, through a drawn and read chart: figures, tilt, ripple, and a directivity.
 
-The expected values are those of REFERENCES.md section 2, computed from the formulas; a reading is held to its own
-95 % error widened to three standard uncertainties, and that error must be narrow.
+The expected values are those of REFERENCES.md section 2, computed from the formulas; a reading is held to its
+own 95 % error widened to three standard uncertainties, and that error must be narrow.
 """
 
 import numpy as np
@@ -72,7 +72,7 @@ def test_ripple_of_an_omni(tmp_path):
 
 
 def test_directivity_of_a_read_dipole(tmp_path):
-    """A dipole's elevation cut, read, with an even azimuth cut: 2.151 dBi within the reading's error and the floor."""
+    """A dipole's elevation cut, read, with an even azimuth cut: 2.151 dBi within the error."""
     azimuth = draw_and_read(tmp_path, np.full(len(DEG), -1.0)).traces[0].table
     elevation = draw_and_read(tmp_path, patterns.half_wave_dipole(DEG)).traces[0].table
     solid = make_solid(azimuth, elevation, elevation_front_deg=0.0, azimuth_front_deg=0.0, up="growing")
