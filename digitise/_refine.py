@@ -17,6 +17,8 @@ __all__ = ["Course", "refine_course"]
 STEP_PX = 0.5  # along the profile
 BESIDE_PX = 3.0  # how far past the line's edge the profile looks
 FLOOR_PX = 0.03  # localisation that no profile on an 8-bit picture improves on, one standard uncertainty
+LONGEST_BRIDGE_PX = 48  # a longer gap of ink says too little of what runs there
+BRIDGE_END_PX = 5  # of seen line on either side that gives the bridge its direction
 EDGE_PX = 0.15  # extra uncertainty of a middle inferred from one edge and the line width
 
 
@@ -25,7 +27,8 @@ class Course:
     """The followed line, sample by sample in order.
 
     x, y : (n,) refined positions, sheet px; nx, ny : (n,) unit normals
-    u_px : (n,) standard uncertainty of the position along the normal
+    u_px : (n,) standard uncertainty of the position along the normal, from the profile itself
+    u_bridge_px : (n,) the same, from ink that is hidden, missing or merged with other ink
     kind : (n,) int8: 0 seen whole, 1 inferred from one edge, 2 merged on both sides, 3 no ink
     width_px : drawn line width (its coverage summed across)
     """
@@ -35,26 +38,82 @@ class Course:
     nx: np.ndarray
     ny: np.ndarray
     u_px: np.ndarray
+    u_bridge_px: np.ndarray
     kind: np.ndarray
     width_px: float
 
 
-def refine_course(x, y, cover, *, fill=0.0):
+def refine_course(x, y, cover, hidden, from_centre_px, *, fill=0.0):
     """Refine an ordered, evenly spaced (about 1 px) closed or open polyline on a coverage map.
 
     Parameters
     ----------
     x, y : (n,) sheet px
-    cover : (h, w) float32 coverage, 0 to 1
+    cover, hidden : (h, w) float32 coverage by the ink, and by what may hide it, 0 to 1
+    from_centre_px : (n,) distance of the samples from the chart's centre
     fill : coverage of a fill on one side of the line, 0 when there is none
     """
     drawn, width = _line_width(x, y, cover)
+    moved = np.zeros(len(x))
     for _ in range(2):
         nx, ny = _normals(x, y)
-        shift, u, kind = _locate(x, y, nx, ny, cover, width, fill)
-        shift = _smooth(np.where(kind < 3, shift, 0.0), np.where(kind < 3, 1 / u**2, 1e-3))
-        x, y = x + shift * nx, y + shift * ny
-    return Course(x=x, y=y, nx=nx, ny=ny, u_px=u, kind=kind, width_px=drawn)
+        shift, u, kind, asymmetry, excess = _locate(x, y, nx, ny, cover, width, fill)
+        smooth = _smooth(np.where(kind < 3, shift, 0.0), np.where(kind < 3, 1 / u**2, 1e-3))
+        x, y = x + smooth * nx, y + smooth * ny
+        moved += shift
+    x, y, gap = _bridge(x, y, kind)
+    signs = _signs(x, y, nx, ny, moved, asymmetry, excess, hidden)
+    near_centre = np.minimum(width / np.maximum(from_centre_px, 1.0), 3.0)
+    u = np.sqrt(np.column_stack([signs, near_centre]) ** 2 @ np.square(PROFILE_WEIGHTS))
+    merged = np.column_stack([kind == 1, np.minimum(gap, LONGEST_GAP_PX), near_centre])
+    u_bridge = np.where(kind > 0, np.sqrt(merged**2 @ np.square(BRIDGE_WEIGHTS)), 0.0)
+    return Course(x=x, y=y, nx=nx, ny=ny, u_px=u, u_bridge_px=u_bridge, kind=kind, width_px=drawn)
+
+
+def _signs(x, y, nx, ny, moved, asymmetry, excess, hidden):
+    """What tells how well a sample lies, (n, 5), px.
+
+    asymmetry : centroid of the profile against the middle of its edges; excess : its width against the line's own;
+    roughness : rms of the line's small-scale jitter nearby; bend : sagitta of the line over 6 px; beside : how much
+    of something else lies on the profile
+    """
+    jitter = moved - np.convolve(np.pad(moved, 3, mode="edge"), np.ones(7) / 7, mode="valid")
+    roughness = np.sqrt(np.convolve(np.pad(jitter**2, 6, mode="edge"), np.ones(13) / 13, mode="valid"))
+    k = np.arange(len(x))
+    a, b = np.clip(k - 6, 0, len(x) - 1), np.clip(k + 6, 0, len(x) - 1)
+    bend = np.hypot(x[a] + x[b] - 2 * x, y[a] + y[b] - 2 * y) / 2
+    _, covered = _profiles(x, y, nx, ny, hidden, 2.0)
+    beside = covered.mean(axis=1)
+    return np.stack([np.abs(asymmetry), np.abs(excess), roughness, bend, beside], axis=1)
+
+
+def _bridge(x, y, kind):
+    """Draw the line smoothly over short gaps of ink, and measure each sample's way to the nearest one seen whole.
+
+    A dash gap or a crossing is short beside the line's curves, so a cubic with the direction of both ends (Hermite)
+    follows it better than the path, which knows whole pixels only.
+    """
+    n = len(x)
+    seen = np.flatnonzero(kind == 0)
+    if seen.size < 8:
+        return x, y, np.full(n, float(n))
+    x, y = x.copy(), y.copy()
+    before = np.maximum.accumulate(np.where(kind == 0, np.arange(n), -n))
+    after = np.minimum.accumulate(np.where(kind == 0, np.arange(n), 2 * n)[::-1])[::-1]
+    gap = np.minimum(np.arange(n) - before, after - np.arange(n)).astype(float)
+    for start, stop in zip(seen[:-1], seen[1:]):
+        if not 1 < stop - start <= LONGEST_BRIDGE_PX or (kind[start + 1 : stop] == 1).any():
+            continue
+        a, b = max(start - BRIDGE_END_PX, 0), min(stop + BRIDGE_END_PX, n - 1)
+        if (kind[a : start + 1] > 1).any() or (kind[stop : b + 1] > 1).any() or a == start or b == stop:
+            continue
+        t = np.arange(1, stop - start) / (stop - start)
+        h = np.stack([2 * t**3 - 3 * t**2 + 1, t**3 - 2 * t**2 + t, -2 * t**3 + 3 * t**2, t**3 - t**2])
+        for v in (x, y):
+            scale = stop - start
+            ends = (v[start], (v[start] - v[a]) / (start - a) * scale, v[stop], (v[b] - v[stop]) / (b - stop) * scale)
+            v[start + 1 : stop] = np.tensordot(ends, h, axes=1)
+    return x, y, gap
 
 
 def _profiles(x, y, nx, ny, cover, reach):
@@ -147,7 +206,9 @@ def _locate(x, y, nx, ny, cover, width, fill):
     spread = np.clip(wide - width, 0, 2 * reach) / np.sqrt(12)
     u = np.where(kind == 2, np.maximum(0.3, spread), u)
     u = np.where(kind == 3, 1.0, u)
-    return np.clip(shift, -reach, reach), u, kind
+    asymmetry = np.where(kind == 0, centroid - (right + left) / 2, 0.0)
+    excess = np.where(kind == 0, wide - width, 0.0)
+    return np.clip(shift, -reach, reach), u, kind, asymmetry, excess
 
 
 def _crossing(s, m, edge, towards, level, k):

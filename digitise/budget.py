@@ -14,7 +14,9 @@ from .frozen import lock_arrays
 __all__ = ["PARTS", "Budget", "make_budget"]
 
 PARTS = ("picture", "grid", "scale", "bearing", "bridging")
-COVERAGE_FACTOR = 1.96  # 95 % of a normal distribution (JCGM 100:2008, table G.1)
+# A line's place has a few large errors among many small ones, as Student's t with 3 degrees of freedom has: 95 %
+# within 3.18 standard uncertainties (JCGM 100:2008, table G.2).
+COVERAGE_FACTOR = 3.18
 STEEPEST = 0.05  # least cosine of the slant: beyond it the line is a spoke and the bridging part takes over
 
 
@@ -62,13 +64,13 @@ def make_budget(trace, grid, scale, bearing):
     """
     rho = trace.rho
     per_rho = np.abs(scale.slope(np.maximum(rho, 0.5 / trace.sheet_outer_px)))
-    along = trace.u_px / np.maximum(trace.radial_share, STEEPEST) / trace.sheet_outer_px
+    per_px = per_rho / np.maximum(trace.radial_share, STEEPEST) / trace.sheet_outer_px
     return Budget(
-        picture=per_rho * along,
+        picture=per_px * trace.u_px,
         grid=per_rho * _grid_u(trace, grid),
         scale=np.broadcast_to(scale.level_u(rho), rho.shape),
         bearing=per_rho * np.abs(trace.slope) * bearing.u_deg,
-        bridging=per_rho * trace.u_rho_bridge,
+        bridging=per_px * trace.u_bridge_px,
     )
 
 

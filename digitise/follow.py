@@ -32,10 +32,10 @@ class Trace:
 
     plane_deg : (n,) plane angles
     rho : (n,) radius, NaN where missing
-    u_px : (n,) standard uncertainty of the line's place along its normal, sheet px
+    u_px : (n,) standard uncertainty of the line's place along its normal, sheet px, where it is seen
+    u_bridge_px : (n,) the same from ink that is hidden, missing or merged; at the centre, of the radius itself
     slope : (n,) d rho / d plane angle, per degree
     radial_share : (n,) how much of a shift along the normal is radial, 0 to 1 (cosine of the line's slant)
-    u_rho_bridge : (n,) extra standard uncertainty of rho where the ink is hidden or merged
     state : (n,) str, one of table.STATES
     clear : (n,) bool, the line stands alone there: its whole profile was seen
     width_px : drawn line width, sheet px; sheet_outer_px : sheet px per unit rho
@@ -44,9 +44,9 @@ class Trace:
     plane_deg: np.ndarray
     rho: np.ndarray
     u_px: np.ndarray
+    u_bridge_px: np.ndarray
     slope: np.ndarray
     radial_share: np.ndarray
-    u_rho_bridge: np.ndarray
     state: np.ndarray
     clear: np.ndarray
     width_px: float
@@ -147,7 +147,8 @@ def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill):
     plane = frame.angles[columns]
     x, y = sheet.to_sheet(rows / frame.outer_rows, plane)
     x, y, plane = _evenly(x, y, plane)
-    course = refine_course(x, y, layer.body, fill=fill)
+    rho = np.hypot(*sheet.to_plane(x, y)) * sheet.outer_px
+    course = refine_course(x, y, layer.body, layer.hidden, rho, fill=fill)
     u, v = sheet.to_plane(course.x, course.y)
     rho = np.hypot(u, v)
     # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.
@@ -200,12 +201,11 @@ def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet):
     curve = np.where(floor, 0.5 * floor_px / sheet.outer_px, at(rho))
     slope = np.where(floor, 0.0, np.gradient(curve, step))
     kind = np.where(floor, 2.0, at(course.kind.astype(float)))
-    spread = np.where(course.kind > 0, course.u_px, 0.0)
-    bridge = np.where(floor, 0.5 * floor_px, np.where(kind > 0.5, at(spread), 0.0)) / sheet.outer_px
+    bridge = np.where(floor, 0.5 * floor_px, at(course.u_bridge_px))
     state = np.where(floor, "floor", np.where(kind > 1.5, "bridged", "seen"))
     slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
     return Trace(
-        plane_deg=grid_deg, rho=curve, u_px=np.minimum(at(course.u_px), 0.2), slope=slope, radial_share=slant,
-        u_rho_bridge=bridge, state=state, clear=kind < 0.5,
+        plane_deg=grid_deg, rho=curve, u_px=at(course.u_px), u_bridge_px=bridge, slope=slope, radial_share=slant,
+        state=state, clear=kind < 0.5,
         width_px=course.width_px / sheet.reduction, sheet_outer_px=sheet.outer_px,
     )  # fmt: skip

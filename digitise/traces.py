@@ -100,7 +100,7 @@ def _traces_of_ink(rgb, palette, sheet, grid, frame, settings, name, *, told):
 
 def _ink_left(layer, sheet, trace):
     """Drawn length, in outer radii, that the ink away from the hub would make at the trace's width."""
-    left = (layer.cover > 0.4) & (sheet.rho > HUB_RHO) & (sheet.rho < 1)
+    left = layer.cover[(layer.cover > 0.15) & (sheet.rho > HUB_RHO) & (sheet.rho < 1)]
     return float(left.sum()) / max(trace.width_px * sheet.reduction, 1.0) / sheet.outer_px
 
 
