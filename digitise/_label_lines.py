@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ._label_blobs import CAP_SHARE, blob_lines
 from ._label_number import plain_text
 from ._label_sheet import Line
 
@@ -12,6 +13,7 @@ __all__ = ["Seen", "find_lines", "read_lines"]
 SURE = 0.5  # odds of some number above which a line is not turned over to try again
 SQUARE = 1.45  # length over height below which the way of reading is not known from the box
 LEVEL_DEG = 8.0  # a detected turn below this is the box's wobble, not the text's
+USUAL_CAP = 0.03  # height of a capital over the outer radius
 NEAR_RHO = 1.12  # rotated labels stand inside the chart or just outside it
 
 
@@ -38,11 +40,23 @@ def find_lines(sheet, engine):
     lines = [Line(x=x, y=y, length=w, height=h, turn_deg=_settled(w, h, turn)) for x, y, w, h, turn in boxes]
     lines = [line.turned(-line.turn_deg) if _is_square(line) else line for line in lines]
     seen = read_lines(sheet, engine, lines)
+    seen += read_lines(sheet, engine, blob_lines(sheet, _cap_px(sheet, seen), taken=[s.line for s in seen if _done(s)]))
     again = [(k, turned) for k, item in enumerate(seen) for turned in _other_ways(item)]
     for (k, _), item in zip(again, read_lines(sheet, engine, [turned for _, turned in again])):
         if item.number_odds > max(0.3, seen[k].number_odds):
             seen[k] = item
     return seen
+
+
+def _done(item):
+    """Whether a detected line needs no second look: a number, or clearly words."""
+    return item.number_odds > SURE or (item.text_odds > 0.8 and len(item.text) > 3)
+
+
+def _cap_px(sheet, seen):
+    """Height of a capital on the sheet, px, from the numbers detected; a usual share of the chart without any."""
+    heights = [item.line.height for item in seen if item.number_odds > SURE]
+    return CAP_SHARE * float(np.median(heights)) if heights else USUAL_CAP * sheet.grid.outer_px
 
 
 def read_lines(sheet, engine, lines, *, cleaned=True):

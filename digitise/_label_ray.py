@@ -110,12 +110,20 @@ def _gather(grid, seen, marks, points, first, second):
     on = [k for k in marks if abs(points[k] @ across - side) < SPREAD * heights[k] and points[k] @ along > -0.02]
     if not on:
         return None
-    lead = max(on, key=lambda k: (seen[k].line.length > 1.5 * seen[k].line.height, seen[k].number_odds))
-    turn, height = seen[lead].line.turn_deg, seen[lead].line.height
+    turn = _usual_turn([seen[k] for k in on])
+    height = float(np.median([seen[k].line.height for k in on if abs(seen[k].line.turn_deg - turn) < TURN_SLACK_DEG]))
     on = [k for k in on if _alike(seen[k].line, turn, height)]
     if not on or abs(side) > BESIDE * height / grid.outer_px:
         return None
     return _anchored(grid, seen, on, along, across, turn)
+
+
+def _usual_turn(items):
+    """The turn that most of the lines agree on, by the odds of their numbers; a short line's turn says less."""
+    weights = [item.number_odds * (1.0 if item.line.length > 1.5 * item.line.height else 0.5) for item in items]
+    turns = np.array([item.line.turn_deg for item in items])
+    off = np.abs((turns[:, None] - turns[None, :] + 180) % 360 - 180)
+    return float(turns[np.argmax((off < TURN_SLACK_DEG) @ np.array(weights))])
 
 
 def _alike(line, turn_deg, height):

@@ -1,4 +1,9 @@
-"""Read the label of every ring: the lines detected on a ray, and crops placed where the others must be."""
+"""Read the label of every ring: the lines detected on a ray, and looks where the others must be.
+
+Each row of labels that the detected numbers propose is read again ring by ring, with the grid lines filled and with
+them left in; where neighbouring labels stand in one line of text, the row is read whole. The row whose numbers fit a
+scale best is taken.
+"""
 
 from dataclasses import dataclass, replace
 
@@ -6,7 +11,8 @@ import numpy as np
 
 from ._label_lines import Seen, read_lines
 from ._label_number import NumberOdds
-from ._label_ray import find_rays
+from ._label_ray import SAFE_SHIFT, find_rays
+from ._label_strip import in_line, strip_numbers
 from ._level_vote import LevelReading, vote_levels
 
 __all__ = ["RingText", "read_ring_texts"]
@@ -16,6 +22,10 @@ OFF_ROW = 1.0  # heights
 CROP_PAD = 0.35  # heights of paper left at either end
 MIN_RHO = 0.03
 MAX_RINGS = 24
+READ_WELL = 0.75  # mean odds of the crops of a row that is the right way up
+LONG_OVER_TALL = 2.0  # length of a short label over its height
+SURE_SUPPORT, SURE_MARGIN = 3, 3.0  # of a vote that ends the search
+WEIGHTS = {"detected": 2.0, "filled": 1.0, "plain": 0.7, "strip": 1.5}  # of the looks at one label
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -25,64 +35,116 @@ class RingText:
     ring: int
     seen: Seen
     numbers: tuple
-    detected: bool
 
 
 def read_ring_texts(sheet, engine, seen, *, rim=()):
-    """Ring labels of the likeliest ray: list of `RingText` (one a ring at most) and whether the ray is safe."""
-    best, best_worth, safe = [], 0.0, True
-    for ray in find_rays(sheet.grid, seen, rim=rim):
-        texts = _read_ray(sheet, engine, seen, ray, rim)
-        worth = _worth(sheet.grid, texts)
-        if worth > best_worth:
-            best, best_worth, safe = texts, worth, ray.safe
+    """Ring labels of the likeliest row: tuple of `RingText` (one a ring at most), and whether their place is safe."""
+    rings = [k for k, rho in enumerate(sheet.grid.ring_rho[:MAX_RINGS]) if rho > MIN_RHO]
+    best, best_worth, safe = (), 0.0, True
+    for ray in find_rays(sheet.grid, seen, rim=rim) if rings else ():
+        for texts, placed in _read_row(sheet, engine, seen, ray, rings, rim):
+            worth, sure = _worth(sheet.grid, texts)
+            worth -= 0.3 * (not placed)
+            if worth > best_worth:
+                best, best_worth, safe = texts, worth, placed
+            if sure and placed:
+                return texts, placed
     return best, safe
 
 
-def _worth(grid, texts):
-    """How much a row of labels says together: the odds of its numbers, those that fit one scale counted thrice."""
-    readings = [
-        LevelReading(ring=text.ring, rho=float(grid.ring_rho[text.ring]), options=[(n.value, n.odds) for n in text.numbers])
-        for text in texts
-    ]
-    vote = vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px)
-    agreed = len(vote.support) - 0.5 * vote.against if vote else 0
-    return sum(text.numbers[0].odds for text in texts) + 2 * agreed
-
-
-def _read_ray(sheet, engine, seen, ray, rim):
+def _read_row(sheet, engine, seen, ray, rings, rim):
+    """Yield what a row says, each as texts and whether the labels' place is safe."""
     grid = sheet.grid
-    rings = [k for k, rho in enumerate(grid.ring_rho[:MAX_RINGS]) if rho > MIN_RHO]
+    ray, filled = _right_way_up(sheet, engine, ray, rings)
+    found = _detected(grid, ray, seen, rings, rim)
+    lines = [_crop_line(grid, ray, ring, found.get(ring)) for ring in rings]
+    if found:
+        filled = read_lines(sheet, engine, lines)
+    plain = read_lines(sheet, engine, lines, cleaned=False)
+    crops = {ring: {"filled": a, "plain": b} for ring, a, b in zip(rings, filled, plain)}
+    for ring, item in found.items():
+        crops[ring]["detected"] = item
+    yield _texts(crops), ray.safe
+    if in_line(grid, ray, rings):
+        for shift, numbers in strip_numbers(sheet, engine, ray, rings):
+            moved = replace(ray, shift=ray.shift + shift)
+            gap = float(np.median(np.abs(np.diff(grid.ring_rho[rings]))))
+            strips = {
+                ring: {"strip": replace(crops[ring]["filled"], line=moved.line_at(grid, grid.ring_rho[ring]), numbers=mine)}
+                for ring, mine in numbers.items()
+            }
+            yield _texts(strips), abs(moved.shift) < SAFE_SHIFT * gap
+
+
+def _right_way_up(sheet, engine, ray, rings):
+    """The row with the turn of its letters settled, and its crops with grid lines filled.
+
+    A short label that is turned looks square, so its turn is not known from its box: letters may stand level, along
+    the ray or across it.
+    """
+    best = None
+    page = _page_deg(sheet.grid, ray)
+    for turn in (ray.turn_deg, 0.0, page - 90, page + 90, page, page + 180):
+        turn = (turn + 180) % 360 - 180
+        if best is not None and any(abs((turn - t + 180) % 360 - 180) < 6 for t in tried):
+            continue
+        turned = ray if best is None else _as_turned(ray, turn)
+        looks = read_lines(sheet, engine, [_crop_line(sheet.grid, turned, ring, None) for ring in rings])
+        odds = [look.numbers[0].odds if look.numbers else 0.0 for look in looks]
+        if best is None:
+            tried, best = [turn], (sum(odds), turned, looks)
+            if np.mean(odds) > READ_WELL:
+                break
+        else:
+            tried.append(turn)
+            if sum(odds) > best[0] + 0.5:
+                best = sum(odds), turned, looks
+    return best[1:]
+
+
+def _as_turned(ray, turn_deg):
+    """The row with its letters at another turn, their height worked out from the box that they fill."""
+    lean = np.radians(turn_deg - ray.turn_deg)
+    height = ray.height / (0.5 * LONG_OVER_TALL * abs(np.sin(lean)) + abs(np.cos(lean)))
+    length = max(ray.length, LONG_OVER_TALL * height) if abs(np.sin(lean)) < 0.2 else 2.6 * height
+    return replace(ray, turn_deg=turn_deg, height=float(height), length=float(length), anchor=0)
+
+
+def _page_deg(grid, ray):
+    """Direction of a ray on the sheet, degrees clockwise from the top."""
+    plane = np.degrees(np.arctan2(ray.along[0], -ray.along[1]))
+    x, y = grid.to_picture(np.array([0.2, 0.8]), plane)
+    return float(np.degrees(np.arctan2(x[1] - x[0], -(y[1] - y[0]))))
+
+
+def _detected(grid, ray, seen, rings, rim):
+    """{ring: Seen} of the detected lines that are labels of the row."""
     found = {}
     for k, item in enumerate(seen):
         if k in rim or not item.numbers:
             continue
+        off = abs((item.line.turn_deg - ray.turn_deg + 180) % 360 - 180)
         ring = _ring_of(grid, ray, item.line, rings)
-        if ring is not None and (ring not in found or item.number_odds > found[ring].number_odds):
+        if ring is not None and off < 20 and (ring not in found or item.number_odds > found[ring].number_odds):
             found[ring] = item
-    lines = [_crop_line(grid, ray, ring, found.get(ring)) for ring in rings]
-    looks = [read_lines(sheet, engine, lines, cleaned=cleaned) for cleaned in (True, False)]
-    texts = []
-    for ring, *crops in zip(rings, *looks):
-        seen_here = ([found[ring]] if ring in found else []) + crops
-        numbers = _pooled(seen_here, ring in found)
-        if numbers:
-            lead = max(seen_here, key=lambda item: _odds_of(item, numbers[0].value))
-            texts.append(RingText(ring=ring, seen=lead, numbers=numbers, detected=ring in found))
-    return texts
+    return found
 
 
 def _ring_of(grid, ray, line, rings):
     """The ring whose label a detected line is, or None."""
-    if not 0.5 < line.height / ray.height < 2.0 or not rings:
+    if not 0.5 < line.height / ray.height < 2.0:
         return None
     rho, off_row = ray.place_of(grid, line)
     if abs(off_row) > OFF_ROW * ray.height / grid.outer_px:
         return None
     ring = min(rings, key=lambda k: abs(grid.ring_rho[k] - rho))
+    return ring if abs(grid.ring_rho[ring] - rho) < OFF_RING * _room(grid, ring) else None
+
+
+def _room(grid, ring):
+    """Distance to the nearest other ring, rho."""
     others = np.delete(grid.ring_rho, ring)
-    gap = np.abs(others - grid.ring_rho[ring]).min() if len(others) else grid.ring_rho[ring]
-    return ring if abs(grid.ring_rho[ring] - rho) < OFF_RING * gap else None
+    return float(np.abs(others - grid.ring_rho[ring]).min()) if len(others) else float(grid.ring_rho[ring])
 
 
 def _crop_line(grid, ray, ring, found):
@@ -91,8 +153,7 @@ def _crop_line(grid, ray, ring, found):
     room = ray.length + 2 * CROP_PAD * ray.height
     others = np.delete(grid.ring_rho, ring)
     if len(others):
-        near = others[np.argmin(np.abs(others - grid.ring_rho[ring]))]
-        other = ray.line_at(grid, near)
+        other = ray.line_at(grid, others[np.argmin(np.abs(others - grid.ring_rho[ring]))])
         turn = np.radians(line.turn_deg)
         dx, dy = other.x - line.x, other.y - line.y
         apart, above = abs(dx * np.cos(turn) + dy * np.sin(turn)), abs(-dx * np.sin(turn) + dy * np.cos(turn))
@@ -104,18 +165,39 @@ def _crop_line(grid, ray, ring, found):
     return replace(line, length=room, height=ray.height * 1.15)
 
 
-def _odds_of(item, value):
-    return sum(number.odds for number in item.numbers if number.value == value)
+def _texts(looks):
+    """`RingText` of every ring, from {ring: {kind of look: Seen}}."""
+    texts = []
+    for ring, seen in looks.items():
+        numbers = _pooled(seen)
+        if numbers:
+            lead = max(seen.values(), key=lambda item: sum(n.odds for n in item.numbers if n.value == numbers[0].value))
+            texts.append(RingText(ring=ring, seen=lead, numbers=numbers))
+    return tuple(texts)
 
 
-def _pooled(looks, detected):
-    """Mean odds over the looks; the detected line counts as much as both crops together."""
-    weights = [2.0, 1.0, 1.0] if detected else [1.0, 0.6]
+def _pooled(looks):
+    """Mean odds of the numbers over the looks at one label, best first."""
+    whole = sum(WEIGHTS[kind] for kind in looks)
     total = {}
-    for look, weight in zip(looks, weights):
+    for kind, look in looks.items():
         for number in look.numbers[:6]:
             if number.unit != "deg":
                 key = number.value, number.unit
-                total[key] = total.get(key, 0.0) + weight * float(number.odds) / sum(weights)
+                total[key] = total.get(key, 0.0) + WEIGHTS[kind] * float(number.odds) / whole
     ranked = sorted(total.items(), key=lambda item: -item[1])
     return tuple(NumberOdds(value=value, unit=unit, odds=odds) for (value, unit), odds in ranked[:6] if odds > 0.01)
+
+
+def _worth(grid, texts):
+    """How much a row says together: the odds of its numbers, and more for those that fit one scale; and whether it is sure."""
+    readings = [
+        LevelReading(ring=text.ring, rho=float(grid.ring_rho[text.ring]), options=[(n.value, n.odds) for n in text.numbers])
+        for text in texts
+    ]
+    vote = vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px)
+    odds = sum(text.numbers[0].odds for text in texts)
+    if vote is None:
+        return 0.3 * odds, False
+    sure = len(vote.support) >= SURE_SUPPORT and vote.margin >= SURE_MARGIN and not vote.against
+    return 0.3 * odds + len(vote.support) - 0.5 * vote.against + 0.2 * min(vote.margin, 5.0), sure

@@ -26,6 +26,7 @@ MIN_SIDE_PX = 3
 BATCH = 12
 WIDTHS = (64, 96, 128, 192, 320, 480, 768)  # px of a batch; few of them, so that the runtime reuses its memory
 CHUNK = 32  # detector sizes are multiples of this
+COLUMN_PX = 8  # px of a line, LINE_PX high, to a column of odds
 
 _lock = threading.Lock()
 
@@ -65,6 +66,8 @@ def _make_engine():
 
 class Engine:
     """Both networks, loaded. Not changed after it is made, so threads may share it."""
+
+    line_px, column_px = LINE_PX, COLUMN_PX
 
     def __init__(self, detector_path, reader_path):
         import onnxruntime

@@ -32,8 +32,8 @@ def scale_from_labels(grid, *, settings, labels):
     if settings.centre_db is not None:
         laws = ("even",)
     vote = vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px, laws=laws) if readings else None
-    n_read = sum(1 for item in readings if item.options[0][1] >= 0.5)
-    if vote is None or not vote.support or (len(vote.support) < 2 and vote.margin < LEAST_MARGIN):
+    n_read = sum(1 for item in readings if item.options[0][1] >= 0.5 and item.ring not in told)
+    if vote is None or not n_read or not vote.support or (len(vote.support) < 2 and vote.margin < LEAST_MARGIN):
         raise _refusal(settings, labels, n_read)
     anchors = _anchors(grid, vote, told)
     fit = fit_law(vote.law, anchors.rho, anchors.rho_u, anchors.level_db)
