@@ -21,9 +21,17 @@ class SheetPage:
         self.draw = ImageDraw.Draw(self.image)
         self.y = MARGIN_PX
 
-    def text(self, x, y, words, *, size=16, fill=TEXT, anchor="la"):
-        """One line at a place."""
-        self.draw.text((x, y), printable(words), font=font(size), fill=fill, anchor=anchor)
+    def text(self, x, y, words, *, size=16, fill=TEXT, anchor="la", halo_px=0):
+        """Put one line at a place, with a halo of paper where it may lie on a line."""
+        self.draw.text(
+            (x, y),
+            printable(words),
+            font=font(size),
+            fill=fill,
+            anchor=anchor,
+            stroke_width=halo_px,
+            stroke_fill=PAPER,
+        )
 
     def lines(self, words, *, size=16, fill=TEXT, left=MARGIN_PX):
         """Text wrapped to the sheet's width; the sheet grows downward."""

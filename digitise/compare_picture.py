@@ -17,6 +17,7 @@ STRIP_PX = 300
 DEEPEST_DB = 60.0
 LINE_PX = 2.0
 BAND_STRENGTH = 0.18
+STANDS = "0\u00b0 at the top, growing clockwise, however the charts stand"
 DASHES_PX = (
     (),
     (16, 7),
@@ -39,9 +40,10 @@ def draw_comparison(names, tables, comparisons, *, level, turn_deg=0.0):
         page.panel(MARGIN_PX + POLAR_PX + 40, y, sample)
         page.text(MARGIN_PX + POLAR_PX + 124, y + 10, f"{k + 1}  {shortened(name, 48)}", size=18, anchor="lm")
     page.text(MARGIN_PX + POLAR_PX + 40, page.y + POLAR_PX - 40, _level_words(level), fill=DIM)
+    page.text(MARGIN_PX + POLAR_PX + 40, page.y + POLAR_PX - 64, STANDS, fill=DIM)
     if turn_deg:
         said = f"bearings of all but the first turned by {turn_deg:+g} deg"
-        page.text(MARGIN_PX + POLAR_PX + 40, page.y + POLAR_PX - 64, said, fill=DIM)
+        page.text(MARGIN_PX + POLAR_PX + 40, page.y + POLAR_PX - 88, said, fill=DIM)
     page.y += POLAR_PX + 20
     _differences(page, comparisons, colours)
     for line in comparison_text(names, comparisons):
@@ -85,7 +87,7 @@ def _polar(page, tables, colours, level, turn_deg):
     page.panel(MARGIN_PX, page.y, panel)
     for ring in rings:
         x, y = place((ring - bottom) / (top - bottom), 75.0)
-        page.text(MARGIN_PX + x, page.y + y, f"{ring:g}", size=14, fill=DIM, anchor="mm")
+        page.text(MARGIN_PX + x, page.y + y, f"{ring:g}", size=14, fill=DIM, anchor="mm", halo_px=2)
     for spoke in range(0, 360, 30):
         x, y = place(1.07, spoke)
         page.text(MARGIN_PX + x, page.y + y, f"{spoke}\u00b0", size=15, fill=DIM, anchor="mm")

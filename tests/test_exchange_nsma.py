@@ -329,7 +329,9 @@ def test_what_is_not_known_is_not_made_up():
 
     with pytest.raises(UsageError, match="give --frequency and --gain"):
         write(Antenna(cuts=(cut,)), PLAIN)
-    checks = write(Antenna(cuts=(cut,), low_mhz=900, gain=15), PLAIN).checks
+    odd = replace(cut, polarisation="X")
+    checks = write(Antenna(cuts=(odd,), low_mhz=900, gain=15), PLAIN).checks
+    assert any("polarisation 'X' is not one of the text" in sentence for sentence in checks)
     assert "ELTILT is required and not known: written as 0.0" in checks
 
 

@@ -271,7 +271,8 @@ def test_errors_hold(name, near_deg):
 
     Whether near rows share errors or not.
 
-    60 seeded tables a pattern, errors growing on slopes as in a reading; fewer is 6 sigma off 95 %.
+    40 seeded tables a pattern, errors growing on slopes as in a reading; three quarters of them are 6 sigma
+    below 95 %, and over all figures nine tenths hold.
     """
     rng = np.random.default_rng(71)
     slope = np.abs(np.gradient(np.maximum(PATTERNS[name], -40)))
@@ -279,13 +280,13 @@ def test_errors_hold(name, near_deg):
     truth = figures_of(table_of(PATTERNS[name], error95_db=1e-6, floor_db=-40))
     keys = ("peak_db", "beamwidth", "beamwidth10", "squint", "ftb", "ftb30", "null_width")
     held = dict.fromkeys(keys, 0)
-    for _ in range(60):
+    for _ in range(40):
         found = figures_of(with_noise(clean, rng, near_deg=near_deg))
         for key in keys:
             held[key] += abs(found[key].value - truth[key].value) <= found[key].error95
 
-    assert min(held.values()) >= 0.78 * 60, held
-    assert np.mean(list(held.values())) >= 0.9 * 60, held
+    assert min(held.values()) >= 0.75 * 40, held
+    assert np.mean(list(held.values())) >= 0.9 * 40, held
 
 
 def test_errors_are_not_idle():

@@ -153,6 +153,7 @@ def _add_angles(group):
     )
     group.add_argument(
         "--designators",
+        metavar="H,V|AZ,EL",
         choices=("H,V", "AZ,EL"),
         default="H,V",
         help="NSMA names of the cuts (H,V: untilted)",

@@ -14,7 +14,7 @@ import numpy as np
 from .. import __version__
 from ..exceptions import UsageError
 from ._nsma_read import read_nsma
-from ._nsma_tags import DESCRIPTIONS, FREE, LENGTHS, LONGEST_POINT, fit
+from ._nsma_tags import DESCRIPTIONS, FREE, LENGTHS, LONGEST_POINT, POLARISATIONS, fit
 from .cuts import PLANES, Exported, resampled
 
 __all__ = ["read", "write"]
@@ -47,6 +47,8 @@ def write(antenna, options):
     for name, value in (("ELTILT", antenna.tilt_deg), ("AZWIDT", antenna.azimuth_width_deg)):
         if math.isnan(value):
             checks.append(f"{name} is required and not known: written as 0.0")
+    for word in {cut.polarisation for cut in antenna.cuts} - {"", *POLARISATIONS}:
+        checks.append(f"polarisation {word!r} is not one of the text: {', '.join(POLARISATIONS)}")
     lines = _header(antenna, options)
     by_frequency = {}
     for cut in antenna.cuts:
