@@ -19,10 +19,7 @@ def printable_text(most=20):
 
 @st.composite
 def cuts(draw, *, plane=None, even=None, deepest_db=-80.0, decimals=3):
-    """A cut of even or uneven points whose angles and levels have `decimals` decimals.
-
-    The largest level 0.
-    """
+    """Draw a cut of even or uneven points, levels of `decimals` decimals, the largest 0."""
     n = draw(st.sampled_from([4, 8, 36, 72, 360]))
     rng = np.random.default_rng(draw(st.integers(0, 2**32 - 1)))
     if draw(st.booleans()) if even is None else even:

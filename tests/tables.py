@@ -1,7 +1,4 @@
-"""Tables of patterns with a known formula, as a perfect reading would give them.
-
-For the tests of what tables feed.
-"""
+"""Tables of patterns with a known formula, as a perfect reading would give them."""
 
 import numpy as np
 

@@ -113,10 +113,7 @@ def test_unknown_words_are_refused(how):
 
 
 def test_picture_shows_each_table_in_its_own_colour():
-    """The picture holds two lines of different colours and the band of the difference.
-
-    Gaps do not stop it.
-    """
+    """The picture holds two lines of different colours and the band; gaps do not stop it."""
     other = without(table_of(patterns.first_order(DEG), floor_db=-40), slice(100, 130))
     image = draw_comparison(
         ["a.csv", "b.csv"], [SECTOR, other], [compare_tables(SECTOR, other)], level="relative"

@@ -1,7 +1,4 @@
-"""NGMN BASTA pattern JSON.
-
-A cut's rows and no more, attenuation positive down, written, read back, refused.
-"""
+"""NGMN BASTA pattern JSON: a cut's rows and no more, attenuation positive, written, read back, refused."""
 
 import json
 import math
@@ -45,10 +42,7 @@ def rows_of(antenna, options=PLAIN):
 
 
 def test_an_azimuth_cut_lies_on_the_horizon():
-    """Theta 90, phi 0 to 359, attenuation 0 at the peak and positive elsewhere.
-
-    All required names are there.
-    """
+    """Theta 90, phi 0 to 359, attenuation 0 at the peak and positive elsewhere; all names are there."""
     data = write(antenna_of("azimuth", patterns.sector(DEG)), PLAIN).data
     node = json.loads(data)
     rows = rows_of(antenna_of("azimuth", patterns.sector(DEG)))

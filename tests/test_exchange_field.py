@@ -1,7 +1,4 @@
-"""The relative-field table of 47 CFR 73.316(c).
-
-10-degree steps, every maximum and minimum, its two limits said.
-"""
+"""The relative-field table of 47 CFR 73.316(c): steps, every maximum and minimum, its limits said."""
 
 import numpy as np
 import pytest
@@ -39,10 +36,7 @@ WAVY = 20 * np.log10(0.7 + 0.3 * np.cos(np.radians(3 * (DEG - 17))))  # field 1 
 
 
 def test_steps_maxima_and_minima():
-    """A field of three lobes.
-
-    36 steps, three maxima of 1.000 and three minima of 0.400 at their own azimuths.
-    """
+    """Three lobes: 36 steps, three maxima of 1.000 and three minima of 0.400 at their azimuths."""
     rows = rows_of(WAVY)
 
     assert len(rows) == 36 + 6
@@ -90,10 +84,7 @@ def test_slope_over_ten_degrees_is_measured_round_the_circle():
 @FEW
 @given(seed=st.integers(0, 2**32 - 1))
 def test_written_and_read_back(seed):
-    """Every written point comes back within the rounding of three decimals.
-
-    And what lies between on a line.
-    """
+    """Every written point comes back within its rounding, and what lies between on a line."""
     rng = np.random.default_rng(seed)
     level = patterns.omni(DEG, rng, ripple_db=6.0)
     antenna = antenna_of(level)

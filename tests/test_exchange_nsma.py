@@ -1,7 +1,4 @@
-"""NSMA WG16.99.050: the published layout, written and read back, real files' faults put up with.
-
-Others refused.
-"""
+"""NSMA WG16.99.050: the published layout, written and read back; small faults noted, others refused."""
 
 from dataclasses import replace
 
@@ -190,10 +187,7 @@ def test_missing_rows_stay_missing():
 
 
 def test_the_turn_of_azimuth():
-    """A file that grows counter-clockwise is mirrored in azimuth and not in elevation.
-
-    And its comment says so.
-    """
+    """A counter-clockwise file is mirrored in azimuth, not in elevation, and its comment says so."""
     lopsided = changed(b"+45.000,-1.375,", b"+45.000,-3.000,", 1)
     usual, turned = (read(lopsided, "x", ExchangeOptions(file_turn=turn)) for turn in ("cw", "ccw"))
     written = write(usual, ExchangeOptions(file_turn="ccw")).data
@@ -209,10 +203,7 @@ def test_the_turn_of_azimuth():
 
 
 def test_the_closing_point():
-    """A last point that names the first direction again is accepted when the level is the same.
-
-    Else refused.
-    """
+    """A last point that names the first direction again must have the same level."""
     closed = changed(b"+135.000,-16.686,\r\n", b"+135.000,-16.686,\r\n+180.000,-40.000,\r\n")
     torn = changed(b"+135.000,-16.686,\r\n", b"+135.000,-16.686,\r\n+180.000,-30.000,\r\n")
 

@@ -1,7 +1,4 @@
-"""Plain angle and level.
-
-Every way to write it comes back, other programs' ways are read, the rest is refused.
-"""
+"""Plain angle and level: every way to write it comes back, usual other ways are read, the rest refused."""
 
 import numpy as np
 import pytest
@@ -105,10 +102,7 @@ def test_gaps_are_not_filled_by_another_step():
     ],
 )
 def test_ways_of_other_programs(text):
-    """Delimiters, decimal commas, heads or none, losses, fields, -180..180, typographic minus.
-
-    One pattern.
-    """
+    """Delimiters, decimal commas, heads or none, losses, fields, typographic minus: one pattern."""
     assert guess_format(text.encode()) == "plain"
     cut = read(text.encode(), "x", PLAIN).cuts[0]
 

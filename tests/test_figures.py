@@ -245,10 +245,7 @@ def test_ripple_of_an_omni():
 
 
 def test_peak_between_rows():
-    """A beam 5 degrees wide that points at 30.4 is found there, at its own level.
-
-    And not at the nearest row.
-    """
+    """A beam 5 degrees wide that points at 30.4 is found there, not at the nearest row."""
     off = (DEG - 30.4 + 180) % 360 - 180
     figures = figures_of(table_of(2.0 - np.minimum(12 * (off / 5) ** 2, 30), floor_db=-40.0))
 
@@ -267,9 +264,7 @@ PATTERNS = {
 @pytest.mark.parametrize("near_deg", [0.0, 2.0])
 @pytest.mark.parametrize("name", PATTERNS)
 def test_errors_hold(name, near_deg):
-    """Truth lies within the stated 95 % error for nearly all noisy tables.
-
-    Whether near rows share errors or not.
+    """Truth lies within the stated error for nearly all noisy tables, near rows alike or not.
 
     40 seeded tables a pattern, errors growing on slopes as in a reading; three quarters of them are 6 sigma
     below 95 %, and over all figures nine tenths hold.
@@ -290,10 +285,7 @@ def test_errors_hold(name, near_deg):
 
 
 def test_errors_are_not_idle():
-    """Twice the row errors give about twice the figure's error.
-
-    And the error is not far from the noise it stands for.
-    """
+    """Twice the row errors give about twice the figure's error, of the size of its noise."""
     found = [figures_of(table_of(PATTERNS["sector"], error95_db=size)) for size in (0.1, 0.2)]
     slope = 24 * 32.5 / 65**2  # dB per degree at half power of the sector
 
@@ -339,10 +331,7 @@ def test_half_a_chart():
 
 
 def test_a_gap_in_the_beam():
-    """Missing rows between the peak and half power.
-
-    No width is made up, nor a worst side lobe of the beam itself.
-    """
+    """Missing rows before half power: no width is made up, nor a side lobe of the beam itself."""
     figures = figures_of(without(table_of(PATTERNS["array"], floor_db=-40), slice(8, 12)))
 
     assert figures["beamwidth"].reason == "rows without a value lie in the way"

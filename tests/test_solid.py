@@ -128,10 +128,7 @@ def cuts_of(truth):
 
 @pytest.mark.parametrize(("name", "method", "rms_db", "rms_upper_db", "largest_db"), PUBLISHED)
 def test_known_errors_of_the_methods(name, method, rms_db, rms_upper_db, largest_db):
-    """What a method gets wrong on a closed form is as much as was computed beforehand.
-
-    Within 0.3 dB (1 dB of the largest).
-    """
+    """What a method gets wrong is as computed beforehand, within 0.3 dB (1 dB of the largest)."""
     truth = TRUTHS[name]
     error = np.maximum(fill_sphere(method, *cuts_of(truth), OFF), CLIP_DB) - np.maximum(truth, CLIP_DB)
     weight = np.cos(np.radians(TALL))[:, None] * np.ones(360)
@@ -145,10 +142,7 @@ def test_known_errors_of_the_methods(name, method, rms_db, rms_upper_db, largest
 
 
 def test_a_tilted_beam_is_not_counted_twice():
-    """With the azimuth cut referred to the point that both cuts share.
-
-    A column tilted by 6 degrees is exact.
-    """
+    """With the azimuth cut referred to the common point, a column tilted by 6 degrees is exact."""
     truth = TRUTHS["tilted column"]
     azimuth = table_of(np.roll(np.maximum(truth[90], CLIP_DB), 180), floor_db=-90)
     front, back = (np.maximum(truth[:, column], CLIP_DB) for column in (180, 0))
@@ -176,10 +170,7 @@ ELEVATION = table_of(
 
 @pytest.mark.parametrize("method", METHODS)
 def test_what_was_read_stays(method):
-    """On both cuts the sphere holds the levels of the tables and says so.
-
-    Whatever the method makes of the rest.
-    """
+    """On both cuts the sphere holds the tables' levels and says so, whatever the method."""
     solid = make_solid(AZIMUTH, ELEVATION, method=method)  # 6 degrees towards growing bearings: taken as down
     front = int(np.argmin(np.abs(solid.azimuth_deg)))
     lift = np.max(solid.relative_db[:, front]) - np.max(ELEVATION.relative_db)
