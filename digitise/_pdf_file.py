@@ -15,7 +15,9 @@ import numpy as np
 
 from .exceptions import PictureError
 
-__all__ = ["PageView", "opened_document", "opened_page", "page_view", "refusal", "render_exact", "render_whole"]
+__all__ = [
+    "PageView", "hidden_objects", "opened_document", "opened_page", "page_view", "refusal", "render_exact", "render_whole",
+]  # fmt: skip
 
 MIN_SIDE_PT, MAX_SIDE_PT = 9.0, 20_000.0  # a chart needs some paper; 14 400 is the format's own bound (ISO 32000-1, C.2)
 RENDER_SECONDS = 20.0  # a page that takes longer is refused
@@ -46,12 +48,9 @@ def opened_document(path, data=None):
 
         try:
             document = pypdfium2.PdfDocument(path if data is None else data)
-            n_pages = len(document)
         except pypdfium2.PdfiumError as error:
             raise _open_refusal(path, error) from None
         try:
-            if n_pages < 1:
-                raise refusal(path, "the PDF has no pages", "save or download it again")
             yield document
         finally:
             document.close()
@@ -101,10 +100,11 @@ def _to_page(raw, page, x, y):
     return np.array([page_x.value, page_y.value])
 
 
-def render_whole(page, width_px, height_px, path, *, seconds=RENDER_SECONDS):
+def render_whole(page, width_px, height_px, path, *, seconds=None):
     """(height, width, 3) uint8 RGB of a whole page on white, given up and refused after so many seconds."""
     import pypdfium2.raw as raw
 
+    seconds = RENDER_SECONDS if seconds is None else seconds
     bitmap = _white_bitmap(width_px, height_px)
     deadline = time.monotonic() + seconds
     pause = raw.IFSDK_PAUSE()
@@ -134,6 +134,20 @@ def render_exact(page, scale, shift, size):
     matrix = raw.FS_MATRIX(scale[0], 0, 0, scale[1], shift[0], shift[1])
     raw.FPDF_RenderPageBitmapWithMatrix(bitmap, page, matrix, raw.FS_RECTF(0, 0, width, height), raw.FPDF_ANNOT)
     return _rgb(bitmap)
+
+
+@contextlib.contextmanager
+def hidden_objects(items):
+    """Page objects, by the engine's handles, left out of what is drawn for a while."""
+    import pypdfium2.raw as raw
+
+    for item in items:
+        raw.FPDFPageObj_SetIsActive(item, False)
+    try:
+        yield
+    finally:
+        for item in items:
+            raw.FPDFPageObj_SetIsActive(item, True)
 
 
 def _white_bitmap(width, height):

@@ -23,6 +23,7 @@ class Bitmap:
     """One or more placed bitmaps with one lattice of px.
 
     left, top, right, bottom : display points; px_per_pt : (x, y)
+    parts : tuple of (number of the image on the page, left, top, right, bottom), one a strip
     """
 
     left: float
@@ -30,6 +31,7 @@ class Bitmap:
     right: float
     bottom: float
     px_per_pt: tuple
+    parts: tuple
 
     @property
     def size(self):
@@ -41,25 +43,39 @@ class Bitmap:
 
     def clipped(self, width_pt, height_pt):
         """The part on the page, in whole px of its own lattice; None when nothing is."""
+        sides = self._cut((self.left, self.top, self.right, self.bottom), width_pt, height_pt)
+        if sides is None:
+            return None
+        parts = [(part[0], *cut) for part in self.parts if (cut := self._cut(part[1:], width_pt, height_pt)) is not None]
+        return Bitmap(**dict(zip(("left", "top", "right", "bottom"), sides, strict=True)), px_per_pt=self.px_per_pt,
+                      parts=tuple(parts))  # fmt: skip
+
+    def _cut(self, box, width_pt, height_pt):
+        low_x, low_y, high_x, high_y = box
         sides = []
-        for low, high, end, scale in zip(
-            (self.left, self.top), (self.right, self.bottom), (width_pt, height_pt), self.px_per_pt, strict=True
-        ):
+        for low, high, end, scale in ((low_x, high_x, width_pt, self.px_per_pt[0]), (low_y, high_y, height_pt, self.px_per_pt[1])):
             first = max(0, int(np.ceil(-low * scale - OFF_LATTICE_PX)))
             last = min(round((high - low) * scale), int(np.floor((end - low) * scale + OFF_LATTICE_PX)))
             if last - first < 1:
                 return None
             sides.append((low + first / scale, low + last / scale))
-        return Bitmap(
-            left=sides[0][0], right=sides[0][1], top=sides[1][0], bottom=sides[1][1], px_per_pt=self.px_per_pt
-        )  # fmt: skip
+        return sides[0][0], sides[1][0], sides[0][1], sides[1][1]
+
+    def part_views(self):
+        """[(number of the image, x px, y px, width px, height px, scale, shift)] of every strip, as of `native_view`."""
+        found = []
+        for number, left, top, right, bottom in self.parts:
+            part = Bitmap(left=left, top=top, right=right, bottom=bottom, px_per_pt=self.px_per_pt, parts=())
+            place = round((left - self.left) * self.px_per_pt[0]), round((top - self.top) * self.px_per_pt[1])
+            found.append((number, *place, *part.size, *native_view(part)))
+        return found
 
 
 def bitmaps_of(page):
     """The upright bitmaps of a `VectorPage` in display points, strips of one scan joined, largest first."""
     found = []
-    for image in page.images:
-        bitmap = _upright(image)
+    for number, image in enumerate(page.images):
+        bitmap = _upright(image, number)
         if bitmap is None:
             continue
         for k, other in enumerate(found):
@@ -84,7 +100,7 @@ def native_view(bitmap):
     return tuple(scale), tuple(shift)
 
 
-def _upright(image):
+def _upright(image, number):
     """A `Bitmap` of one image whose sides are along the page's, turned by quarters or not; else None."""
     m = image.matrix[:, :2]
     x, y = np.abs(m)
@@ -97,7 +113,10 @@ def _upright(image):
     corners = image.matrix @ np.array([[0, 1, 0, 1], [0, 0, 1, 1], [1, 1, 1, 1]])
     left, top = corners.min(axis=1)
     right, bottom = corners.max(axis=1)
-    return Bitmap(left=left, top=top, right=right, bottom=bottom, px_per_pt=(across / wide, down / high))
+    return Bitmap(
+        left=left, top=top, right=right, bottom=bottom, px_per_pt=(across / wide, down / high),
+        parts=((number, left, top, right, bottom),),
+    )  # fmt: skip
 
 
 def _joined(a, b):
@@ -111,5 +130,5 @@ def _joined(a, b):
         return None
     return Bitmap(
         left=min(a.left, b.left), top=min(a.top, b.top), right=max(a.right, b.right), bottom=max(a.bottom, b.bottom),
-        px_per_pt=a.px_per_pt,
+        px_per_pt=a.px_per_pt, parts=a.parts + b.parts,
     )  # fmt: skip

@@ -17,7 +17,7 @@ __all__ = ["VectorImage", "VectorPage", "VectorPath", "VectorText", "collect_obj
 MAX_SEGMENTS = 300_000  # about 1.5 s; a page above it is a map or a drawing, read from its pixels
 MAX_OBJECTS = 60_000
 MAX_POINTS = 3_000_000  # after flattening
-COLLECT_SECONDS = 6.0
+COLLECT_SECONDS = 4.0
 MAX_DEPTH = 12  # of forms within forms
 FLAT_PT = 0.002  # farthest that a flattened curve strays from the true one
 MAX_STEPS = 128
@@ -110,12 +110,16 @@ class _Budget:
 
 
 def collect_objects(page, view):
-    """The paths and images of an open page as a `VectorPage` in display points (texts: `_pdf_text`)."""
+    """The paths and images of an open page as a `VectorPage` in display points (texts: `_pdf_text`).
+
+    Also the engine's own handles of the images, in the same order; they die with the page.
+    """
     import pypdfium2.raw as raw
 
     collector = _Collector(raw, page)
     whole = collector.walk(raw.FPDFPage_CountObjects(page), page, raw.FPDFPage_GetObject, view.matrix, (), 0)
-    return VectorPage(paths=tuple(collector.paths), images=tuple(collector.images), whole=whole)
+    drawn = VectorPage(paths=tuple(collector.paths), images=tuple(collector.images), whole=whole)
+    return drawn, collector.image_items
 
 
 def moved(page, matrix):
@@ -169,7 +173,7 @@ class _Collector:
     def __init__(self, raw, page):
         self.raw, self.page = raw, page
         self.budget = _Budget()
-        self.paths, self.images, self.clips = [], [], {}
+        self.paths, self.images, self.image_items, self.clips = [], [], [], {}
 
     def walk(self, count, parent, get, matrix, clips, depth):
         """Take what is on a page or in a form; False when the budget ran out."""
@@ -209,6 +213,7 @@ class _Collector:
         place = _chain(matrix, self._matrix(item))
         if np.isfinite(place).all() and width.value and height.value:
             self.images.append(VectorImage(matrix=place, width=width.value, height=height.value))
+            self.image_items.append(item)
 
     def _take_path(self, item, n_segments, matrix, clips):
         raw = self.raw

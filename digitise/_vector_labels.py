@@ -8,6 +8,7 @@ import re
 
 import numpy as np
 
+from ._rim_vote import vote_rim
 from ._vector_lines import looks_of
 from .labels import Label, Labels
 
@@ -18,11 +19,14 @@ NUMBER = re.compile(r"([-+]?)(\d{1,3}(?:[.,]\d{1,2})?)\s*(\u00b0|deg|dB[id]?)?",
 UNIT = re.compile(r"(?<![A-Za-z])dB([id]?)(?![A-Za-z])", re.IGNORECASE)
 FAR_RHO, FAR_NUMBER_RHO = 1.75, 1.45
 RIM_FROM_RHO = 0.97
-RIM_DEG = 7.0  # how far a rim label's middle may stand off its bearing
+PLAIN_ODDS = 0.8  # of a number without a degree sign to be a bearing
 RIM_SPREAD = 0.15  # rho
 LEAST_RIM = 3
 RING_TO_RHO = 1.12
 ROW_RHO = 0.1  # how far a ring label may stand off its row
+FAR_SHIFT, SAFE_SHIFT = 0.6, 0.34  # of the gap between rings, that labels may stand off theirs
+RIVAL_SHARE = 0.05  # of that gap, by which another naming of the rings must fit worse
+ANCHORS = [(0, 0), *((a, b) for a in (-1, 0, 1) for b in (-1, 0, 1) if a or b)]  # the middle first
 LEGEND_EM = 4.0  # between a sample line and its name
 SAMPLE_EM = 12.0  # the longest sample line
 
@@ -38,7 +42,7 @@ def place_texts(page, grid, names):
                 value = -value
             near.append((text, rho, plane, value, unit))
     rim = _rim(near)
-    ring = _row([k for k in range(len(near)) if k not in rim and _may_be_level(near[k])], near)
+    ring, safe = _row([k for k in range(len(near)) if k not in rim and _may_be_level(near[k])], near, grid)
     found = []
     for k, (text, rho, plane, value, unit) in enumerate(near):
         role = "rim" if k in rim else "ring" if k in ring else _other_role(text, rho, plane, value, names)
@@ -46,9 +50,10 @@ def place_texts(page, grid, names):
             Label(
                 text=text.text, value=value, unit=unit, x_px=text.x, y_px=text.y, w_px=text.w, h_px=text.h, rho=rho,
                 plane_deg=plane, confidence=1.0, role=role, angle_deg=text.angle_deg,
+                readings=((value, 1.0),) if role in ("ring", "rim") else (), ring_rho=ring.get(k, float("nan")),
             )
         )  # fmt: skip
-    return Labels(found=tuple(found), engine=ENGINE)
+    return Labels(found=tuple(found), engine=ENGINE, ring_safe=safe)
 
 
 def legend_names(page, looks):
@@ -116,29 +121,21 @@ def _rim(near):
     """Indices of the bearings round the rim: those that agree best on one zero and one turn."""
     chosen = [k for k, (_, rho, _, value, unit) in enumerate(near)
               if value is not None and unit in ("", "deg") and abs(value) <= 360 and (rho >= RIM_FROM_RHO or unit == "deg")]  # fmt: skip
-    if len(chosen) < LEAST_RIM:
+    odds = [1.0 if near[k][4] == "deg" else PLAIN_ODDS for k in chosen]
+    vote = vote_rim([near[k][2] for k in chosen], [((near[k][3], own),) for k, own in zip(chosen, odds, strict=True)])
+    if vote is None or len({value % 360 for value in vote.values}) < LEAST_RIM:
         return set()
-    plane = np.array([near[k][2] for k in chosen])
-    value = np.array([near[k][3] for k in chosen])
-    marked = np.array([near[k][4] == "deg" for k in chosen])
-    best = np.zeros(len(chosen), bool)
-    for sign in (1, -1):
-        zero = plane - sign * value
-        for candidate in zero:
-            agree = np.abs((zero - candidate + 180) % 360 - 180) <= RIM_DEG
-            if (agree.sum(), (agree & marked).sum()) > (best.sum(), (best & marked).sum()):
-                best = agree
-    rho = np.array([near[k][1] for k in chosen])
-    if len({round(v) % 360 for v in value[best]}) < LEAST_RIM:
-        return set()
-    middle = np.median(rho[best & marked] if (best & marked).any() else rho[best])
-    best &= np.abs(rho - middle) <= RIM_SPREAD
+    best = [chosen[k] for k in vote.members]
+    marked = [k for k in best if near[k][4] == "deg"]
+    middle = float(np.median([near[k][1] for k in marked or best]))
     rim = {}
-    for k in np.flatnonzero(best):
-        key = value[k] % 360, round(plane[k] / 20)
-        if key not in rim or abs(rho[k] - middle) < abs(rho[rim[key]] - middle):
+    for k in best:
+        rho, plane, value = near[k][1:4]
+        key = value % 360, round(plane / 20)
+        off = abs(rho - middle)
+        if off <= RIM_SPREAD and (key not in rim or off < abs(near[rim[key]][1] - middle)):
             rim[key] = k  # a ring level 0 may stand beside the bearing 0
-    return {chosen[k] for k in rim.values()}
+    return set(rim.values())
 
 
 def _may_be_level(item):
@@ -146,20 +143,68 @@ def _may_be_level(item):
     return value is not None and unit != "deg" and rho <= RING_TO_RHO
 
 
-def _row(chosen, near):
-    """The members of the longest row of levels from the centre out, and of other rows with the same levels."""
+def _row(chosen, near, grid):
+    """({index: radius of the ring that it names}, safe): the levels in a row from the centre out, and their doubles.
+
+    Labels are printed at one offset from their rings, by their middle, an end or a corner: the place that keeps the
+    steadiest and smallest offset is taken. Safe is whether they stand clearly nearer to their rings than to the next,
+    and no other offset names other rings about as well.
+    """
     best = []
     for k in chosen:
-        angle = np.radians(near[k][2])
-        row = []
-        for j in chosen:
-            rho, turn = near[j][1], np.radians(near[j][2]) - angle
-            if rho * np.cos(turn) > -ROW_RHO and abs(rho * np.sin(turn)) <= ROW_RHO:
-                row.append(j)
+        row = [j for j in chosen if _beside(near[j], near[k])]
         if len({near[j][3] for j in row}) > len({near[j][3] for j in best}):
             best = row
-    levels = {(near[j][3], round(near[j][1], 1)) for j in best}
-    return set(best) | {k for k in chosen if (near[k][3], round(near[k][1], 1)) in levels}
+    if not best:
+        return {}, True
+    rings = np.append(grid.ring_rho, 0.0)  # the centre may have a label too
+    gap = float(np.abs(np.diff(rings)).min())
+    along = np.radians(np.median([(near[k][2] - near[best[0]][2] + 180) % 360 - 180 for k in best]) + near[best[0]][2])
+    values = [near[k][3] for k in best]
+    fits = sorted(
+        (fit for anchor in ANCHORS for fit in _fits(_reach(best, near, grid, along, anchor), values, rings, gap)),
+        key=lambda fit: fit[0],
+    )
+    cost, shift, nearest = fits[0]
+    rival = next((fit[0] for fit in fits if not np.array_equal(fit[2], nearest)), np.inf)
+    named = {j: float(rings[n]) for j, n in zip(best, nearest, strict=True)}
+    ring_of = {near[j][3]: ring for j, ring in named.items()}
+    for k in chosen:
+        ring = ring_of.get(near[k][3])
+        if ring is not None and abs(near[k][1] - ring) < gap:
+            named.setdefault(k, ring)
+    return named, bool(abs(shift) <= SAFE_SHIFT * gap and rival > 2 * cost + RIVAL_SHARE * gap)
+
+
+def _beside(item, other):
+    """Whether a label stands on the ray from the centre through another."""
+    rho, turn = item[1], np.radians(item[2] - other[2])
+    return rho * np.cos(turn) > -ROW_RHO and abs(rho * np.sin(turn)) <= ROW_RHO
+
+
+def _reach(row, near, grid, along, anchor):
+    """(n,) how far out the labels of a row stand, by a point of their boxes: (across, down) in half sizes."""
+    reach = []
+    for k in row:
+        text = near[k][0]
+        turn = np.radians(text.angle_deg)
+        s, t = anchor[0] * text.w / 2, anchor[1] * text.h / 2
+        rho, plane = grid.to_plane(text.x + s * np.cos(turn) - t * np.sin(turn), text.y + s * np.sin(turn) + t * np.cos(turn))
+        reach.append(float(rho * np.cos(np.radians(plane) - along)))
+    return np.array(reach)
+
+
+def _fits(reach, values, rings, gap):
+    """[(cost, offset, indices of the rings)] of labels that all stand at one offset from their rings."""
+    fits = []
+    for shift in np.unique(np.round((reach[:, None] - rings[None]).ravel(), 4)):
+        if abs(shift) > FAR_SHIFT * gap:
+            continue
+        off = np.abs(reach[:, None] - shift - rings[None])
+        nearest = off.argmin(axis=1)
+        doubles = len(set(zip(values, nearest.tolist(), strict=True))) - len(set(nearest.tolist()))
+        fits.append((float(off.min(axis=1).mean() + 0.1 * abs(shift) + gap * doubles), float(shift), nearest))
+    return fits or [(np.inf, 0.0, np.abs(reach[:, None] - rings[None]).argmin(axis=1))]
 
 
 def _other_role(text, rho, plane, value, names):

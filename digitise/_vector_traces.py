@@ -8,11 +8,12 @@ from ._vector_course import at_bearings
 from ._vector_evidence import course_of, find_paper, is_trace, shown_ink, shows
 from ._vector_lines import find_chains
 
-__all__ = ["drawn_traces"]
+__all__ = ["MANY_BREAKS", "drawn_traces"]
 
 SAME_DEG = 2.0  # step of the comparison of two lines
 SAME_RHO = 0.003
 SHARED_TURN = 0.1  # bearings that two pieces of one trace may share
+MANY_BREAKS = 8  # of the pen: fewer are no dashes
 DOT_LENGTH = 2.2  # line widths: longer strokes are dashes
 DASH_LENGTH = 0.15  # outer radii: longer ones are lines
 
@@ -112,7 +113,7 @@ def _dash(chain, outer_px):
         on = chain.look.dash[::2] if len(chain.look.dash) > 1 else chain.look.dash
         return "dotted" if max(on) <= DOT_LENGTH * width else "dashed"
     up = np.isnan(chain.points[:, 0])
-    if up.sum() < 8:
+    if up.sum() < MANY_BREAKS:
         return "solid"
     strokes = [part[~np.isnan(part[:, 0])] for part in np.split(chain.points, np.flatnonzero(up))]
     usual = np.median([np.hypot(*np.diff(part, axis=0).T).sum() for part in strokes if len(part)])

@@ -11,7 +11,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from ._pdf_file import opened_document, opened_page, page_view, refusal, render_exact, render_whole
+from ._pdf_file import hidden_objects, opened_document, opened_page, page_view, render_exact, render_whole
 from ._pdf_native import bitmaps_of, native_view
 from ._pdf_objects import VectorPage, collect_objects, moved
 from ._pdf_text import collect_texts
@@ -48,9 +48,9 @@ def open_pdf_page(path, *, page=None):
     number = 1 if page is None else page
     with opened_document(path, data) as document, opened_page(document, number, path) as opened:
         view = page_view(opened, path)
-        drawn, notes = _objects(opened, view)
+        drawn, items, notes = _objects(opened, view)
         n_pages = len(document)
-        rgb, vector, made = _pixels(opened, view, drawn, path)
+        rgb, vector, made = _pixels(opened, view, drawn, items, path)
     notes = (f"page {number} of {n_pages}", *notes, *made)
     return Picture(
         rgb=rgb, path=path, sha256=hashlib.sha256(data).hexdigest(), width=rgb.shape[1], height=rgb.shape[0],
@@ -92,17 +92,17 @@ def _thumbnail(document, number, path, size_px):
 
 
 def _objects(page, view):
-    """What is drawn on the page, in display points, and a note where it could not be taken whole."""
+    """What is drawn on the page, in display points, its images' handles, and a note where it was not taken whole."""
     try:
-        drawn = collect_objects(page, view)
+        drawn, items = collect_objects(page, view)
         if drawn.whole:
             drawn = replace(drawn, texts=collect_texts(page, view))
     except Exception as error:  # an odd object must not keep the page from being seen
-        return VectorPage(whole=False), (f"drawn objects not taken ({type(error).__name__})",)
-    return drawn, () if drawn.whole else ("too many drawn objects: read from pixels alone",)
+        return VectorPage(whole=False), [], (f"drawn objects not taken ({type(error).__name__})",)
+    return drawn, items, () if drawn.whole else ("too many drawn objects: read from pixels alone",)
 
 
-def _pixels(page, view, drawn, path):
+def _pixels(page, view, drawn, items, path):
     """(rgb, VectorPage or None, notes) of an open page by the way that suits it."""
     radii = _chart_radii(drawn)
     if radii:
@@ -111,10 +111,10 @@ def _pixels(page, view, drawn, path):
     if not bitmaps:
         return _rendered(page, view, drawn, path, PLAIN_DPI / POINTS_PER_INCH)
     if _area(bitmaps[0]) >= SCAN_COVER * view.width_pt * view.height_pt:
-        return _embedded(page, view, drawn, bitmaps[:1], path)
+        return _embedded(page, view, drawn, items, bitmaps[:1], path)
     plain = _rendered(page, view, drawn, path, PLAIN_DPI / POINTS_PER_INCH)
     holders = _chart_bitmaps(plain[0], plain[1].px_per_pt, bitmaps[:MAX_BITMAPS])
-    return plain if holders is None else _embedded(page, view, drawn, holders, path)
+    return plain if holders is None else _embedded(page, view, drawn, items, holders, path)
 
 
 def _chart_radii(drawn):
@@ -148,7 +148,7 @@ def _even_size(view, scale):
     return int(width[best]), int(height[best])
 
 
-def _embedded(page, view, drawn, bitmaps, path):
+def _embedded(page, view, drawn, items, bitmaps, path):
     """Bitmaps of the page at their own px; several are stacked in reading order."""
     parts, total = [], 0.0
     for bitmap in sorted(bitmaps, key=lambda item: (round(item.top / 20), item.left)):
@@ -157,8 +157,7 @@ def _embedded(page, view, drawn, bitmaps, path):
         if total > MAX_MEGAPIXELS or max(width, height) > MAX_SIDE_PX:
             rgb, vector, notes = _rendered(page, view, drawn, path, max(bitmap.px_per_pt))
             return rgb, vector, (*notes, "bitmaps too large for their own px")
-        scale, shift = native_view(bitmap)
-        parts.append((render_exact(page, scale, shift, (width, height)), scale, shift))
+        parts.append((_native(page, bitmap, items), *native_view(bitmap)))
     rgb, scale, shift = parts[0]
     if len(parts) > 1:
         said = f"{len(parts)} bitmaps of the page at their own px, stacked"
@@ -168,6 +167,21 @@ def _embedded(page, view, drawn, bitmaps, path):
         vector = moved(drawn, [[scale[0], 0, shift[0] - 0.5], [0, scale[1], shift[1] - 0.5]])
     vector = replace(vector or VectorPage(whole=False), embedded=True)
     return rgb, vector, (f"the page's bitmap at its own {rgb.shape[1]} x {rgb.shape[0]} px",)
+
+
+def _native(page, bitmap, items):
+    """(h, w, 3) of a bitmap's part of the page at its own px.
+
+    Each strip is drawn alone: the engine rounds a bitmap's edges outward, over its neighbour's first row.
+    """
+    width, height = bitmap.size
+    sheet = np.full((height, width, 3), 255, np.uint8)
+    own = [part[0] for part in bitmap.parts]
+    for number, x, y, w, h, scale, shift in bitmap.part_views():
+        with hidden_objects([items[k] for k in own if k != number]):
+            drawn = render_exact(page, scale, shift, (w, h))
+        sheet[y : y + h, x : x + w] = drawn[: height - y, : width - x]
+    return sheet
 
 
 def _stacked(parts):

@@ -12,7 +12,7 @@ import numpy as np
 from ._vector_course import at_bearings
 from ._vector_grid import find_drawn_grids
 from ._vector_labels import legend_names, place_texts
-from ._vector_traces import drawn_traces
+from ._vector_traces import MANY_BREAKS, drawn_traces
 from .find import Box, _reading_order, box_around
 from .follow import SAMPLES_PER_DEG, Trace
 from .frozen import lock_arrays
@@ -22,6 +22,7 @@ from .labels import Labels
 __all__ = ["VectorChart", "VectorTrace", "find_vector_charts", "followed", "page_labels", "trace_at"]
 
 PLACE_PT = 0.004  # standard uncertainty of a drawn point on paper: rounding to 0.01, over the root of 12, and to spare
+NEAR_CENTRE_RHO = 0.25
 BRIDGE_SHARE = 0.05  # of a bridged jump's length, as the standard uncertainty of what lies between
 
 
@@ -111,18 +112,25 @@ def followed(trace, grid, *, covers=()):
     """
     plane = np.arange(360 * SAMPLES_PER_DEG) / SAMPLES_PER_DEG
     line = at_bearings(_uncovered(trace, grid, covers), trace.plane_deg, plane, vertex=trace.vertex)
-    has = np.isfinite(line.rho)
-    state = np.where(has, np.where(line.jump_rho > 0, "bridged", "seen"), "floor" if line.centre else "missing")
     outer_px = grid.outer_px
-    sag_px = np.nan_to_num(line.sag_rho) * outer_px
+    floor_px = max(0.5 * trace.width_px, 1.0)
+    drawn = np.isfinite(line.rho)
+    jumped = drawn & (line.jump_rho > 0)
+    # A solid line that stops near the centre and comes back has been below it; a dash gap is only a gap.
+    strokes = trace.dash != "solid" and np.isnan(trace.rho).sum() >= MANY_BREAKS
+    below = jumped & (line.rho < NEAR_CENTRE_RHO) & (not strokes)
+    floor = below | (drawn & (line.rho * outer_px <= floor_px)) | (~drawn & line.centre)
+    state = np.select([floor, jumped, drawn], ["floor", "bridged", "seen"], "missing")
+    has = drawn & ~floor
+    sag_px = np.where(has, line.sag_rho, 0.0) * outer_px
     return Trace(
         plane_deg=plane,
-        rho=np.where(has, line.rho, 0.0 if line.centre else np.nan),
+        rho=np.where(has, line.rho, np.where(floor, 0.0, np.nan)),
         # The pattern may run straight from point to point or bend between them: evenly likely over the sag.
         u_px=np.hypot(trace.place_u_px, sag_px / np.sqrt(3)),
-        slope=np.nan_to_num(line.slope),
+        u_bridge_px=np.where(floor, 0.5 * floor_px, np.where(jumped, BRIDGE_SHARE * outer_px * line.jump_rho, 0.0)),
+        slope=np.where(has, line.slope, 0.0),
         radial_share=np.where(has, line.radial_share, 1.0),
-        u_rho_bridge=BRIDGE_SHARE * np.nan_to_num(line.jump_rho),
         state=state,
         clear=state == "seen",
         width_px=trace.width_px,
