@@ -149,6 +149,9 @@ def _fill_cover(layer, sheet):
     around = counts[max(k - 1, 2) : k + 2]
     if around.sum() < 0.02 * inside.sum() or counts[k] < 6 * usual:
         return 0.0
+    # A fill stands out on both sides; the skirts of blurred lines only fall from zero coverage.
+    if counts[1:k].min(initial=counts[k]) > 0.4 * counts[k] or counts[k + 1 : k + 12].min() > 0.4 * counts[k]:
+        return 0.0
     near = inside & (layer.cover > 0.02 * (k - 1)) & (layer.cover < 0.02 * (k + 2))
     return float(np.median(layer.cover[near]))
 
