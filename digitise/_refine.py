@@ -68,8 +68,8 @@ def refine_course(x, y, cover, hidden, from_centre_px, *, fill=0.0):
         moved += shift
     x, y, gap = _bridge(x, y, kind)
     signs = _signs(x, y, nx, ny, moved, asymmetry, excess, hidden)
-    near_centre = np.minimum(width / np.maximum(from_centre_px, 1.0), 0.5)
-    u = np.sqrt(np.column_stack([signs, near_centre]) ** 2 @ np.square(PROFILE_WEIGHTS))
+    near_centre = np.minimum(width / np.maximum(from_centre_px, 1.0), 3.0)
+    u = np.sqrt(np.column_stack([signs, np.minimum(near_centre, 0.5)]) ** 2 @ np.square(PROFILE_WEIGHTS))
     merged = np.column_stack([kind == 1, np.minimum(gap, LONGEST_GAP_PX), near_centre])
     u_bridge = np.where(kind > 0, np.sqrt(merged**2 @ np.square(BRIDGE_WEIGHTS)), 0.0)
     return Course(x=x, y=y, nx=nx, ny=ny, u_px=u, u_bridge_px=u_bridge, kind=kind, width_px=drawn)
