@@ -1,8 +1,8 @@
-"""The PDF engine behind a few safe calls: open a document, know a page's size, make pixels of it within bounds.
+"""The PDF engine behind a few safe calls: open a document, know a page's size, make pixels within bounds.
 
-The engine (pdfium) is not safe for threads, so every use holds one lock. Coordinates: a page's own units are points
-with y up; "display points" are what a viewer shows at 72 dpi: the crop box only, turned upright, y down, origin at
-the upper left corner.
+The engine (pdfium) is not safe for threads, so every use holds one lock. Coordinates: a page's own units are
+points with y up; "display points" are what a viewer shows at 72 dpi: the crop box only, turned upright, y
+down, origin at the upper left corner.
 """
 
 import contextlib
@@ -16,10 +16,20 @@ import numpy as np
 from .exceptions import PictureError
 
 __all__ = [
-    "PageView", "hidden_objects", "opened_document", "opened_page", "page_view", "refusal", "render_exact", "render_whole",
-]  # fmt: skip
+    "PageView",
+    "hidden_objects",
+    "opened_document",
+    "opened_page",
+    "page_view",
+    "refusal",
+    "render_exact",
+    "render_whole",
+]
 
-MIN_SIDE_PT, MAX_SIDE_PT = 9.0, 20_000.0  # a chart needs some paper; 14 400 is the format's own bound (ISO 32000-1, C.2)
+MIN_SIDE_PT, MAX_SIDE_PT = (
+    9.0,
+    20_000.0,
+)  # a chart needs some paper; 14 400 is the format's own bound (ISO 32000-1, C.2)
 RENDER_SECONDS = 20.0  # a page that takes longer is refused
 PROBE = 1000  # device px that the display matrix is measured with
 PASSWORD_CODES = (4, 5)  # pdfium's FPDF_ERR_PASSWORD, FPDF_ERR_SECURITY
@@ -68,7 +78,9 @@ def opened_page(document, number, path):
     try:
         page = document[number - 1]
     except pypdfium2.PdfiumError as error:
-        raise refusal(path, f"page {number} is broken ({error})", "give another --page, or save the PDF again") from None
+        raise refusal(
+            path, f"page {number} is broken ({error})", "give another --page, or save the PDF again"
+        ) from None
     try:
         yield page
     finally:
@@ -77,7 +89,7 @@ def opened_page(document, number, path):
 
 def page_view(page, path):
     """The `PageView` of an open page; refuses sizes that no page has."""
-    import pypdfium2.raw as raw
+    from pypdfium2 import raw
 
     width, height = (float(v) for v in page.get_size())
     sides = (width, height)
@@ -102,7 +114,7 @@ def _to_page(raw, page, x, y):
 
 def render_whole(page, width_px, height_px, path, *, seconds=None):
     """(height, width, 3) uint8 RGB of a whole page on white, given up and refused after so many seconds."""
-    import pypdfium2.raw as raw
+    from pypdfium2 import raw
 
     seconds = RENDER_SECONDS if seconds is None else seconds
     bitmap = _white_bitmap(width_px, height_px)
@@ -119,27 +131,31 @@ def render_whole(page, width_px, height_px, path, *, seconds=None):
         status = raw.FPDF_RenderPage_Continue(page, pause)
     raw.FPDF_RenderPage_Close(page)
     if status == raw.FPDF_RENDER_TOBECONTINUED:
-        raise refusal(path, f"the page took longer than {seconds:g} s to draw", "save the chart's part of it as PNG")
+        raise refusal(
+            path, f"the page took longer than {seconds:g} s to draw", "save the chart's part of it as PNG"
+        )
     if status != raw.FPDF_RENDER_DONE:
         raise refusal(path, "the page could not be drawn", "save it as PNG")
     return _rgb(bitmap)
 
 
 def render_exact(page, scale, shift, size):
-    """(height, width, 3) uint8 RGB: display points times `scale` (x, y) plus `shift` (x, y) are outer px corners."""
-    import pypdfium2.raw as raw
+    """(height, width, 3) uint8 RGB: display points times `scale` plus `shift` (x, y) are outer px corners."""
+    from pypdfium2 import raw
 
     width, height = size
     bitmap = _white_bitmap(width, height)
     matrix = raw.FS_MATRIX(scale[0], 0, 0, scale[1], shift[0], shift[1])
-    raw.FPDF_RenderPageBitmapWithMatrix(bitmap, page, matrix, raw.FS_RECTF(0, 0, width, height), raw.FPDF_ANNOT)
+    raw.FPDF_RenderPageBitmapWithMatrix(
+        bitmap, page, matrix, raw.FS_RECTF(0, 0, width, height), raw.FPDF_ANNOT
+    )
     return _rgb(bitmap)
 
 
 @contextlib.contextmanager
 def hidden_objects(items):
     """Page objects, by the engine's handles, left out of what is drawn for a while."""
-    import pypdfium2.raw as raw
+    from pypdfium2 import raw
 
     for item in items:
         raw.FPDFPageObj_SetIsActive(item, False)
@@ -152,7 +168,7 @@ def hidden_objects(items):
 
 def _white_bitmap(width, height):
     import pypdfium2
-    import pypdfium2.raw as raw
+    from pypdfium2 import raw
 
     bitmap = pypdfium2.PdfBitmap.new_native(width, height, raw.FPDFBitmap_BGR)
     raw.FPDFBitmap_FillRect(bitmap, 0, 0, width, height, 0xFFFFFFFF)

@@ -1,8 +1,8 @@
 """Bitmaps that were placed on a page, and the view that shows one px of theirs as one px of the picture.
 
-A scan may be cut into strips, and a chart's bitmap may have text laid over it. So it is not the bitmap that is taken,
-but the page, drawn with the bitmap's own px as the unit: strips join, what lies over it is there, and since px fall
-on px nothing is resampled.
+A scan may be cut into strips, and a chart's bitmap may have text laid over it. So it is not the bitmap that
+is taken, but the page, drawn with the bitmap's own px as the unit: strips join, what lies over it is there,
+and since px fall on px nothing is resampled.
 """
 
 from dataclasses import dataclass
@@ -46,14 +46,24 @@ class Bitmap:
         sides = self._cut((self.left, self.top, self.right, self.bottom), width_pt, height_pt)
         if sides is None:
             return None
-        parts = [(part[0], *cut) for part in self.parts if (cut := self._cut(part[1:], width_pt, height_pt)) is not None]
-        return Bitmap(**dict(zip(("left", "top", "right", "bottom"), sides, strict=True)), px_per_pt=self.px_per_pt,
-                      parts=tuple(parts))  # fmt: skip
+        parts = [
+            (part[0], *cut)
+            for part in self.parts
+            if (cut := self._cut(part[1:], width_pt, height_pt)) is not None
+        ]
+        return Bitmap(
+            **dict(zip(("left", "top", "right", "bottom"), sides, strict=True)),
+            px_per_pt=self.px_per_pt,
+            parts=tuple(parts),
+        )
 
     def _cut(self, box, width_pt, height_pt):
         low_x, low_y, high_x, high_y = box
         sides = []
-        for low, high, end, scale in ((low_x, high_x, width_pt, self.px_per_pt[0]), (low_y, high_y, height_pt, self.px_per_pt[1])):
+        for low, high, end, scale in (
+            (low_x, high_x, width_pt, self.px_per_pt[0]),
+            (low_y, high_y, height_pt, self.px_per_pt[1]),
+        ):
             first = max(0, int(np.ceil(-low * scale - OFF_LATTICE_PX)))
             last = min(round((high - low) * scale), int(np.floor((end - low) * scale + OFF_LATTICE_PX)))
             if last - first < 1:
@@ -62,7 +72,7 @@ class Bitmap:
         return sides[0][0], sides[1][0], sides[0][1], sides[1][1]
 
     def part_views(self):
-        """[(number of the image, x px, y px, width px, height px, scale, shift)] of every strip, as of `native_view`."""
+        """[(image's number, x, y, width, height px, scale, shift)] of every strip, as of `native_view`."""
         found = []
         for number, left, top, right, bottom in self.parts:
             part = Bitmap(left=left, top=top, right=right, bottom=bottom, px_per_pt=self.px_per_pt, parts=())
@@ -90,7 +100,7 @@ def bitmaps_of(page):
 
 
 def native_view(bitmap):
-    """(scale, shift), each (x, y): display points times scale plus shift are the outer px corners of the bitmap."""
+    """(scale, shift), each (x, y): display points times scale plus shift are the bitmap's outer corners."""
     scale, shift = [], []
     for low, high, n in zip(
         (bitmap.left, bitmap.top), (bitmap.right, bitmap.bottom), bitmap.size, strict=True
@@ -114,9 +124,13 @@ def _upright(image, number):
     left, top = corners.min(axis=1)
     right, bottom = corners.max(axis=1)
     return Bitmap(
-        left=left, top=top, right=right, bottom=bottom, px_per_pt=(across / wide, down / high),
+        left=left,
+        top=top,
+        right=right,
+        bottom=bottom,
+        px_per_pt=(across / wide, down / high),
         parts=((number, left, top, right, bottom),),
-    )  # fmt: skip
+    )
 
 
 def _joined(a, b):
@@ -125,10 +139,16 @@ def _joined(a, b):
         return None
     scale = np.array(a.px_per_pt)
     off = (np.array([b.left - a.left, b.top - a.top])) * scale
-    gap = (np.array([max(a.left, b.left) - min(a.right, b.right), max(a.top, b.top) - min(a.bottom, b.bottom)])) * scale
+    gap = (
+        np.array([max(a.left, b.left) - min(a.right, b.right), max(a.top, b.top) - min(a.bottom, b.bottom)])
+    ) * scale
     if np.abs(off - np.round(off)).max() > OFF_LATTICE_PX or gap.max() > 1:
         return None
     return Bitmap(
-        left=min(a.left, b.left), top=min(a.top, b.top), right=max(a.right, b.right), bottom=max(a.bottom, b.bottom),
-        px_per_pt=a.px_per_pt, parts=a.parts + b.parts,
-    )  # fmt: skip
+        left=min(a.left, b.left),
+        top=min(a.top, b.top),
+        right=max(a.right, b.right),
+        bottom=max(a.bottom, b.bottom),
+        px_per_pt=a.px_per_pt,
+        parts=a.parts + b.parts,
+    )

@@ -1,16 +1,20 @@
-"""A page's drawn objects as our own frozen classes, in display points: lines, texts and images with exact places.
+"""A page's drawn objects as frozen classes, in display points: lines, texts and images, exactly placed.
 
-Curves are flattened finely; which points the drawing names itself ("vertices") is kept, since those lie on the curve
-that was meant, while the points between follow the drawing program's own approximation (a circle of four Bezier arcs
-is up to 0.027 % too large between its quarter points). Odd objects are left out, never a reason to stop.
+Curves are flattened finely; which points the drawing names itself ("vertices") is kept, since those lie on
+the curve that was meant, while the points between follow the drawing program's own approximation (a circle of
+four Bezier arcs is up to 0.027 % too large between its quarter points). Odd objects are left out, never a
+reason to stop.
 """
 
 import ctypes
+import itertools
 import math
 import time
 from dataclasses import dataclass, field, replace
 
 import numpy as np
+
+from ._pdf_curves import CURVE, MOVE, flat_line
 
 __all__ = ["VectorImage", "VectorPage", "VectorPath", "VectorText", "collect_objects", "moved"]
 
@@ -19,9 +23,6 @@ MAX_OBJECTS = 60_000
 MAX_POINTS = 3_000_000  # after flattening
 COLLECT_SECONDS = 4.0
 MAX_DEPTH = 12  # of forms within forms
-FLAT_PT = 0.002  # farthest that a flattened curve strays from the true one
-MAX_STEPS = 128
-LINE, BEZIER, MOVE = 0, 1, 2  # ISO 32000-1, table 59, as the engine counts them
 TEXT, PATH, IMAGE, FORM = 1, 2, 3, 5
 
 
@@ -114,7 +115,7 @@ def collect_objects(page, view):
 
     Also the engine's own handles of the images, in the same order; they die with the page.
     """
-    import pypdfium2.raw as raw
+    from pypdfium2 import raw
 
     collector = _Collector(raw, page)
     whole = collector.walk(raw.FPDFPage_CountObjects(page), page, raw.FPDFPage_GetObject, view.matrix, (), 0)
@@ -154,10 +155,15 @@ def moved(page, matrix):
         x, y = matrix @ (text.x, text.y, 1.0)
         texts.append(
             replace(
-                text, x=float(x), y=float(y), w=text.w * size, h=text.h * size, size=text.size * size,
+                text,
+                x=float(x),
+                y=float(y),
+                w=text.w * size,
+                h=text.h * size,
+                size=text.size * size,
                 angle_deg=text.angle_deg + turn,
             )
-        )  # fmt: skip
+        )
     images = tuple(replace(image, matrix=_chain(matrix, image.matrix)) for image in page.images)
     return replace(page, paths=paths, texts=tuple(texts), images=images, px_per_pt=size)
 
@@ -220,7 +226,9 @@ class _Collector:
         filled, stroked = ctypes.c_int(), ctypes.c_int()
         if n_segments < 2 or not raw.FPDFPath_GetDrawMode(item, filled, stroked):
             return
-        stroke, stroke_alpha = self._colour(item, raw.FPDFPageObj_GetStrokeColor) if stroked.value else (None, 0.0)
+        stroke, stroke_alpha = (
+            self._colour(item, raw.FPDFPageObj_GetStrokeColor) if stroked.value else (None, 0.0)
+        )
         fill, fill_alpha = self._colour(item, raw.FPDFPageObj_GetFillColor) if filled.value else (None, 0.0)
         if stroke is None and fill is None:
             return
@@ -235,11 +243,16 @@ class _Collector:
             VectorPath(
                 runs=tuple(points for points, _ in runs),
                 vertices=tuple(vertex for _, vertex in runs),
-                curved=curved, stroke=stroke, fill=fill, stroke_alpha=stroke_alpha, fill_alpha=fill_alpha,
-                width=max(float(width.value), 0.0) * size, dash=self._dash(item, size),
+                curved=curved,
+                stroke=stroke,
+                fill=fill,
+                stroke_alpha=stroke_alpha,
+                fill_alpha=fill_alpha,
+                width=max(float(width.value), 0.0) * size,
+                dash=self._dash(item, size),
                 clips=(*clips, *self._clips(item, matrix)),
             )
-        )  # fmt: skip
+        )
 
     def _colour(self, item, get):
         """((r, g, b), opacity), or (None, 0) for a pattern, an unknown colour or a clear one."""
@@ -291,11 +304,13 @@ class _Collector:
         return x.value, y.value
 
     def _runs(self, parent, count, get, matrix):
-        """[(points, vertex flags)] of a path's unbroken lines, flattened and placed; and whether curves were met."""
+        """[(points, vertex flags)] of a path's unbroken lines, flat and placed; and whether it has curves."""
         raw = self.raw
         kind_of, point_of, closes = (
-            raw.FPDFPathSegment_GetType, raw.FPDFPathSegment_GetPoint, raw.FPDFPathSegment_GetClose
-        )  # fmt: skip
+            raw.FPDFPathSegment_GetType,
+            raw.FPDFPathSegment_GetPoint,
+            raw.FPDFPathSegment_GetClose,
+        )
         x, y = ctypes.c_float(), ctypes.c_float()
         ref_x, ref_y = ctypes.byref(x), ctypes.byref(y)
         kinds, points, closed = [], [], []
@@ -314,46 +329,10 @@ class _Collector:
         if starts[0] != 0:
             return [], False
         runs = [
-            _flatten(points[a:b], kinds[a:b], closed[b - 1]) for a, b in zip(starts, starts[1:], strict=False) if b - a > 1
+            flat_line(points[a:b], kinds[a:b], closed[b - 1])
+            for a, b in itertools.pairwise(starts)
+            if b - a > 1
         ]
         runs = [run for run in runs if run is not None]
         self.budget.points -= sum(len(flat) for flat, _ in runs)
-        return runs, bool((kinds == BEZIER).any())
-
-
-def _flatten(points, kinds, closed):
-    """(points, vertex flags) of one unbroken line with its curves made fine; None when it has no length."""
-    if (kinds == BEZIER).any():
-        points, vertex = _without_curves(points, kinds)
-    else:
-        vertex = np.ones(len(points), bool)
-    if closed and np.hypot(*(points[-1] - points[0])) > 1e-9:
-        points, vertex = np.vstack([points, points[:1]]), np.append(vertex, True)
-    keep = np.concatenate([[True], np.any(np.diff(points, axis=0) != 0, axis=1)])
-    points, vertex = points[keep], vertex[keep]
-    if len(points) < 2:
-        return None
-    points.setflags(write=False)
-    vertex.setflags(write=False)
-    return points, vertex
-
-
-def _without_curves(points, kinds):
-    """Points and vertex flags with every cubic cut into short chords."""
-    out, flags, k = [points[:1]], [True], 1
-    while k < len(points):
-        if kinds[k] != BEZIER or k + 2 >= len(points):
-            out.append(points[k : k + 1])
-            flags.append(True)
-            k += 1
-            continue
-        p = points[k - 1 : k + 3]
-        bend = max(np.hypot(*(p[0] - 2 * p[1] + p[2])), np.hypot(*(p[1] - 2 * p[2] + p[3])))
-        # A cubic cut into n equal parts strays at most 6 bend / (8 n^2) from its chords (bound on its second derivative).
-        steps = 2 * int(np.clip(math.ceil(math.sqrt(0.75 * bend / FLAT_PT) / 2), 1, MAX_STEPS // 2))
-        t = np.arange(1, steps + 1)[:, None] / steps
-        s = 1 - t
-        out.append(s**3 * p[0] + 3 * s * s * t * p[1] + 3 * s * t * t * p[2] + t**3 * p[3])
-        flags += [j == steps or 2 * j == steps for j in range(1, steps + 1)]
-        k += 3
-    return np.vstack(out), np.array(flags)
+        return runs, bool((kinds == CURVE).any())

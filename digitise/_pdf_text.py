@@ -1,8 +1,8 @@
 """The printed text of a page as words and phrases with exact places, in display points.
 
-The engine gives single letters; they are joined here along their own line, whatever its turn, since a drawing program
-may set "-10" as two objects and a whole row of ring labels as one. Text that is not drawn (the hidden layer of a
-scanned page that was read by a machine) is left out: it is somebody else's reading.
+The engine gives single letters; they are joined here along their own line, whatever its turn, since a drawing
+program may set "-10" as two objects and a whole row of ring labels as one. Text that is not drawn (the hidden
+layer of a scanned page that was read by a machine) is left out: it is somebody else's reading.
 """
 
 import ctypes
@@ -26,7 +26,7 @@ MINUS = "\u2212"
 
 @dataclass(frozen=True, kw_only=True)
 class _Letter:
-    """A letter: its sign, corners of its box along (s) and across (t) its line, the line's turn, the font's size."""
+    """A letter: sign, box along (s) and across (t) its line, the line's turn, the font's size."""
 
     sign: str
     s0: float
@@ -40,7 +40,7 @@ class _Letter:
 
 def collect_texts(page, view):
     """The visible text of an open page as a tuple of `VectorText` in display points."""
-    import pypdfium2.raw as raw
+    from pypdfium2 import raw
 
     text_page = raw.FPDFText_LoadPage(page)
     if not text_page:
@@ -83,7 +83,9 @@ def _letters(raw, text_page, view):
         turn = math.atan2(along[1], along[0])
         turn = round(math.degrees(turn), 2)
         corners = np.array([[a, b] for a in numbers[:2] for b in numbers[2:4]])
-        yield _letter(sign, corners, numbers[4:], turn, raw.FPDFText_GetFontSize(text_page, k) * scale, m, view)
+        yield _letter(
+            sign, corners, numbers[4:], turn, raw.FPDFText_GetFontSize(text_page, k) * scale, m, view
+        )
 
 
 def _letter(sign, corners, origin, turn, size, text_matrix, view):
@@ -93,16 +95,24 @@ def _letter(sign, corners, origin, turn, size, text_matrix, view):
     shift = np.array([[c, s], [-s, c]]) @ view.matrix[:, 2]
     own = corners @ frame.T + shift
     at = frame @ origin + shift
-    stretch = math.hypot(text_matrix.a, text_matrix.b) or 1.0  # a font of size 1 under a matrix of 10 is 10 high
+    stretch = (
+        math.hypot(text_matrix.a, text_matrix.b) or 1.0
+    )  # a font of size 1 under a matrix of 10 is 10 high
     size = size * stretch if size * stretch > 0 else float(np.ptp(own[:, 1]))
     return _Letter(
-        sign=sign, s0=own[:, 0].min(), s1=own[:, 0].max(), t0=own[:, 1].min(), t1=own[:, 1].max(),
-        base=float(at[1]), turn=turn, size=float(size),
-    )  # fmt: skip
+        sign=sign,
+        s0=own[:, 0].min(),
+        s1=own[:, 0].max(),
+        t0=own[:, 1].min(),
+        t1=own[:, 1].max(),
+        base=float(at[1]),
+        turn=turn,
+        size=float(size),
+    )
 
 
 def _phrases(letters):
-    """Groups of letters that stand on one line close together, each a list of (letter, gap before it in em)."""
+    """Groups of letters close together on one line, each a list of (letter, gap before it in em)."""
     groups = []
     lines = {}
     for letter in letters:
@@ -142,6 +152,10 @@ def _phrase(group):
     s, t = (s0 + s1) / 2, (t0 + t1) / 2
     return VectorText(
         text=unicodedata.normalize("NFKC", text).replace(MINUS, "-"),
-        x=s * math.cos(turn) - t * math.sin(turn), y=s * math.sin(turn) + t * math.cos(turn),
-        w=s1 - s0, h=t1 - t0, angle_deg=letters[0].turn, size=float(np.median([item.size for item in letters])),
-    )  # fmt: skip
+        x=s * math.cos(turn) - t * math.sin(turn),
+        y=s * math.sin(turn) + t * math.cos(turn),
+        w=s1 - s0,
+        h=t1 - t0,
+        angle_deg=letters[0].turn,
+        size=float(np.median([item.size for item in letters])),
+    )

@@ -1,4 +1,4 @@
-"""Where a drawn line meets the ray of a bearing: exact crossings of its segments, the outermost when there are several."""
+"""Where a drawn line meets the ray of a bearing: exact crossings of its segments, the outermost."""
 
 from dataclasses import dataclass
 
@@ -52,6 +52,7 @@ def at_bearings(rho, plane_deg, wanted_deg, *, vertex=None, bridged=True):
     Returns
     -------
     Crossings
+
     """
     start, end, jump, sag = _segments(rho, plane_deg, vertex, bridged)
     wanted = np.asarray(wanted_deg, float).ravel()
@@ -76,7 +77,9 @@ def at_bearings(rho, plane_deg, wanted_deg, *, vertex=None, bridged=True):
     out = {name: np.full(n, np.nan) for name in ("rho", "slope", "radial_share", "sag_rho", "jump_rho")}
     at = ray[last]
     out["rho"][at] = reach[last]
-    out["slope"][at], out["radial_share"][at] = _slant(start[segment[last]], end[segment[last]], wanted[at], reach[last])
+    out["slope"][at], out["radial_share"][at] = _slant(
+        start[segment[last]], end[segment[last]], wanted[at], reach[last]
+    )
     out["sag_rho"][at] = sag[segment[last]] * 4 * share[last] * (1 - share[last])
     out["jump_rho"][at] = jump[segment[last]]
     known = np.isfinite(rho)
@@ -107,7 +110,7 @@ def _segments(rho, plane_deg, vertex, bridged):
 
 
 def _sag(start, end, chord):
-    """Rise of a smooth curve over each chord: length times turn over 8, the turn that of the neighbouring chords."""
+    """Rise of a smooth curve over each chord: its length times the turn to its neighbour, over 8."""
     step = end - start
     length = np.hypot(*step.T)
     if len(step) < 2:
@@ -125,7 +128,9 @@ def _meetings(start, end, wanted):
     turn = (np.degrees(np.arctan2(end[:, 0], -end[:, 1])) - a + 180) % 360 - 180
     # A flank may run from one drawn point to the next along a ray: rounding must not lose its outer end.
     least = np.radians(MAX_TOUCH_DEG)
-    touch_a, touch_b = (np.degrees(np.minimum(TOUCH_RHO / np.maximum(np.hypot(*p.T), TOUCH_RHO), least)) for p in (start, end))
+    touch_a, touch_b = (
+        np.degrees(np.minimum(TOUCH_RHO / np.maximum(np.hypot(*p.T), TOUCH_RHO), least)) for p in (start, end)
+    )
     low = np.where(turn >= 0, a - touch_a, a + turn - touch_b)
     high = np.where(turn >= 0, a + turn + touch_b, a + touch_a)
     order = np.argsort(wanted % 360, kind="stable")
@@ -140,7 +145,7 @@ def _meetings(start, end, wanted):
 
 
 def _slant(start, end, plane_deg, rho):
-    """d rho / d degree, and the cosine of the slant, of segments at plane angles."""
+    """Slope d rho / d degree, and the cosine of the slant, of segments at plane angles."""
     out = np.stack([np.sin(np.radians(plane_deg)), -np.cos(np.radians(plane_deg))], axis=1)
     round_ = np.stack([-out[:, 1], out[:, 0]], axis=1)
     step = end - start

@@ -1,8 +1,8 @@
-"""Which of a chart's drawn lines are traces: they run round the centre one way, are no box, arc or letter, and show.
+"""Which of a chart's drawn lines are traces: they run round the centre one way, and show.
 
-A pattern is drawn in the order of its bearings, so its line turns about the chart's centre one way; letters, logos,
-markers and legend boxes turn to and fro. What the page holds but nothing shows of (a hidden layer, a line under a
-filled area) is told by the pixels: a trace's own colour must lie along it.
+A pattern is drawn in the order of its bearings, so its line turns about the chart's centre one way; letters,
+logos, markers and legend boxes turn to and fro. What the page holds but nothing shows of (a hidden layer, a
+line under a filled area) is told by the pixels: a trace's own colour must lie along it.
 """
 
 from dataclasses import dataclass
@@ -56,9 +56,12 @@ def course_of(points, grid):
     u, v = rho * np.sin(np.radians(deg)), -rho * np.cos(np.radians(deg))
     length = float(np.nansum(np.hypot(np.diff(u), np.diff(v))))
     return Course(
-        rho=rho, plane_deg=deg, turn_deg=float(np.abs(step).sum()),
-        net_deg=float(step.sum()), length=length,
-    )  # fmt: skip
+        rho=rho,
+        plane_deg=deg,
+        turn_deg=float(np.abs(step).sum()),
+        net_deg=float(step.sum()),
+        length=length,
+    )
 
 
 def is_trace(chain, course):
@@ -87,13 +90,17 @@ def _is_box(points):
 
 
 def find_paper(page, grid, lines):
-    """(3,) colour that a chart is drawn upon: the last opaque area under all of it that is drawn before its grid."""
+    """(3,) colour that a chart is drawn upon: the last opaque area under all of it before its grid."""
     first = min((path for path, _ in lines), default=len(page.paths))
     deg = np.arange(0, 360, 15.0)
     x, y = grid.to_picture(np.full(len(deg), GROUND_RHO), deg)
     paper = np.full(3, 255.0)
     for k, path in enumerate(page.paths):
-        if path.fill is None or path.fill_alpha < 0.99 or (k >= first and not any((k, j) in lines for j in range(len(path.runs)))):
+        if (
+            path.fill is None
+            or path.fill_alpha < 0.99
+            or (k >= first and not any((k, j) in lines for j in range(len(path.runs))))
+        ):
             continue
         for run in path.runs:
             low, high = run.min(axis=0), run.max(axis=0)

@@ -1,7 +1,7 @@
 """The `Grid` of every chart drawn on a page, and which lines are the grid's own.
 
-A trace may be a circle too (an omni), and nothing in its shape tells it from a ring. What it is drawn with does: rings
-share colour and width with each other or with the spokes, and one tool draws them all alike.
+A trace may be a circle too (an omni), and nothing in its shape tells it from a ring. What it is drawn with
+does: rings share colour and width with each other or with the spokes, and one tool draws them all alike.
 """
 
 from dataclasses import dataclass
@@ -44,8 +44,11 @@ def find_drawn_grids(page):
             item = _drawn_grid(page, pieces, hub, np.eye(2) if shape is None else shape)
             if item is None:
                 continue
-            apart = [np.hypot(item.grid.centre_x - g.grid.centre_x, item.grid.centre_y - g.grid.centre_y)
-                     / max(item.grid.outer_px, g.grid.outer_px) for g in found]  # fmt: skip
+            apart = [
+                np.hypot(item.grid.centre_x - g.grid.centre_x, item.grid.centre_y - g.grid.centre_y)
+                / max(item.grid.outer_px, g.grid.outer_px)
+                for g in found
+            ]
             if not apart or min(apart) > 0.8:
                 found.append(item)
     return found
@@ -56,7 +59,11 @@ def _oval_shapes(page):
     unit = page.px_per_pt if np.isfinite(page.px_per_pt) else 1.0
     shapes = []
     runs = [run for path in page.paths for run in path.runs if len(run) >= 9]
-    closed = [run for run in runs if np.hypot(*(run[0] - run[-1])) < 0.1 * unit and min(np.ptp(run, axis=0)) > MIN_OVAL_PT * unit]
+    closed = [
+        run
+        for run in runs
+        if np.hypot(*(run[0] - run[-1])) < 0.1 * unit and min(np.ptp(run, axis=0)) > MIN_OVAL_PT * unit
+    ]
     for run in closed[:MAX_OVALS]:
         shape = _oval(run, unit)
         if shape is not None:
@@ -65,12 +72,14 @@ def _oval_shapes(page):
     for k, shape in enumerate(shapes):
         alike = sum(np.abs(shape - other).max() < 2e-3 for other in shapes)
         if alike >= 2 and all(np.abs(shape - other).max() > 2e-3 for other in kept):
-            kept.append(np.mean([other for other in shapes[k:] if np.abs(shape - other).max() < 2e-3], axis=0))
+            kept.append(
+                np.mean([other for other in shapes[k:] if np.abs(shape - other).max() < 2e-3], axis=0)
+            )
     return kept[:3]
 
 
 def _oval(run, unit):
-    """The (2, 2) symmetric shape of area 1 that makes the oval from a circle; None for circles and all else."""
+    """The (2, 2) symmetric shape of area 1 that makes the oval from a circle; None for all else."""
     middle, size = run.mean(axis=0), np.ptp(run, axis=0).max()
     x, y = ((run - middle) / size).T
     design = np.stack([x * x, x * y, y * y, x, y], axis=1)
@@ -81,7 +90,9 @@ def _oval(run, unit):
         return None
     centre = -np.linalg.solve(matrix, [d, e]) / 2
     level = 1 + centre @ matrix @ centre
-    reach = np.sqrt(np.einsum("ni,ij,nj->n", np.stack([x, y], 1) - centre, matrix, np.stack([x, y], 1) - centre) / level)
+    reach = np.sqrt(
+        np.einsum("ni,ij,nj->n", np.stack([x, y], 1) - centre, matrix, np.stack([x, y], 1) - centre) / level
+    )
     aspect = float(np.sqrt(values.max() / values.min()))
     if np.abs(reach - 1).max() > 1.5e-3 + 0.1 * unit / size or not 1 + 5e-4 < aspect < ASPECT[1]:
         return None
@@ -119,7 +130,9 @@ def _drawn_grid(page, pieces, hub, shape):
         ring_rho=np.array([radius / outer for radius, _, _ in rings]),
         ring_rho_u=np.full(len(rings), u_px / outer),
         ring_drawn=np.array(drawn),
-        ring_width_px=np.array([float(np.median([page.paths[pieces.path[k]].width for k in chosen])) for _, chosen, _ in rings]),
+        ring_width_px=np.array(
+            [float(np.median([page.paths[pieces.path[k]].width for k in chosen])) for _, chosen, _ in rings]
+        ),
         spoke_deg=np.sort((np.array([spoke.deg for spoke in spokes]) - skew) % 360),
         spoke_step_deg=step,
         spoke_width_px=float(np.median([spoke.style[1] for spoke in spokes])) if spokes else float("nan"),
@@ -145,7 +158,8 @@ def _ruled(page, pieces, hub):
     spoke_keys = {_key(spoke.style) for spoke in hub.spokes}
     many = max(radii, key=lambda make: len(radii[make]))
     lone = [
-        len(radii[_make(style)]) == 1 and (_key(style) not in spoke_keys or style[3] != many[2]) for _, style, _, _ in items
+        len(radii[_make(style)]) == 1 and (_key(style) not in spoke_keys or style[3] != many[2])
+        for _, style, _, _ in items
     ]
     usual = [item for item, alone in zip(items, lone, strict=True) if not alone] or items
     rings = {}
@@ -154,12 +168,14 @@ def _ruled(page, pieces, hub):
         if alone and _is_trace(style, usual, outermost=radius == items[0][0], shared=shared):
             continue
         known = rings.get(radius)
-        rings[radius] = (chosen, cover) if known is None else (np.concatenate([known[0], chosen]), known[1] | cover)
+        rings[radius] = (
+            (chosen, cover) if known is None else (np.concatenate([known[0], chosen]), known[1] | cover)
+        )
     return [(radius, *rings[radius]) for radius in sorted(rings, reverse=True)]
 
 
 def _by_style(page, pieces, hub, ring):
-    """(radius, style, pieces, cover) of a ring's lines by what they are drawn with; stray bits are left out."""
+    """(radius, style, pieces, cover) of a ring's lines by what they are drawn with, without stray bits."""
     styles = [style_of(page.paths[pieces.path[k]]) for k in ring.pieces]
     found = []
     for style in dict.fromkeys(styles):
@@ -193,7 +209,9 @@ def _plain_spokes(hub):
         return []
     keys = [_key(spoke.style) for spoke in hub.spokes]
     ring_keys = {_key(ring.style) for ring in hub.rings}
-    return [spoke for spoke, key in zip(hub.spokes, keys, strict=True) if key in ring_keys or keys.count(key) > 2]
+    return [
+        spoke for spoke, key in zip(hub.spokes, keys, strict=True) if key in ring_keys or keys.count(key) > 2
+    ]
 
 
 def _residual(pieces, hub, rings):
@@ -207,14 +225,17 @@ def _residual(pieces, hub, rings):
 
 
 def _lattice(bearings):
-    """Skew (degrees, within +-MAX_SKEW_DEG) of evenly spaced spokes and their step; 0 and NaN when they are not even."""
+    """Skew (degrees, within +-MAX_SKEW_DEG) of evenly spaced spokes and their step; 0 and NaN of others."""
     if len(bearings) < 2:
         return 0.0, float("nan")
     bearings = np.asarray(bearings)
     gaps = np.diff(np.concatenate([bearings, bearings[:1] + 360]))
     step = float(np.median(gaps))
     steps = gaps / step
-    if np.abs(steps - np.round(steps)).max() * step > LATTICE_DEG * 2 or abs(360 / step - round(360 / step)) > 0.02:
+    if (
+        np.abs(steps - np.round(steps)).max() * step > LATTICE_DEG * 2
+        or abs(360 / step - round(360 / step)) > 0.02
+    ):
         return 0.0, float("nan")
     step = 360 / round(360 / step)
     phase = np.angle(np.exp(2j * np.pi * bearings / step).mean()) / (2 * np.pi) * step
@@ -222,7 +243,7 @@ def _lattice(bearings):
 
 
 def _texts_turned(page, skew):
-    """Whether the page's text stands turned as the spokes do: a lattice off the upright is a skew only then."""
+    """Whether the page's text is turned as the spokes are: else even spokes off the upright are no skew."""
     if abs(skew) < 0.02 or not page.texts:
         return True
     turns = np.array([(text.angle_deg + 45) % 90 - 45 for text in page.texts])

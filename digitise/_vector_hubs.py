@@ -1,7 +1,8 @@
 """Where the charts of a drawn page are: points that rings run round and spokes run through.
 
-A ring may be one circle, many arcs, or hundreds of dashes; a spoke one line or many. So centres are proposed by arcs
-and by lines that cross in one point, and each is then judged by all lines that keep one distance from it or point at it.
+A ring may be one circle, many arcs, or hundreds of dashes; a spoke one line or many. So centres are proposed
+by arcs and by lines that cross in one point, and each is then judged by all lines that keep one distance from
+it or point at it.
 """
 
 from dataclasses import dataclass
@@ -70,19 +71,21 @@ class Hub:
 
 
 def find_hubs(page, pieces):
-    """The charts' `Hub`s on a `VectorPage` cut into `Pieces`, strongest first; none lies on another's centre."""
+    """The charts' `Hub`s on a `VectorPage` cut into `Pieces`, strongest first, clear of each other."""
     styles = [style_of(path) for path in page.paths]
     discs = np.array([path.stroke is None for path in page.paths])[pieces.path]
     judged = [_judge(pieces, styles, discs, x, y) for x, y in _proposals(pieces)]
     kept = []
     for hub in sorted((hub for hub in judged if hub is not None), key=lambda item: -item.evidence):
-        if all(np.hypot(hub.x - other.x, hub.y - other.y) > 0.8 * max(other.outer, hub.outer) for other in kept):
+        if all(
+            np.hypot(hub.x - other.x, hub.y - other.y) > 0.8 * max(other.outer, hub.outer) for other in kept
+        ):
             kept.append(_judge(pieces, styles, discs, *_centred(pieces, hub)) or hub)
     return kept
 
 
 def _centred(pieces, hub):
-    """x, y of a hub by least squares over all its rings and spokes (Gauss-Newton; each ring has a radius of its own)."""
+    """A hub's x, y by least squares over its spokes and rings of any radius (Gauss-Newton)."""
     x, y = hub.x, hub.y
     rings = []
     for ring in hub.rings:
@@ -126,7 +129,9 @@ def ring_cover(pieces, chosen, x, y):
 
 def _proposals(pieces):
     """Points (x, y) that may be centres, likelier ones first."""
-    arcs = np.flatnonzero((pieces.sweep_deg >= MIN_SWEEP_DEG) & (pieces.radius >= MIN_OUTER_PT * pieces.unit / 3))
+    arcs = np.flatnonzero(
+        (pieces.sweep_deg >= MIN_SWEEP_DEG) & (pieces.radius >= MIN_OUTER_PT * pieces.unit / 3)
+    )
     found = []  # [x, y, weight, reach]
     for k in arcs[np.argsort(-pieces.radius[arcs])][:4000]:
         x, y, radius = *pieces.centre[k], pieces.radius[k]
@@ -146,7 +151,7 @@ def _proposals(pieces):
 
 
 def _crossings(pieces):
-    """Points where three or more long straight lines of different directions meet: x, y, number of directions."""
+    """Points where long straight lines of three or more directions meet: x, y, number of directions."""
     lines = np.flatnonzero(pieces.straight & (pieces.length > 0.3 * MIN_OUTER_PT * pieces.unit))
     lines = lines[np.argsort(-pieces.length[lines], kind="stable")][:MAX_LINES]
     if len(lines) < 3:
@@ -163,7 +168,7 @@ def _crossings(pieces):
     x = (level[i] * normal[j, 1] - level[j] * normal[i, 1]) / det
     y = (normal[i, 0] * level[j] - normal[j, 0] * level[i]) / det
     cell = np.round(np.stack([x, y], axis=1) / (0.5 * pieces.unit)).astype(np.int64)
-    cells, inverse, counts = np.unique(cell, axis=0, return_inverse=True, return_counts=True)
+    _, inverse, counts = np.unique(cell, axis=0, return_inverse=True, return_counts=True)
     found = []
     for k in np.argsort(-counts, kind="stable")[:40]:
         if counts[k] < 2:
@@ -171,7 +176,9 @@ def _crossings(pieces):
         chosen = inverse.ravel() == k
         cx, cy = np.median(x[chosen]), np.median(y[chosen])
         through = np.abs(normal @ (cx, cy) - level) < 0.3 * pieces.unit
-        directions = np.unique(np.round(np.degrees(np.arctan2(along[through, 1], along[through, 0])) % 180).astype(int))
+        directions = np.unique(
+            np.round(np.degrees(np.arctan2(along[through, 1], along[through, 0])) % 180).astype(int)
+        )
         if len(directions) >= 3:
             found.append((float(cx), float(cy), len(directions)))
     return found
@@ -189,9 +196,10 @@ def _judge(pieces, styles, discs, x, y):
     round_it &= radius > 0.5 * pieces.unit
     rings = _rings(pieces, styles, np.flatnonzero(round_it & ~discs), radius, deg, False)
     rings += [
-        disc for disc in _rings(pieces, styles, np.flatnonzero(round_it & discs), radius, deg, True)
+        disc
+        for disc in _rings(pieces, styles, np.flatnonzero(round_it & discs), radius, deg, True)
         if not rings or disc.radius > 1.015 * max(ring.radius for ring in rings)
-    ]  # fmt: skip
+    ]
     rings.sort(key=lambda ring: -ring.radius)
     arc, rings = _chart_arc(rings)
     if not rings or rings[0].radius < MIN_OUTER_PT * pieces.unit:
@@ -223,10 +231,13 @@ def _rings(pieces, styles, chosen, radius, deg, disc):
             weight[style] = weight.get(style, 0.0) + swept
         rings.append(
             Ring(
-                radius=float(np.median(radius[group])), cover=cover, pieces=group, disc=disc,
+                radius=float(np.median(radius[group])),
+                cover=cover,
+                pieces=group,
+                disc=disc,
                 style=max(weight, key=weight.get),
             )
-        )  # fmt: skip
+        )
     return rings
 
 
@@ -263,7 +274,11 @@ def _chart_arc(rings):
                 continue
             arc = (start * 360 / BINS, (start + length) * 360 / BINS)
             part = np.roll(np.arange(BINS) < length, start)
-        kept = [ring for ring, own in zip(rings[first:], covers[first:], strict=True) if own[part].mean() >= RING_COVER]
+        kept = [
+            ring
+            for ring, own in zip(rings[first:], covers[first:], strict=True)
+            if own[part].mean() >= RING_COVER
+        ]
         return arc, kept
     return (0.0, 360.0), []
 
@@ -288,7 +303,11 @@ def _spokes(pieces, styles, arm, rho, outer):
     miss = np.abs(arm[first, 0] * along[:, 1] - arm[first, 1] * along[:, 0]) / span
     # What a short dash's ends are rounded by turns it, so that it may miss the hub by more than a long line.
     near = np.minimum(rho[first], rho[last])
-    radial = pieces.straight & (miss <= 0.1 * pieces.unit * (1 + near / span)) & (np.maximum(rho[first], rho[last]) <= 1.3 * outer)
+    radial = (
+        pieces.straight
+        & (miss <= 0.1 * pieces.unit * (1 + near / span))
+        & (np.maximum(rho[first], rho[last]) <= 1.3 * outer)
+    )
     ends = []  # (bearing, from, to, piece)
     for k in np.flatnonzero(radial):
         a, b = arm[first[k]], arm[last[k]]

@@ -1,7 +1,7 @@
-"""The page's own text about a chart, as `Labels`: which numbers are ring levels, which are bearings, what is legend.
+"""The page's own text about a chart, as `Labels`: ring levels, bearings, caption and legend told apart.
 
-Text of a page is known letter by letter and to a hundredth of a px, so only its meaning is looked for: bearings stand
-round the rim and agree on one zero and one turn; levels stand in a row from the centre out.
+Text of a page is known letter by letter and to a hundredth of a px, so only its meaning is looked for:
+bearings stand round the rim and agree on one zero and one turn; levels stand in a row from the centre out.
 """
 
 import re
@@ -32,13 +32,19 @@ SAMPLE_EM = 12.0  # the longest sample line
 
 
 def place_texts(page, grid, names):
-    """The `Labels` of the chart with this `Grid` on a `VectorPage` in picture px; `names` are its legend's."""
+    """The `Labels` of a chart by its `Grid` on a `VectorPage` in picture px; `names` are its legend's."""
     near = []
     for text in page.texts:
         rho, plane = (float(v) for v in grid.to_plane(text.x, text.y))
         value, unit = _number(text.text)
         if rho <= (FAR_RHO if value is None else FAR_NUMBER_RHO):
-            if value is not None and value > 0 and unit != "deg" and text.text[0] != "+" and _minus_drawn(page, text):
+            if (
+                value is not None
+                and value > 0
+                and unit != "deg"
+                and text.text[0] != "+"
+                and _minus_drawn(page, text)
+            ):
                 value = -value
             near.append((text, rho, plane, value, unit))
     rim = _rim(near)
@@ -48,11 +54,22 @@ def place_texts(page, grid, names):
         role = "rim" if k in rim else "ring" if k in ring else _other_role(text, rho, plane, value, names)
         found.append(
             Label(
-                text=text.text, value=value, unit=unit, x_px=text.x, y_px=text.y, w_px=text.w, h_px=text.h, rho=rho,
-                plane_deg=plane, confidence=1.0, role=role, angle_deg=text.angle_deg,
-                readings=((value, 1.0),) if role in ("ring", "rim") else (), ring_rho=ring.get(k, float("nan")),
+                text=text.text,
+                value=value,
+                unit=unit,
+                x_px=text.x,
+                y_px=text.y,
+                w_px=text.w,
+                h_px=text.h,
+                rho=rho,
+                plane_deg=plane,
+                confidence=1.0,
+                role=role,
+                angle_deg=text.angle_deg,
+                readings=((value, 1.0),) if role in ("ring", "rim") else (),
+                ring_rho=ring.get(k, float("nan")),
             )
-        )  # fmt: skip
+        )
     return Labels(found=tuple(found), engine=ENGINE, ring_safe=safe)
 
 
@@ -110,19 +127,29 @@ def _minus_drawn(page, text):
             low, high = run.min(axis=0), run.max(axis=0)
             width, height = high - low
             if (
-                0.2 * em < width < 0.95 * em and height < 0.2 * em
-                and abs((low[1] + high[1]) / 2 - text.y) < 0.3 * em and -0.1 * em < left - high[0] < 0.35 * em
-            ):  # fmt: skip
+                0.2 * em < width < 0.95 * em
+                and height < 0.2 * em
+                and abs((low[1] + high[1]) / 2 - text.y) < 0.3 * em
+                and -0.1 * em < left - high[0] < 0.35 * em
+            ):
                 return True
     return False
 
 
 def _rim(near):
     """Indices of the bearings round the rim: those that agree best on one zero and one turn."""
-    chosen = [k for k, (_, rho, _, value, unit) in enumerate(near)
-              if value is not None and unit in ("", "deg") and abs(value) <= 360 and (rho >= RIM_FROM_RHO or unit == "deg")]  # fmt: skip
+    chosen = [
+        k
+        for k, (_, rho, _, value, unit) in enumerate(near)
+        if value is not None
+        and unit in ("", "deg")
+        and abs(value) <= 360
+        and (rho >= RIM_FROM_RHO or unit == "deg")
+    ]
     odds = [1.0 if near[k][4] == "deg" else PLAIN_ODDS for k in chosen]
-    vote = vote_rim([near[k][2] for k in chosen], [((near[k][3], own),) for k, own in zip(chosen, odds, strict=True)])
+    vote = vote_rim(
+        [near[k][2] for k in chosen], [((near[k][3], own),) for k, own in zip(chosen, odds, strict=True)]
+    )
     if vote is None or len({value % 360 for value in vote.values}) < LEAST_RIM:
         return set()
     best = [chosen[k] for k in vote.members]
@@ -144,11 +171,13 @@ def _may_be_level(item):
 
 
 def _row(chosen, near, grid):
-    """({index: radius of the ring that it names}, safe): the levels in a row from the centre out, and their doubles.
+    """({index: radius of the ring that it names}, safe) of the levels in a row from the centre out.
 
-    Labels are printed at one offset from their rings, by their middle, an end or a corner: the place that keeps the
-    steadiest and smallest offset is taken. Safe is whether they stand clearly nearer to their rings than to the next,
-    and no other offset names other rings about as well.
+    The same levels printed in other rows are named too.
+
+    Labels are printed at one offset from their rings, by their middle, an end or a corner: the place that
+    keeps the steadiest and smallest offset is taken. Safe is whether they stand clearly nearer to their rings
+    than to the next, and no other offset names other rings about as well.
     """
     best = []
     for k in chosen:
@@ -159,10 +188,16 @@ def _row(chosen, near, grid):
         return {}, True
     rings = np.append(grid.ring_rho, 0.0)  # the centre may have a label too
     gap = float(np.abs(np.diff(rings)).min())
-    along = np.radians(np.median([(near[k][2] - near[best[0]][2] + 180) % 360 - 180 for k in best]) + near[best[0]][2])
+    along = np.radians(
+        np.median([(near[k][2] - near[best[0]][2] + 180) % 360 - 180 for k in best]) + near[best[0]][2]
+    )
     values = [near[k][3] for k in best]
     fits = sorted(
-        (fit for anchor in ANCHORS for fit in _fits(_reach(best, near, grid, along, anchor), values, rings, gap)),
+        (
+            fit
+            for anchor in ANCHORS
+            for fit in _fits(_reach(best, near, grid, along, anchor), values, rings, gap)
+        ),
         key=lambda fit: fit[0],
     )
     cost, shift, nearest = fits[0]
@@ -189,7 +224,9 @@ def _reach(row, near, grid, along, anchor):
         text = near[k][0]
         turn = np.radians(text.angle_deg)
         s, t = anchor[0] * text.w / 2, anchor[1] * text.h / 2
-        rho, plane = grid.to_plane(text.x + s * np.cos(turn) - t * np.sin(turn), text.y + s * np.sin(turn) + t * np.cos(turn))
+        rho, plane = grid.to_plane(
+            text.x + s * np.cos(turn) - t * np.sin(turn), text.y + s * np.sin(turn) + t * np.cos(turn)
+        )
         reach.append(float(rho * np.cos(np.radians(plane) - along)))
     return np.array(reach)
 

@@ -1,7 +1,8 @@
-"""The lines inside a chart that may be traces: clipped as they show, and strokes that continue each other joined.
+"""The lines inside a chart that may be traces: clipped as they show, and what continues them joined.
 
-A trace may be one path, a path a segment, or hundreds of dashes. Lines of one look are joined where one ends and the
-next begins; across a gap only where both are short, as dashes are, so that two traces are never made one.
+A trace may be one path, a path a segment, or hundreds of dashes. Lines of one look are joined where one ends
+and the next begins; across a gap only where both are short, as dashes are, so that two traces are never made
+one.
 """
 
 from dataclasses import dataclass
@@ -23,7 +24,7 @@ BISECTIONS = 24
 
 @dataclass(frozen=True, kw_only=True)
 class Look:
-    """What lines of one trace share: colour (r, g, b), opacity, width px, dash lengths px; filled areas have no width."""
+    """What lines of one trace share: colour (r, g, b), opacity, width px (0 of areas), dash lengths px."""
 
     colour: tuple
     alpha: float
@@ -55,7 +56,7 @@ class Chain:
 
 
 def find_chains(page, grid, lines):
-    """Every `Chain` near a `Grid` on a `VectorPage` in picture px; `lines` are (path, run) that belong to the grid."""
+    """Every `Chain` near a `Grid` on a `VectorPage` in picture px; `lines` are the grid's own (path, run)."""
     groups = {}
     for k, path in enumerate(page.paths):
         for look in looks_of(path):
@@ -66,9 +67,16 @@ def find_chains(page, grid, lines):
                 for points, flags in _clipped(run, vertex, path.clips, slack):
                     closed = len(points) > 3 and np.hypot(*(points[0] - points[-1])) < TOUCH_PX
                     groups.setdefault(look, []).append(
-                        Chain(points=points, vertex=flags, look=look, paths=frozenset([k]), closed=bool(closed),
-                              curved=path.curved, order=k)
-                    )  # fmt: skip
+                        Chain(
+                            points=points,
+                            vertex=flags,
+                            look=look,
+                            paths=frozenset([k]),
+                            closed=bool(closed),
+                            curved=path.curved,
+                            order=k,
+                        )
+                    )
     return [chain for group in groups.values() for chain in _joined(group, grid.outer_px)]
 
 
@@ -76,7 +84,13 @@ def looks_of(path):
     """The stroke and the fill of a path, as far as there are any."""
     if path.stroke is not None:
         dash = tuple(round(length, 2) for length in path.dash)
-        yield Look(colour=path.stroke, alpha=round(path.stroke_alpha, 2), width=round(path.width, 2), dash=dash, filled=False)
+        yield Look(
+            colour=path.stroke,
+            alpha=round(path.stroke_alpha, 2),
+            width=round(path.width, 2),
+            dash=dash,
+            filled=False,
+        )
     if path.fill is not None:
         yield Look(colour=path.fill, alpha=round(path.fill_alpha, 2), width=0.0, dash=(), filled=True)
 
@@ -106,7 +120,9 @@ def _cut(points, vertex, clip, slack):
     outline = clip.astype(np.float32)[:, None]
 
     def inside(where):
-        return np.array([cv2.pointPolygonTest(outline, (float(x), float(y)), True) >= -slack for x, y in where], bool)
+        return np.array(
+            [cv2.pointPolygonTest(outline, (float(x), float(y)), True) >= -slack for x, y in where], bool
+        )
 
     within = inside(points)
     if within.all():
@@ -146,7 +162,9 @@ def _joined(group, outer_px):
     open_ones = [chain for chain in group if not chain.closed]
     done = [chain for chain in group if chain.closed]
     touching = _link(open_ones[:MAX_STROKES], TOUCH_PX)
-    short = [chain for chain in touching if _length(chain.points) < DASH_LENGTH * outer_px and not chain.closed]
+    short = [
+        chain for chain in touching if _length(chain.points) < DASH_LENGTH * outer_px and not chain.closed
+    ]
     rest = [chain for chain in touching if not any(chain is item for item in short)]
     if len(short) >= 3 and not group[0].look.filled:
         gap = max(DASH_GAP * outer_px, 6 * group[0].look.width)
@@ -206,6 +224,11 @@ def _merged(chains, turned):
     points, vertex = np.concatenate(points), np.concatenate(vertex)
     closed = len(points) > 3 and np.hypot(*(points[0] - points[-1])) < TOUCH_PX
     return Chain(
-        points=points, vertex=vertex, look=chains[0].look, paths=frozenset().union(*(chain.paths for chain in chains)),
-        closed=bool(closed), curved=any(chain.curved for chain in chains), order=max(chain.order for chain in chains),
-    )  # fmt: skip
+        points=points,
+        vertex=vertex,
+        look=chains[0].look,
+        paths=frozenset().union(*(chain.paths for chain in chains)),
+        closed=bool(closed),
+        curved=any(chain.curved for chain in chains),
+        order=max(chain.order for chain in chains),
+    )

@@ -1,4 +1,4 @@
-"""Every unbroken drawn line of a page, measured at once: is it straight, is it an arc, and about which centre.
+"""Every unbroken drawn line of a page, measured at once: is it straight, is it an arc, about which centre.
 
 Lines are looked at together as arrays, since a page may hold tens of thousands of dashes.
 """
@@ -23,7 +23,8 @@ class Pieces:
     start : (n,) index of each line's first point; count : (n,) of its points
     path, run : (n,) where each comes from: page.paths[path].runs[run]
     length : (n,); straight : (n,) bool
-    centre : (n, 2), radius : (n,) of the circle through each arc, NaN where it is none; sweep_deg : (n,) of the arc
+    centre : (n, 2), radius : (n,) of the circle through each arc, NaN where it is none; sweep_deg : (n,) of
+        the arc
     unit : length of one point on the page
     """
 
@@ -93,20 +94,32 @@ def cut_pieces(page, shape=None):
     straight = (np.maximum.reduceat(off, start) <= STRAIGHT_PT * unit) & (length <= 1.02 * span)
     centre, radius, sweep = _arcs(xy, vertex, start, owner, count, straight, unit)
     return Pieces(
-        xy=xy, vertex=vertex, start=start, count=count, path=np.array(paths), run=np.array(numbers), length=length,
-        straight=straight, centre=centre, radius=radius, sweep_deg=sweep, unit=unit,
-    )  # fmt: skip
+        xy=xy,
+        vertex=vertex,
+        start=start,
+        count=count,
+        path=np.array(paths),
+        run=np.array(numbers),
+        length=length,
+        straight=straight,
+        centre=centre,
+        radius=radius,
+        sweep_deg=sweep,
+        unit=unit,
+    )
 
 
 def _arcs(xy, vertex, start, owner, count, straight, unit):
-    """Centre, radius and sweep of every line that is a circle's arc (algebraic fit: Kasa 1976, IEEE Trans. IM 25)."""
+    """Centre, radius and sweep of every line that is an arc (algebraic fit: Kasa 1976, IEEE Trans. IM 25)."""
     weight = vertex.astype(float)
     total = np.add.reduceat(weight, start)
     middle = np.stack([np.add.reduceat(weight * xy[:, k], start) for k in (0, 1)], axis=1) / total[:, None]
     u, v = (xy - middle[owner]).T
     w = u * u + v * v
-    sums = {name: np.add.reduceat(weight * value, start) for name, value in
-            {"uu": u * u, "uv": u * v, "vv": v * v, "uw": u * w, "vw": v * w, "w": w}.items()}  # fmt: skip
+    sums = {
+        name: np.add.reduceat(weight * value, start)
+        for name, value in {"uu": u * u, "uv": u * v, "vv": v * v, "uw": u * w, "vw": v * w, "w": w}.items()
+    }
     det = sums["uu"] * sums["vv"] - sums["uv"] ** 2
     good = (total >= 3) & ~straight & (det > 1e-9 * np.maximum(sums["w"], 1e-300) ** 2)
     det = np.where(good, det, 1.0)

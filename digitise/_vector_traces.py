@@ -1,4 +1,4 @@
-"""The traces among a chart's chains: pieces of one trace put together, a line and its filled area made one."""
+"""The traces among a chart's chains: pieces of one put together, a line and its filled area made one."""
 
 from dataclasses import replace
 
@@ -19,7 +19,7 @@ DASH_LENGTH = 0.15  # outer radii: longer ones are lines
 
 
 def drawn_traces(page, drawn, rgb):
-    """The traces of a `DrawnGrid` on a `VectorPage` in picture px: a list of (Chain, ink (3,), dash, filled)."""
+    """The traces of a `DrawnGrid` on a `VectorPage` in px: a list of (Chain, ink (3,), dash, filled)."""
     grid = drawn.grid
     paper = find_paper(page, grid, drawn.lines)
     chains = find_chains(page, grid, drawn.lines)
@@ -55,7 +55,9 @@ def _whole(found, chains, grid):
     for own in whole:
         paths = frozenset().union(*(chain.paths for chain in own))
         for chain in chains:
-            short = chain.look == own[0].look and chain.paths & paths and not any(chain is item for item in found)
+            short = (
+                chain.look == own[0].look and chain.paths & paths and not any(chain is item for item in found)
+            )
             if short and all(_apart(chain, other, grid) for other in own):
                 own.append(chain)  # a short stretch between two breaks of the same path
     return [_together(own, grid) for own in whole]
@@ -100,14 +102,17 @@ def _together(chains, grid):
         points += [np.full((1, 2), np.nan), own]
         vertex += [[False], flags]
     return replace(
-        chains[0], points=np.vstack(points), vertex=np.concatenate(vertex).astype(bool),
-        paths=frozenset().union(*(chain.paths for chain in chains)), closed=False,
+        chains[0],
+        points=np.vstack(points),
+        vertex=np.concatenate(vertex).astype(bool),
+        paths=frozenset().union(*(chain.paths for chain in chains)),
+        closed=False,
         order=max(chain.order for chain in chains),
-    )  # fmt: skip
+    )
 
 
 def _dash(chain, outer_px):
-    """ "solid", "dashed" or "dotted": by the path's own dashes, or by the strokes that it is made of."""
+    """Solid, dashed or dotted: by the path's own dashes, or by the strokes that it is made of."""
     width = max(chain.look.width, 0.1)
     if chain.look.dash:
         on = chain.look.dash[::2] if len(chain.look.dash) > 1 else chain.look.dash

@@ -1,8 +1,8 @@
-"""A page of a PDF as a `Picture`, at the resolution that its charts ask for, with its drawn objects beside the pixels.
+"""A page of a PDF as a `Picture`, at the resolution that its charts ask for, with its drawn objects.
 
-Three ways, in this order. A chart drawn with lines decides the scale by its own radius, and keeps its lines for
-`vector`. A bitmap placed on the page is taken px for px, since drawing it anew at another scale only blurs it. Any
-other page is drawn at an even 200 dots an inch.
+Three ways, in this order. A chart drawn with lines decides the scale by its own radius, and keeps its lines
+for `vector`. A bitmap placed on the page is taken px for px, since drawing it anew at another scale only
+blurs it. Any other page is drawn at an even 200 dots an inch.
 """
 
 import hashlib
@@ -40,8 +40,9 @@ def open_pdf_page(path, *, page=None):
     page : 1-based; None takes the first
 
     The picture's `vector` is a `VectorPage` in picture px, or None where the page holds none or too much.
-    Raises `PictureError` for a file that is missing, locked, broken, without that page, or whose page is too large
-    or takes too long.
+    Raises `PictureError` for a file that is missing, locked, broken, without that page, or whose page is too
+    large or takes too long.
+
     """
     path = os.fspath(path)
     data = _read_bytes(path)
@@ -53,9 +54,16 @@ def open_pdf_page(path, *, page=None):
         rgb, vector, made = _pixels(opened, view, drawn, items, path)
     notes = (f"page {number} of {n_pages}", *notes, *made)
     return Picture(
-        rgb=rgb, path=path, sha256=hashlib.sha256(data).hexdigest(), width=rgb.shape[1], height=rgb.shape[0],
-        page=number, kind="pdf", notes=notes, vector=vector,
-    )  # fmt: skip
+        rgb=rgb,
+        path=path,
+        sha256=hashlib.sha256(data).hexdigest(),
+        width=rgb.shape[1],
+        height=rgb.shape[0],
+        page=number,
+        kind="pdf",
+        notes=notes,
+        vector=vector,
+    )
 
 
 def page_count(path):
@@ -92,7 +100,7 @@ def _thumbnail(document, number, path, size_px):
 
 
 def _objects(page, view):
-    """What is drawn on the page, in display points, its images' handles, and a note where it was not taken whole."""
+    """What is drawn on the page, in display points, its images' handles, and a note on what is left out."""
     try:
         drawn, items = collect_objects(page, view)
         if drawn.whole:
@@ -107,7 +115,11 @@ def _pixels(page, view, drawn, items, path):
     radii = _chart_radii(drawn)
     if radii:
         return _rendered(page, view, drawn, path, OUTER_PX / min(radii))
-    bitmaps = [b for b in (item.clipped(view.width_pt, view.height_pt) for item in bitmaps_of(drawn)) if b is not None]
+    bitmaps = [
+        b
+        for b in (item.clipped(view.width_pt, view.height_pt) for item in bitmaps_of(drawn))
+        if b is not None
+    ]
     if not bitmaps:
         return _rendered(page, view, drawn, path, PLAIN_DPI / POINTS_PER_INCH)
     if _area(bitmaps[0]) >= SCAN_COVER * view.width_pt * view.height_pt:
@@ -140,7 +152,7 @@ def _rendered(page, view, drawn, path, px_per_pt):
 
 
 def _even_size(view, scale):
-    """Whole px (width, height) near a scale, and such that both sides are scaled alike: circles stay circles."""
+    """Whole px (width, height) near a scale that scale both sides alike: circles stay circles."""
     width = np.arange(max(1, int(view.width_pt * scale) - SIZES_TRIED), int(view.width_pt * scale) + 1)
     height = np.maximum(np.round(width * view.height_pt / view.width_pt), 1)
     uneven = np.abs(height / view.height_pt / (width / view.width_pt) - 1)
@@ -206,10 +218,15 @@ def _chart_bitmaps(rgb, px_per_pt, bitmaps):
         return bitmaps if len(bitmaps) == 1 else None
     holders = []
     for box in boxes:
-        x, y, reach = ((v + shift) / px_per_pt for v, shift in
-                       ((box.centre_x, 0.5), (box.centre_y, 0.5), (0.97 * box.outer_px, 0)))  # fmt: skip
-        inside = [b for b in bitmaps if b.left <= x - reach and x + reach <= b.right
-                  and b.top <= y - reach and y + reach <= b.bottom]  # fmt: skip
+        x, y, reach = (
+            (v + shift) / px_per_pt
+            for v, shift in ((box.centre_x, 0.5), (box.centre_y, 0.5), (0.97 * box.outer_px, 0))
+        )
+        inside = [
+            b
+            for b in bitmaps
+            if b.left <= x - reach and x + reach <= b.right and b.top <= y - reach and y + reach <= b.bottom
+        ]
         if not inside:
             return None
         holders.append(inside[-1])

@@ -1,8 +1,8 @@
-"""Charts that a PDF page draws with lines: grid, labels and traces taken from the drawing itself, not from pixels.
+"""Charts that a PDF page draws with lines: grid, labels and traces from the drawing itself, not its pixels.
 
-What the drawing program wrote are the curve's own points, good to a few thousandths of a point on paper: nothing is
-searched, followed or refined. The results are of the same classes as those of a picture, in picture px at the
-resolution the page was drawn at, so that scale, bearing, budget and table are shared.
+What the drawing program wrote are the curve's own points, good to a few thousandths of a point on paper:
+nothing is searched, followed or refined. The results are of the same classes as those of a picture, in
+picture px at the resolution the page was drawn at, so that scale, bearing, budget and table are shared.
 """
 
 from dataclasses import dataclass
@@ -21,7 +21,9 @@ from .labels import Labels
 
 __all__ = ["VectorChart", "VectorTrace", "find_vector_charts", "followed", "page_labels", "trace_at"]
 
-PLACE_PT = 0.004  # standard uncertainty of a drawn point on paper: rounding to 0.01, over the root of 12, and to spare
+PLACE_PT = (
+    0.004  # standard uncertainty of a drawn point on paper: rounding to 0.01 over the root of 12, and more
+)
 NEAR_CENTRE_RHO = 0.25
 BRIDGE_SHARE = 0.05  # of a bridged jump's length, as the standard uncertainty of what lies between
 
@@ -30,9 +32,11 @@ BRIDGE_SHARE = 0.05  # of a bridged jump's length, as the standard uncertainty o
 class VectorTrace:
     """One drawn trace.
 
-    ink : "#rrggbb" as it shows on the paper; dash : "solid", "dashed" or "dotted"; width_px : of the line, 0 of an area
+    ink : "#rrggbb" as it shows on the paper; dash : "solid", "dashed" or "dotted"; width_px : of the line, 0
+        of an area
     rho, plane_deg : (n,) the path's points in order in the chart plane, NaN where the pen was up
-    vertex : (n,) bool, points that the drawing names itself; the others lie on its curves, or on a clip's outline
+    vertex : (n,) bool, points that the drawing names itself; the others lie on its curves, or on a clip's
+        outline
     filled : an area is filled inside it; name : of the legend, "" when there is none
     place_u_px : standard uncertainty of a point along the line's normal, px; length : drawn, outer radii
     """
@@ -54,7 +58,7 @@ class VectorTrace:
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class VectorChart:
-    """One drawn chart: box, grid and labels as of a picture, and its traces, a tuple of `VectorTrace` in drawing order."""
+    """One drawn chart: box, grid and labels as of a picture; a tuple of `VectorTrace` in drawing order."""
 
     box: Box
     grid: Grid
@@ -68,8 +72,8 @@ def find_vector_charts(picture, *, box=None):
     picture : Picture whose `vector` is the page's VectorPage (any other gives none)
     box : Box or None; only the chart whose centre lies in its inner half is returned
 
-    A chart whose grid is drawn but whose trace is not (a bitmap under it, an outline of letters) has no traces: its
-    grid and labels still hold, and the trace is to be read from the pixels.
+    A chart whose grid is drawn but whose trace is not (a bitmap under it, an outline of letters) has no
+    traces: its grid and labels still hold, and the trace is to be read from the pixels.
     """
     page = picture.vector
     if page is None or not page.whole or not page.paths or not np.isfinite(page.px_per_pt):
@@ -77,14 +81,20 @@ def find_vector_charts(picture, *, box=None):
     charts = []
     for drawn in find_drawn_grids(page):
         grid = drawn.grid
-        if box is not None and np.hypot(grid.centre_x - box.centre_x, grid.centre_y - box.centre_y) > 0.5 * box.outer_px:
+        if (
+            box is not None
+            and np.hypot(grid.centre_x - box.centre_x, grid.centre_y - box.centre_y) > 0.5 * box.outer_px
+        ):
             continue
         traces = drawn_traces(page, drawn, picture.rgb)
         names = legend_names(page, [chain.look for chain, *_ in traces])
         made = [_vector_trace(*item, name, grid, page) for item, name in zip(traces, names, strict=True)]
         charts.append(
             VectorChart(
-                box=box_around(grid, picture), grid=grid, labels=place_texts(page, grid, names), traces=tuple(made)
+                box=box_around(grid, picture),
+                grid=grid,
+                labels=place_texts(page, grid, names),
+                traces=tuple(made),
             )
         )
     order = {id(own): k for k, own in enumerate(_reading_order([chart.box for chart in charts]))}
@@ -92,7 +102,7 @@ def find_vector_charts(picture, *, box=None):
 
 
 def page_labels(picture, grid):
-    """The page's printed text about a chart read in any way, as `Labels`; empty where the page holds no text."""
+    """The page's printed text about a chart read in any way, as `Labels`; empty where there is no text."""
     page = picture.vector
     if page is None or not page.texts or not np.isfinite(page.px_per_pt):
         return Labels()
@@ -100,14 +110,15 @@ def page_labels(picture, grid):
 
 
 def trace_at(trace, plane_deg):
-    """rho (n,) of a `VectorTrace` where its line meets the rays at plane angles; the outermost, NaN where none is."""
+    """Radius rho (n,) of a `VectorTrace` at plane angles: its outermost crossing, NaN where none is."""
     return at_bearings(trace.rho, trace.plane_deg, plane_deg, bridged=False).rho
 
 
 def followed(trace, grid, *, covers=()):
     """A `VectorTrace` as the `Trace` that following its ink would give, for the rest of the flow.
 
-    Rows where the pen was up for a short way are bridged; where the line went into the centre they are at the floor.
+    Rows where the pen was up for a short way are bridged; where the line went into the centre they are at the
+        floor.
     covers : (x, y, w, h) px; what is drawn there is not used
     """
     plane = np.arange(360 * SAMPLES_PER_DEG) / SAMPLES_PER_DEG
@@ -128,7 +139,9 @@ def followed(trace, grid, *, covers=()):
         rho=np.where(has, line.rho, np.where(floor, 0.0, np.nan)),
         # The pattern may run straight from point to point or bend between them: evenly likely over the sag.
         u_px=np.hypot(trace.place_u_px, sag_px / np.sqrt(3)),
-        u_bridge_px=np.where(floor, 0.5 * floor_px, np.where(jumped, BRIDGE_SHARE * outer_px * line.jump_rho, 0.0)),
+        u_bridge_px=np.where(
+            floor, 0.5 * floor_px, np.where(jumped, BRIDGE_SHARE * outer_px * line.jump_rho, 0.0)
+        ),
         slope=np.where(has, line.slope, 0.0),
         radial_share=np.where(has, line.radial_share, 1.0),
         state=state,
@@ -143,9 +156,16 @@ def _vector_trace(chain, ink, dash, filled, name, grid, page):
     u, v = rho * np.sin(np.radians(plane)), -rho * np.cos(np.radians(plane))
     return VectorTrace(
         ink="#" + "".join(f"{round(float(np.clip(c, 0, 255))):02x}" for c in ink),
-        dash=dash, width_px=chain.look.width, rho=rho, plane_deg=plane, vertex=chain.vertex, filled=filled, name=name,
-        place_u_px=PLACE_PT * page.px_per_pt, length=float(np.nansum(np.hypot(np.diff(u), np.diff(v)))),
-    )  # fmt: skip
+        dash=dash,
+        width_px=chain.look.width,
+        rho=rho,
+        plane_deg=plane,
+        vertex=chain.vertex,
+        filled=filled,
+        name=name,
+        place_u_px=PLACE_PT * page.px_per_pt,
+        length=float(np.nansum(np.hypot(np.diff(u), np.diff(v)))),
+    )
 
 
 def _uncovered(trace, grid, covers):

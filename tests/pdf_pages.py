@@ -1,4 +1,4 @@
-"""A small writer of PDF pages (ISO 32000-1), for charts drawn in ways that a plotting library does not draw them."""
+"""A small writer of PDF pages (ISO 32000-1), for charts drawn in ways that no plotting library draws."""
 
 import io
 import zlib
@@ -56,7 +56,9 @@ def form(content, matrix=(1, 0, 0, 1, 0, 0), box=(-2000, -2000, 2000, 2000)):
 
 def bitmap(rgb, *, jpeg=False):
     """An image XObject of (h, w, 3) uint8."""
-    entries = f"/Type /XObject /Subtype /Image /Width {rgb.shape[1]} /Height {rgb.shape[0]} /ColorSpace /DeviceRGB /BitsPerComponent 8 "
+    height, width = rgb.shape[:2]
+    entries = f"/Type /XObject /Subtype /Image /Width {width} /Height {height} "
+    entries += "/ColorSpace /DeviceRGB /BitsPerComponent 8 "
     if jpeg:
         from PIL import Image
 
@@ -74,7 +76,8 @@ def curve_circle(x, y, radius):
     for (ax, ay), (bx, by) in zip(corners, corners[1:] + corners[:1], strict=True):
         tx, ty = -ay / radius * k, ax / radius * k
         ux, uy = by / radius * k, -bx / radius * k
-        out += f"{x + ax + tx:.4f} {y + ay + ty:.4f} {x + bx + ux:.4f} {y + by + uy:.4f} {x + bx:.4f} {y + by:.4f} c\n"
+        points = (x + ax + tx, y + ay + ty, x + bx + ux, y + by + uy, x + bx, y + by)
+        out += " ".join(f"{v:.4f}" for v in points) + " c\n"
     return out + "h S\n"
 
 
@@ -96,7 +99,10 @@ def dash_circle(x, y, radius, n=60):
 
 def line(x, y, *, close=False, paint="S", digits=4):
     """A path through points."""
-    points = [f"{a:.{digits}f} {b:.{digits}f} {'l' if k else 'm'}" for k, (a, b) in enumerate(zip(x, y, strict=True))]
+    points = [
+        f"{a:.{digits}f} {b:.{digits}f} {'l' if k else 'm'}"
+        for k, (a, b) in enumerate(zip(x, y, strict=True))
+    ]
     return "\n".join(points) + (" h " if close else " ") + paint + "\n"
 
 
@@ -113,7 +119,9 @@ def text(x, y, words, size=8.0, *, turn_deg=0.0, mode=0):
     """Words with their lower left corner at a point."""
     c, s = np.cos(np.radians(turn_deg)), np.sin(np.radians(turn_deg))
     escaped = words.replace("(", r"\(").replace(")", r"\)")
-    return f"BT {mode} Tr /F1 {size} Tf {c:.5f} {s:.5f} {-s:.5f} {c:.5f} {x:.3f} {y:.3f} Tm ({escaped}) Tj ET\n"
+    return (
+        f"BT {mode} Tr /F1 {size} Tf {c:.5f} {s:.5f} {-s:.5f} {c:.5f} {x:.3f} {y:.3f} Tm ({escaped}) Tj ET\n"
+    )
 
 
 def polar(x, y, rho, page_deg):

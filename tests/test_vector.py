@@ -6,8 +6,16 @@ import pytest
 from digitise.picture import open_picture
 from digitise.vector import find_vector_charts, followed, page_labels, trace_at
 from tests.pdf_pages import (
-    chord_circle, curve_circle, dash_circle, form, line, pdf_file, polar, spokes, text,
-)  # fmt: skip
+    chord_circle,
+    curve_circle,
+    dash_circle,
+    form,
+    line,
+    pdf_file,
+    polar,
+    spokes,
+    text,
+)
 
 X, Y, R = 200.0, 190.0, 150.0  # points
 SPAN_DB = 40.0  # from the rim to the centre
@@ -23,14 +31,17 @@ def lobes(deg=DEG):
 
 
 def radius(level_db):
+    """Points from the centre."""
     return R * (1 + level_db / SPAN_DB)
 
 
 def rings(draw=curve_circle, x=X, y=Y, outer=R, n=4):
+    """Even rings, drawn in one of several ways."""
     return "".join(draw(x, y, outer * (k + 1) / n) for k in range(n))
 
 
 def trace(level_db=None, deg=DEG, *, x=X, y=Y, close=True, paint="S"):
+    """The pattern, or other levels, as one path."""
     level_db = lobes(deg) if level_db is None else level_db
     return line(*polar(x, y, radius(level_db), deg), close=close, paint=paint)
 
@@ -68,7 +79,7 @@ def misfit_db(found, level_db=None, deg=DEG, plane_deg=None):
 
 
 def test_a_plain_chart_is_read_to_a_hundredth_of_a_decibel(opened):
-    """Bezier rings, spokes, one closed trace: grid in place, pattern to 0.01 dB, colour and width as drawn."""
+    """Bezier rings, spokes, a closed trace: grid in place, pattern to 0.01 dB, colour and width as drawn."""
     picture = opened(chart())
 
     found = read(picture)
@@ -121,7 +132,7 @@ def strokes():
 
 
 def through_data_units():
-    """The trace in units of its own, wider than high, under a matrix: level along x, bearing's sine along y."""
+    """The trace in units of its own under a matrix that scales x and y differently."""
     x, y = polar(0, 0, 1 + lobes() / SPAN_DB, DEG)
     matrix = f"q {R / 40} 0 0 {R / 9} {X} {Y} cm\n"
     return matrix + "0.2 w\n" + line(x * 40, y * 9, close=True, digits=6) + "Q\n"
@@ -129,7 +140,12 @@ def through_data_units():
 
 @pytest.mark.parametrize(
     ("drawn", "where"),
-    [(pieces(), DEG), (strokes(), np.arange(0, 360, 5.0) + 1), (through_data_units(), DEG), (trace(paint="B"), DEG)],
+    [
+        (pieces(), DEG),
+        (strokes(), np.arange(0, 360, 5.0) + 1),
+        (through_data_units(), DEG),
+        (trace(paint="B"), DEG),
+    ],
     ids=["segments", "strokes", "data-units", "stroked-and-filled"],
 )
 def test_traces_drawn_in_other_ways(opened, drawn, where):
@@ -259,11 +275,17 @@ def test_a_box_chooses_its_chart(opened):
 
 
 def test_what_is_no_trace(opened):
-    """Legend samples and boxes, arcs, marked lobe edges, letters drawn as outlines and arrows are left out."""
+    """Legend samples and boxes, arcs, marked lobe edges, outlined letters and arrows are left out."""
     legend = "1 1 1 rg 0 0 0 RG 0.5 w 60 300 80 30 re B\n" + INK + line([66, 86], [315, 315])
     arc = "0 0 1 RG 1 w\n" + chord_circle(X, Y, 80, 30, (10.0, 70.0))
-    edges = "0 0 1 RG 1 w\n" + line(*polar(X, Y, np.array([0, R]), 35.0)) + line(*polar(X, Y, np.array([0, R]), 5.0))
-    letter = "0 0 0 rg\n" + line(X + 30 + 9 * np.sin(np.arange(40)), Y + 40 + 9 * np.cos(2 * np.arange(40)), close=True, paint="f")
+    edges = (
+        "0 0 1 RG 1 w\n"
+        + line(*polar(X, Y, np.array([0, R]), 35.0))
+        + line(*polar(X, Y, np.array([0, R]), 5.0))
+    )
+    letter = "0 0 0 rg\n" + line(
+        X + 30 + 9 * np.sin(np.arange(40)), Y + 40 + 9 * np.cos(2 * np.arange(40)), close=True, paint="f"
+    )
     arrow = "0 0 0 RG\n" + line([X, X + 60, X + 52, X + 60, X + 52], [Y, Y + 80, Y + 78, Y + 80, Y + 72])
     found = read(opened(chart() + legend + arc + edges + letter + arrow))
 
@@ -306,7 +328,9 @@ def test_pieces_with_the_pen_up(opened):
 
 def test_a_trace_into_the_centre_is_at_the_floor(opened):
     """Where the pattern's line goes into the centre, the bearings beyond it are at the floor."""
-    level = np.where(np.abs(DEG - 180) < 100, 20 * np.log10(np.maximum(np.cos(np.radians((DEG - 180) * 0.9)), 1e-9)), -99)
+    level = np.where(
+        np.abs(DEG - 180) < 100, 20 * np.log10(np.maximum(np.cos(np.radians((DEG - 180) * 0.9)), 1e-9)), -99
+    )
     level = np.maximum(level, -SPAN_DB)
     found = read(opened(GRID + rings() + spokes(X, Y, R) + INK + trace(level)))
 
@@ -325,7 +349,9 @@ def test_the_outermost_crossing_counts(opened):
     found = read(opened(GRID + rings() + spokes(X, Y, R) + INK + trace(level, deg, close=False)))
 
     first_pass = level[np.flatnonzero(deg == 110)[0]]
-    assert SPAN_DB * (trace_at(found.traces[0], np.array([110.0]))[0] - 1) == pytest.approx(first_pass, abs=WITHIN_DB)
+    assert SPAN_DB * (trace_at(found.traces[0], np.array([110.0]))[0] - 1) == pytest.approx(
+        first_pass, abs=WITHIN_DB
+    )
 
 
 def test_texts_are_placed_and_told_apart(opened):
@@ -334,7 +360,12 @@ def test_texts_are_placed_and_told_apart(opened):
     for deg in range(0, 360, 30):
         x, y = polar(X, Y, R + 14, float(deg))
         words += text(x - 2.2 * len(str(deg)), y - 3, f"{deg}")
-    words += text(120, 385, "Invented panel, azimuth", 11) + INK + line([20, 40], [20, 20]) + text(46, 17, "Port one")
+    words += (
+        text(120, 385, "Invented panel, azimuth", 11)
+        + INK
+        + line([20, 40], [20, 20])
+        + text(46, 17, "Port one")
+    )
     found = read(opened(chart() + words))
 
     ring = {(item.text, item.value, item.unit) for item in found.labels.with_role("ring")}
@@ -351,7 +382,8 @@ def test_texts_are_placed_and_told_apart(opened):
 def test_a_minus_drawn_as_a_bar_counts(opened):
     """Some programs set the minus sign as a small filled shape, not as a letter."""
     words = "".join(
-        text(X + 10, Y + R * k / 4 - 3, f"{40 - 10 * k}") + f"0 g {X + 4.5:.2f} {Y + R * k / 4 - 0.6:.2f} 4.2 0.6 re f\n"
+        text(X + 10, Y + R * k / 4 - 3, f"{40 - 10 * k}")
+        + f"0 g {X + 4.5:.2f} {Y + R * k / 4 - 0.6:.2f} 4.2 0.6 re f\n"
         for k in (1, 2, 3)
     )
     found = read(opened(chart() + words + text(X + 10, Y + R - 3, "0")))
@@ -382,7 +414,8 @@ def test_a_grid_without_a_drawn_trace(opened):
     "content",
     [
         "",
-        "".join(line([20, 380], [y, y]) for y in range(20, 380, 20)) + "".join(line([x, x], [20, 380]) for x in range(20, 380, 30)),
+        "".join(line([20, 380], [y, y]) for y in range(20, 380, 20))
+        + "".join(line([x, x], [20, 380]) for x in range(20, 380, 30)),
         curve_circle(100, 100, 30) + curve_circle(250, 260, 60) + curve_circle(300, 100, 45),
         curve_circle(200, 200, 80),
     ],
@@ -403,7 +436,7 @@ def test_a_picture_of_pixels_has_no_drawn_chart(tmp_path):
 
 
 def test_the_error_holds_what_thinned_points_lose(opened):
-    """A smooth pattern drawn with a point every 4 degrees strays from its chords by no more than the error says."""
+    """A smooth pattern drawn with a point every 4 degrees strays from its chords as the error says."""
     deg = np.arange(0, 360, 4.0)
     found = read(opened(GRID + rings() + spokes(X, Y, R) + INK + trace(lobes(deg) - 0.5, deg)))
 
