@@ -416,9 +416,9 @@ def test_fast_enough_for_every_reading():
     figures_of(table)
     best = math.inf
     for _ in range(5):
-        start = time.perf_counter()
+        start = time.process_time()
         figures_of(table)
-        best = min(best, time.perf_counter() - start)
+        best = min(best, time.process_time() - start)
 
     assert best < 0.06
 
