@@ -1,9 +1,15 @@
 """Charts drawn with lines in a PDF: their own numbers are read back, however the program drew them."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
+from digitise.bearing import make_bearing
 from digitise.picture import open_picture
+from digitise.reading import read_charts
+from digitise.scale import make_scale
+from digitise.settings import Settings
 from digitise.vector import find_vector_charts, followed, page_labels, trace_at
 from tests.pdf_pages import (
     chord_circle,
@@ -377,6 +383,95 @@ def test_texts_are_placed_and_told_apart(opened):
     assert [item.text for item in found.labels.with_role("caption")] == ["Invented panel, azimuth"]
     assert found.traces[0].name == "Port one"
     assert [item.text for item in found.labels.with_role("legend")] == ["Port one"]
+
+
+@pytest.mark.parametrize(("anchor", "safe"), [("left", True), ("middle", True), ("below", False)])
+def test_ring_labels_name_their_rings(opened, anchor, safe):
+    """Levels printed beside their rings name them; half-way between two rings they do, but it is not safe."""
+    words = ""
+    for k in range(1, 9):
+        level = f"{5 * k - 40}"
+        x, y = polar(X, Y, R * k / 8, 70.0)
+        wide = 4.4 * len(level)
+        words += text(
+            x + {"left": 1, "middle": -wide / 2, "below": -wide}[anchor],
+            y - (9 if anchor == "below" else 3),
+            level,
+        )
+    content = GRID + rings(n=8) + spokes(X, Y, R) + INK + trace()
+    labels = read(opened(content + words)).labels
+
+    named = {item.value: item.ring_rho for item in labels.with_role("ring")}
+    assert named == pytest.approx({5.0 * k - 40: k / 8 for k in range(1, 9)}, abs=1e-6)
+    assert labels.ring_safe == safe
+
+
+def test_scale_and_bearing_from_the_page_text(opened):
+    """With levels and bearings printed the chart is read with nothing told: 0 right, turning left."""
+    words = "".join(text(X + 3, Y + R * k / 4 - 3, f"{8 * k - 32} dB") for k in (1, 2, 3, 4))
+    for deg in range(0, 360, 45):
+        x, y = polar(X, Y, R + 16, 90.0 - deg)
+        words += text(x - 2.2 * len(str(deg)), y - 3, f"{deg}\xb0")
+    found = read(opened(chart() + words))
+    settings = Settings()
+
+    scale = make_scale(found.grid, settings=settings, labels=found.labels)
+    bearing = make_bearing(found.grid, settings=settings, labels=found.labels)
+
+    assert not scale.reasons
+    assert not bearing.reasons
+    assert scale.law == "even"
+    assert scale.level(np.array([1.0, 0.5])) == pytest.approx([0, -16], abs=1e-4)
+    assert (bearing.zero_deg, bearing.turn) == (pytest.approx(90, abs=1e-3), "ccw")
+
+
+def library_page(path, level_db, *, thinned):
+    """A polar chart written by matplotlib; `thinned` leaves the library's own thinning of long lines on."""
+    import matplotlib as mpl
+    from matplotlib.backends.backend_pdf import FigureCanvasPdf
+    from matplotlib.figure import Figure
+
+    with mpl.rc_context({"path.simplify": thinned}):
+        figure = Figure(figsize=(6, 6))
+        FigureCanvasPdf(figure)
+        axes = figure.add_subplot(projection="polar", theta_offset=np.pi / 2, theta_direction=-1)
+        axes.plot(np.radians(np.arange(361)), np.append(level_db, level_db[0]), label="Invented antenna")
+        axes.set_rlim(-SPAN_DB, 0)
+        axes.set_rticks([-40, -30, -20, -10, 0])
+        axes.legend(loc="lower left", bbox_to_anchor=(-0.12, -0.12))
+        figure.savefig(path)
+
+
+@pytest.mark.parametrize(("thinned", "within_db"), [(False, 1e-3), (True, 0.05)])
+def test_a_plotting_library_page(tmp_path, thinned, within_db):
+    """A page by another program is read to 0.001 dB; what its thinning of lines loses stays lost."""
+    library_page(tmp_path / "page.pdf", lobes(), thinned=thinned)
+
+    found = read(open_picture(tmp_path / "page.pdf"))
+
+    assert found.traces[0].name == "Invented antenna"
+    assert found.traces[0].ink == "#1f77b4"
+    assert misfit_db(found.traces[0]) < within_db
+    assert {item.value for item in found.labels.with_role("ring")} >= {-30.0, -20.0, -10.0, 0.0}
+
+
+def test_drawn_lines_and_pixels_agree(tmp_path):
+    """The same page read from its lines and its pixels: the tables differ by no more than their errors."""
+    library_page(tmp_path / "page.pdf", lobes(), thinned=False)
+    picture = open_picture(tmp_path / "page.pdf")
+    settings = Settings(outer_db=0, centre_db=-SPAN_DB, zero_deg=0, turn="cw")
+    pixels = read_charts(replace(picture, vector=None), settings=settings)[0]
+    drawn = read(picture)
+
+    level = SPAN_DB * (trace_at(drawn.traces[0], DEG) - 1)
+    table = pixels.traces[0].table
+    off = np.abs(table.chart_db - level)
+    assert len(pixels.traces) == 1
+    assert pixels.grid.centre_x == pytest.approx(drawn.grid.centre_x, abs=0.1)
+    assert pixels.grid.outer_px == pytest.approx(drawn.grid.outer_px, abs=0.2)
+    assert np.median(off) < 0.03
+    assert np.percentile(off, 95) < 0.2
+    assert np.mean(off <= table.error95_db + 0.002) > 0.9
 
 
 def test_a_minus_drawn_as_a_bar_counts(opened):
