@@ -17,6 +17,9 @@ N_DIRECTIONS = 12
 LEAST_PIECES = 8  # fewer loose pieces of one size are text
 LEAST_SECTORS = {True: 5, False: 2}  # of 36, of a text-like ink or not: text stands on one ray, a trace goes round
 SPECK_EXTENT = 0.16  # of the outer radius: a larger loose piece is a trace
+DOTTED = 3.0  # diagonal over mean width below which a piece is a dot (a round dot has 2.6, a dash of 3:1 has 3.3)
+DOT_PITCHES = 1.8  # dots further apart than this many of their usual distances are not neighbours
+MOST_DOTS = 2000
 THIN_PX = 2.6  # dashes at least this wide are bridged at half resolution: the bridge only guides the path
 
 
@@ -26,6 +29,7 @@ class Pieces:
 
     dash, speck : (h, w) bool masks; dashed : whether there are enough dashes to make a trace
     length_px, width_px : of the typical dash, NaN when not dashed
+    middles : (n, 2) x, y of the dashes, px
     """
 
     dash: np.ndarray
@@ -33,6 +37,7 @@ class Pieces:
     dashed: bool
     length_px: float
     width_px: float
+    middles: np.ndarray
 
 
 def find_pieces(cover, hidden, sheet, level, *, text_like):
@@ -53,7 +58,7 @@ def find_pieces(cover, hidden, sheet, level, *, text_like):
     alike, length, width = _alike(whole & (area >= 3), extent, area, middle, sheet, text_like)
     dash = loose & (extent < 1.6 * length) & (alike | (contacts == 1)) if alike.any() else alike
     speck = whole & ~dash & (extent < SPECK_EXTENT * sheet.outer_px) & text_like
-    return Pieces(dash=dash[piece], speck=speck[piece], dashed=bool(dash.any()), length_px=length, width_px=width)
+    return Pieces(dash=dash[piece], speck=speck[piece], dashed=bool(dash.any()), length_px=length, width_px=width, middles=middle[dash])
 
 
 def _contacts(ink, piece, n, hidden):
@@ -82,21 +87,43 @@ def _alike(loose, extent, area, middle, sheet, text_like):
 def bridge_dashes(cover, pieces, level):
     """Coverage-like map, (h, w) float32, high on dashes and in the gaps between them."""
     length, width = pieces.length_px, pieces.width_px
+    if length < DOTTED * width:
+        return _joined_dots(cover.shape, pieces)
     reduction = 1 if width < THIN_PX else 2
     small = np.clip(cover / level, 0, 1)
     if reduction > 1:
         small = cv2.resize(small, None, fx=1 / reduction, fy=1 / reduction, interpolation=cv2.INTER_AREA)
     small = (np.clip(small * 1.5, 0, 1) * 255).astype(np.uint8)
-    dotted = length < 2.0 * width
     keep = max(3, round(max(0.6 * length, min(1.7 * width, 0.85 * length)) / reduction))
-    reach = max(3, round((2.6 * width + 2 if dotted else 1.25 * length + width) / reduction))
+    reach = max(3, round((1.25 * length + width) / reduction))
     out = np.zeros_like(small)
     for k in range(N_DIRECTIONS):
         angle = np.pi * k / N_DIRECTIONS
-        strokes = small if dotted else cv2.morphologyEx(small, cv2.MORPH_OPEN, _line(keep, angle))
+        strokes = cv2.morphologyEx(small, cv2.MORPH_OPEN, _line(keep, angle))
         np.maximum(out, cv2.morphologyEx(strokes, cv2.MORPH_CLOSE, _line(reach, angle)), out=out)
     bridged = cv2.resize(out, cover.shape[::-1], interpolation=cv2.INTER_LINEAR)
     return bridged.astype(np.float32) / 255
+
+
+def _joined_dots(shape, pieces):
+    """Lines between dots that are next to each other: a dot has no direction of its own to close along."""
+    dots = pieces.middles[:MOST_DOTS].astype(np.float32)
+    distance = np.hypot(dots[:, None, 0] - dots[None, :, 0], dots[:, None, 1] - dots[None, :, 1])
+    np.fill_diagonal(distance, np.inf)
+    first = distance.argmin(axis=1)
+    pitch = np.median(distance[np.arange(len(dots)), first])
+    # The other neighbour lies on the other side: two lobes side by side must not be laced together.
+    towards = dots[first] - dots
+    opposite = (dots[None, :, :] - dots[:, None, :]) @ towards[:, :, None]
+    other = np.where(opposite[:, :, 0] < 0, distance, np.inf)
+    second = other.argmin(axis=1)
+    out = np.zeros(shape, np.uint8)
+    for i in range(len(dots)):
+        for j, away in ((first[i], distance[i, first[i]]), (second[i], other[i, second[i]])):
+            if away < DOT_PITCHES * pitch:
+                a, b = (tuple(np.round(dots[k] * 16).astype(int).tolist()) for k in (i, j))
+                cv2.line(out, a, b, 255, max(1, round(pieces.width_px)), cv2.LINE_AA, 4)
+    return out.astype(np.float32) / 255
 
 
 def _weighted_median(values, weights):

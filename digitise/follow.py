@@ -23,6 +23,8 @@ SPECK_WORTH = 0.25  # worth of ink in loose pieces, of ink in a line
 TOO_DEEP = 0.5  # cost of running deeper in solid ink than the line is wide
 LEFT_ABOVE = 0.4  # cost of leaving ink above the path
 FLOOR_COST = 0.8  # cost of the centre: dearer than dashes, cheaper than bare paper
+HUB_RHO = 0.08  # nearer to the centre lines merge and prove nothing
+HUB_WIDTHS = 4.0  # nearer to the centre than this many line widths, flanks of lobes merge
 SAMPLES_PER_DEG = 20  # of the level curve that rows are read from
 
 
@@ -38,6 +40,7 @@ class Trace:
     radial_share : (n,) how much of a shift along the normal is radial, 0 to 1 (cosine of the line's slant)
     state : (n,) str, one of table.STATES
     clear : (n,) bool, the line stands alone there: its whole profile was seen
+    support : share of the path, away from the centre, on ink or on a bridged gap of dashes
     width_px : drawn line width, sheet px; sheet_outer_px : sheet px per unit rho
     """
 
@@ -49,6 +52,7 @@ class Trace:
     radial_share: np.ndarray
     state: np.ndarray
     clear: np.ndarray
+    support: float
     width_px: float
     sheet_outer_px: float
 
@@ -89,7 +93,7 @@ def follow_trace(layer, sheet, frame, *, fill=0.0, pins=(), solid=False):
     enter, leave = cheapest_path(cost, paper, closed=frame.whole)
     if np.mean(np.maximum(enter, leave) < floor_rows) > 0.98:
         return None
-    return _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill)
+    return _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink)
 
 
 def _line_peak(layer, sheet):
@@ -142,19 +146,23 @@ def _costs(ink, hidden, depth, floor_rows):
     return cost, paper
 
 
-def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill):
+def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink):
     columns, rows = _walk(enter, leave)
+    away = rows > max(2 * floor_rows, HUB_RHO * frame.outer_rows)
+    support = float(ink[columns[away], rows[away]].mean()) if away.any() else 0.0
     plane = frame.angles[columns]
     x, y = sheet.to_sheet(rows / frame.outer_rows, plane)
     x, y, plane = _evenly(x, y, plane)
     rho = np.hypot(*sheet.to_plane(x, y)) * sheet.outer_px
     course = refine_course(x, y, layer.body, layer.hidden, rho, fill=fill)
-    u, v = sheet.to_plane(course.x, course.y)
+    # Where lines have merged at the hub the path's own place is as good, and its angles are in order.
+    merged = (course.kind > 0) & (rho < HUB_WIDTHS * max(course.width_px, 1.0))
+    u, v = sheet.to_plane(np.where(merged, x, course.x), np.where(merged, y, course.y))
     rho = np.hypot(u, v)
     # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.
     bearing = plane + ((np.degrees(np.arctan2(u, -v)) - plane + 180) % 360 - 180)
     at_centre = np.maximum(enter, leave) < floor_rows
-    return _resample(course, rho, bearing, at_centre, floor_rows / frame.reduction, frame, sheet)
+    return _resample(course, rho, bearing, at_centre, floor_rows / frame.reduction, frame, sheet, support)
 
 
 def _walk(enter, leave):
@@ -178,7 +186,7 @@ def _evenly(x, y, plane):
     return tuple(np.interp(at, length[keep], values[keep]) for values in (xs, ys, plane))
 
 
-def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet):
+def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet, support):
     """Level curve on an even angle grid, from the samples in order along the path."""
     step = 1.0 / SAMPLES_PER_DEG
     angles = frame.angles
@@ -206,6 +214,6 @@ def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet):
     slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
     return Trace(
         plane_deg=grid_deg, rho=curve, u_px=at(course.u_px), u_bridge_px=bridge, slope=slope, radial_share=slant,
-        state=state, clear=kind < 0.5,
+        state=state, clear=kind < 0.5, support=support,
         width_px=course.width_px / sheet.reduction, sheet_outer_px=sheet.outer_px,
     )  # fmt: skip

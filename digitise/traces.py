@@ -13,7 +13,7 @@ import numpy as np
 from ._frame import make_frame
 from ._grid_cover import remove_grid
 from .exceptions import NotReadError
-from .follow import Trace, follow_trace
+from .follow import HUB_RHO, Trace, follow_trace
 from .ink import find_inks, separate_ink
 
 __all__ = ["FoundTrace", "find_traces"]
@@ -21,9 +21,9 @@ __all__ = ["FoundTrace", "find_traces"]
 MOST_PER_INK = 4
 LEAST_LENGTH = 0.5  # outer radii: ink along a path that is worth returning in doubt
 LEAST_STRETCH = 0.45  # outer radii: ink along the longest well-inked stretch of a trace
-LEAST_ON_INK = 0.30  # share of the path on ink; dotted lines have about a third
+LEAST_ON_INK = 0.18  # share of ink in a window of a dotted line
 SOLID_ON_INK = 0.85  # the same of a solid line
-HUB_RHO = 0.08  # nearer to the centre lines merge and prove nothing
+DASHED_SUPPORT = 0.6  # the same of a dashed line, its gaps bridged
 TOLD_REACH_DEG = 30.0  # a told colour may be this far in direction from the ink on the picture (JPEG, scans)
 
 
@@ -115,9 +115,10 @@ def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist):
         if trace is None:
             continue
         evidence = _evidence(trace, layer, sheet, fill)
-        sure = evidence.stretch > LEAST_STRETCH and evidence.share > (SOLID_ON_INK if solid else LEAST_ON_INK)
+        inked = evidence.share > SOLID_ON_INK if solid else trace.support > DASHED_SUPPORT
+        sure = evidence.stretch > LEAST_STRETCH and inked
         item = FoundTrace(
-            ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length, doubt=1 - evidence.share
+            ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length, doubt=1 - (evidence.share if solid else trace.support)
         )
         if sure and not _is_ring(trace, grid):
             return replace(item, doubt=0.0)
