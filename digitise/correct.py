@@ -21,6 +21,7 @@ HAND_U_PX = 0.4  # standard uncertainty of a point set by hand under a loupe; a 
 LEAST_APART_PX = 2.0  # two rings nearer than this are one line
 SETTLE_REACH_PX = (7.0, 4.0, 3.0)  # half lengths of the cuts across a line, round by round
 LEAST_POINTS = 12  # on a ring, for it to take part
+LEAST_SHARE = 0.25  # of a ring's cuts that must find a line, likewise: a line that only crosses it is another one
 PLACES = np.array([2, 5])  # of the centre's x and y among the homography's first eight entries
 SIZES = np.array([0, 1, 3, 4])  # of the entries that hold size, turn and stretch
 
@@ -107,7 +108,7 @@ def settle_grid(picture, grid):
             ring_points(full, plane, r, arc_deg=grid.arc_deg, reach_px=max(reach, w / 2 + 2.5))
             for r, w in zip(rho, grid.ring_width_px)
         ]
-        found = np.array([points.good.sum() >= LEAST_POINTS for points in rings])
+        found = np.array([points.good.sum() >= max(LEAST_POINTS, LEAST_SHARE * len(points.good)) for points in rings])
         if not found.any():
             raise NotReadError(
                 f"no drawn ring lies within {SETTLE_REACH_PX[0]:.0f} px of the grid", stage="grid",

@@ -8,8 +8,8 @@ from digitise.exceptions import DigitiseError, UsageError
 from . import flow
 from .clipboard import pasted_source
 from .dialogs import AskUnsaved, SaveDialog, ask_picture, show_keys
-from .lists import table_text
 from .pages import SIZE_PX, PageChooser, look_at_pages
+from .table_text import table_text
 from .words import said
 
 __all__ = ["Actions", "sample_pictures"]

@@ -7,7 +7,7 @@ from digitise.exceptions import DigitiseError, UsageError
 from digitise.settings import LAWS, ZERO_WORDS
 
 from .found_words import found_words
-from .level_editor import read_level
+from .level_text import read_level
 from .told_list import TraceList, ToldList
 from .words import fault_field, said
 

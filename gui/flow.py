@@ -109,7 +109,7 @@ def save_charts(state, folder):
 def _find(state):
     """The state with its charts found, each with the settings of the one that was there before."""
     template, picture = state.template, state.picture
-    boxes = state.kept.result(find_charts, picture, crop=template.crop)
+    boxes = state.kept.result(_charts_in, picture, template.crop)
     if not boxes:
         fault = NotReadError(
             "no polar chart was found on the picture", stage="find",
@@ -123,6 +123,10 @@ def _find(state):
         charts.append(Chart(settings=replace(settings, crop=template.crop, page=template.page, chart=chart), box=box))
     at = min(state.at, len(charts) - 1)
     return replace(state, charts=tuple(charts), at=at, before=(), fault=None)
+
+
+def _charts_in(picture, crop):
+    return find_charts(picture, crop=crop)
 
 
 def _settings_there(box, before):

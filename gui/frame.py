@@ -112,8 +112,10 @@ def _area(frame, box):
     x, y, w, h = box
     x0, y0 = frame.place(x - 0.5, y - 0.5)
     x1, y1 = frame.place(x + w - 0.5, y + h - 0.5)
-    clip = [int(np.clip(round(value), 0, most)) for value, most in zip((x0, x1, y0, y1), (frame.width,) * 2 + (frame.height,) * 2)]
-    return np.s_[clip[2] : clip[3], clip[0] : clip[1]]
+    # A view px belongs to the box when its centre does.
+    left, right = (int(np.clip(np.ceil(value), 0, frame.width)) for value in (x0, x1))
+    top, bottom = (int(np.clip(np.ceil(value), 0, frame.height)) for value in (y0, y1))
+    return np.s_[top:bottom, left:right]
 
 
 def _faded(pixels):

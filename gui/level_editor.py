@@ -1,18 +1,17 @@
 """The small field beside a ring in which its level is typed, with its fault under it."""
 
-import math
 import tkinter as tk
 from tkinter import ttk
 
 from digitise.exceptions import UsageError
 
+from .level_text import read_level
 from .theme import COLOURS
 from .words import said
 
-__all__ = ["LevelEditor", "read_level"]
+__all__ = ["LevelEditor"]
 
 WIDTH_PX, HEIGHT_PX = 230, 60  # design px, about
-ALSO_MINUS = str.maketrans({"\u2212": "-", "\u2013": "-", ",": "."})  # as copied text and other tongues write
 
 
 class LevelEditor:
@@ -79,17 +78,3 @@ class LevelEditor:
         self.view.hand.asks = self.view.hand.asks_mark = None
         self.view.canvas.focus_set()
         return "break"
-
-
-def read_level(text):
-    """A level typed by a person, dB; raises `UsageError`."""
-    plain = text.strip().translate(ALSO_MINUS).lower()
-    for unit in ("dbi", "dbd", "db"):
-        plain = plain.removesuffix(unit).strip()
-    try:
-        value = float(plain)
-    except ValueError:
-        value = math.nan
-    if not math.isfinite(value):
-        raise UsageError(f"\u201c{text.strip()}\u201d is not a number" if text.strip() else "type a level in dB")
-    return value

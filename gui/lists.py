@@ -11,7 +11,7 @@ from digitise.table import write_table
 from .review_list import ReviewList
 from .theme import COLOURS
 
-__all__ = ["Lists", "table_text"]
+__all__ = ["Lists"]
 
 COLUMNS = (  # column of the table, heading
     ("angle_deg", "bearing \u00b0"),
@@ -175,10 +175,3 @@ def figure_words(item):
     at = f" at {item.at_deg:.0f}\u00b0" if np.isfinite(item.at_deg) else ""
     unit = "\u00b0" if item.unit == "deg" else f" {item.unit}"
     return f"{item.bound} {value} \u00b1 {error}{unit}{at}".strip()
-
-
-def table_text(table, rows=None):
-    """The table as tab-separated text, as spreadsheets paste it: all rows, or some by their index."""
-    head, *lines = write_table(table).splitlines()
-    chosen = lines if rows is None else [lines[k] for k in rows]
-    return "\n".join(line.replace(",", "\t") for line in [head, *chosen]) + "\n"

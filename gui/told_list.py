@@ -47,7 +47,7 @@ class ToldList:
                 self.frame, text=mark + words, style="Small.TButton", command=lambda k=k: self._hold(k)
             )
             button.grid(row=k, column=0, sticky="ew", pady=1)
-            remove = ttk.Button(self.frame, text="remove", style="Small.TButton", command=lambda k=k: self._drop(k))
+            remove = ttk.Button(self.frame, text="\u00d7", style="Small.TButton", command=lambda k=k: self._drop(k))
             remove.grid(row=k, column=1, padx=(self.look.px(3), 0), pady=1)
 
     def say(self, words):

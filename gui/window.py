@@ -3,6 +3,8 @@
 import tkinter as tk
 from tkinter import ttk
 
+import numpy as np
+
 from . import flow
 from .actions import Actions, sample_pictures
 from .chart_view import ChartView
@@ -12,7 +14,7 @@ from .hand import TOOLS, Hand
 from .keys import COMMANDS, command, groups
 from .lists import Lists
 from .place_menu import open_place_menu
-from .redraw_view import RedrawView
+from .redraw_view import RedrawView, row_at
 from .session import Session
 from .theme import COLOURS, Look
 from .welcome import Welcome
@@ -341,11 +343,11 @@ class Window:
             rho, plane = (float(value) for value in reading.grid.to_plane(x_px, y_px))
             bearing = float(reading.bearing.from_plane(plane))
             level = float(reading.scale.level(rho))
-            words += f"   {bearing:.1f}\u00b0   {level:.2f} dB here" if level > -1e3 else f"   {bearing:.1f}\u00b0"
+            words += f"   {bearing:.1f}\u00b0"
+            if np.isfinite(level):
+                words += f"   {round(level, 2) + 0.0:.2f} dB here"
             trace = self.session.shown_trace
             if trace is not None and rho < 1.3:
-                from .redraw_view import row_at
-
                 self.row_pointed(row_at(trace.table, bearing))
         self.place.configure(text=words)
 
