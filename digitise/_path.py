@@ -12,6 +12,7 @@ __all__ = ["cheapest_path"]
 
 CLIMB_PER_ROW = 0.12  # cost of climbing one row of paper, in columns of paper
 CLIMB_ON_INK = 0.003  # cost of climbing one row of ink: small, but a detour is never free
+LOOK_AROUND = 240  # columns to either side that settle where a closed path starts
 
 
 def cheapest_path(cost, paper, *, closed):
@@ -30,24 +31,24 @@ def cheapest_path(cost, paper, *, closed):
     climb = np.cumsum(paper * np.float32(CLIMB_PER_ROW) + np.float32(CLIMB_ON_INK), axis=1, dtype=np.float32)
     if not closed:
         return _solve(cost, climb, np.zeros(cost.shape[1], np.float32))
-    shift, start = _certain_start(cost)
+    shift = _certain_column(cost)
+    # The row to start and end at is where the best path over the columns around it crosses.
+    around = np.arange(-LOOK_AROUND, LOOK_AROUND + 1) + shift
+    around = around % len(cost) if len(cost) > len(around) else (np.arange(len(cost)) + shift - len(cost) // 2) % len(cost)
+    start = _solve(cost[around], climb[around], np.zeros(cost.shape[1], np.float32))[0][len(around) // 2]
     rolled, rolled_climb = np.roll(cost, -shift, axis=0), np.roll(climb, -shift, axis=0)
-    if start is None:
-        # Two turns fix the closing row: the second turn starts from what the first one ends with.
-        start = _solve(rolled, rolled_climb, np.zeros(cost.shape[1], np.float32))[1][-1]
     only = np.full(cost.shape[1], np.inf, np.float32)
     only[start] = 0
     enter, leave = _solve(rolled, rolled_climb, only, end=start)
     return np.roll(enter, shift), np.roll(leave, shift)
 
 
-def _certain_start(cost):
-    """A column where one run of rows is far cheaper than the others, and its row; None for the row in doubt."""
-    cheap = cost < 0.5
-    column = int(np.argmin(cost.min(axis=1) + cheap.mean(axis=1)))
-    rows = np.flatnonzero(cheap[column])
-    one_run = rows.size > 0 and rows[-1] - rows[0] == rows.size - 1 and rows.size < 12
-    return column, int(rows[rows.size // 2]) if one_run else None
+def _certain_column(cost):
+    """A column where, with those around it, one run of rows is far cheaper than the others."""
+    doubt = cost.min(axis=1) + (cost < 0.5).mean(axis=1)
+    half = min(LOOK_AROUND // 4, len(doubt) // 4)
+    padded = np.concatenate([doubt[-half:], doubt, doubt[:half]]) if half else doubt
+    return int(np.argmin(np.convolve(padded, np.ones(2 * half + 1), mode="valid")))
 
 
 def _solve(cost, climb, before, end=None):

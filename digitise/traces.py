@@ -22,8 +22,10 @@ MOST_PER_INK = 4
 LEAST_LENGTH = 0.5  # outer radii: ink along a path that is worth returning in doubt
 LEAST_STRETCH = 0.45  # outer radii: ink along the longest well-inked stretch of a trace
 LEAST_ON_INK = 0.18  # share of ink in a window of a dotted line
-SOLID_ON_INK = 0.85  # the same of a solid line
-DASHED_SUPPORT = 0.6  # the same of a dashed line, its gaps bridged
+SOLID_ON_INK = 0.85  # a path with a larger share on ink is drawn solid
+SOLID_SHARE = 0.72  # share of a solid line's visible path on ink; crossings with the grid take some
+SOLID_SUPPORT = 0.45  # share of a solid line's path on ink that is not dashes
+DASHED_SUPPORT = 0.5  # share of a dashed line's path on ink or bridged gaps
 TOLD_REACH_DEG = 30.0  # a told colour may be this far in direction from the ink on the picture (JPEG, scans)
 
 
@@ -115,7 +117,7 @@ def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist):
         if trace is None:
             continue
         evidence = _evidence(trace, layer, sheet, fill)
-        inked = evidence.share > SOLID_ON_INK if solid else trace.support > DASHED_SUPPORT
+        inked = evidence.share > SOLID_SHARE and trace.support > SOLID_SUPPORT if solid else trace.support > DASHED_SUPPORT
         sure = evidence.stretch > LEAST_STRETCH and inked
         item = FoundTrace(
             ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length, doubt=1 - (evidence.share if solid else trace.support)
@@ -169,7 +171,7 @@ class _Evidence:
 
 def _evidence(trace, layer, sheet, fill):
     x, y, clear = _course(trace, sheet)
-    over = cv2.remap(layer.cover, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
+    over = cv2.remap(layer.body, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
     under = cv2.remap(layer.hidden, x, y, cv2.INTER_LINEAR, borderValue=0)[:, 0]
     on = over > max(0.3, 0.5 * (1 + fill)) * max(float(np.percentile(over, 85)), 0.3)
     known = on | (under < 0.4)
