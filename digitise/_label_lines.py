@@ -14,24 +14,34 @@ SURE = 0.5  # odds of some number above which a line is not turned over to try a
 SQUARE = 1.45  # length over height below which the way of reading is not known from the box
 LEVEL_DEG = 8.0  # a detected turn below this is the box's wobble, not the text's
 USUAL_CAP = 0.03  # height of a capital over the outer radius
+LEVEL_RHO, BEARING_RHO = 1.25, 0.95  # levels are printed inside the first, bearings outside the second
 NEAR_RHO = 1.12  # rotated labels stand inside the chart or just outside it
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Seen:
-    """A line as read: its box on the sheet, text with its mean odds, `NumberOdds` best first, place in the plane."""
+    """A line as read: its box on the sheet, text with its mean odds, place in the plane; the numbers that it may be.
+
+    levels, bearings : tuples of `NumberOdds`, best first; which of them is meant hangs on the place
+    """
 
     line: Line
     text: str
     text_odds: float
-    numbers: tuple
+    levels: tuple
+    bearings: tuple
     rho: float
     plane_deg: float
 
     @property
     def number_odds(self):
         """Odds that the line is a number at all."""
-        return min(1.0, sum(item.odds for item in self.numbers))
+        return min(1.0, max(sum(item.odds for item in kind) for kind in (self.levels, self.bearings)))
+
+    @property
+    def level_odds(self):
+        """Odds that the line is a level."""
+        return min(1.0, sum(item.odds for item in self.levels))
 
 
 def find_lines(sheet, engine):
@@ -68,10 +78,14 @@ def read_lines(sheet, engine, lines, *, cleaned=True):
     seen = []
     for line, columns, r, angle in zip(lines, odds, rho, plane):
         text, text_odds = plain_text(columns, engine.characters)
-        numbers = tuple(engine.alphabet.numbers(columns))
+        levels = tuple(engine.alphabet.numbers(columns, "level")) if r < LEVEL_RHO else ()
+        bearings = tuple(engine.alphabet.numbers(columns, "bearing")) if r > BEARING_RHO else ()
         seen.append(
-            Seen(line=line, text=text, text_odds=text_odds, numbers=numbers, rho=float(r), plane_deg=float(angle))
-        )
+            Seen(
+                line=line, text=text, text_odds=text_odds, levels=levels, bearings=bearings,
+                rho=float(r), plane_deg=float(angle),
+            )
+        )  # fmt: skip
     return seen
 
 

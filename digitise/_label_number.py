@@ -15,13 +15,18 @@ __all__ = ["Alphabet", "NumberOdds", "plain_text"]
 
 LOOKS_LIKE = {
     "0": "OoØøΟο〇○", "1": "lI|i丨", "2": "Zz", "3": "", "4": "", "5": "Ss", "6": "Gb", "7": "", "8": "B", "9": "gq",
-    "-": "−–—_~－一ー﹣‐‑", "+": "十＋", ".": ",·。", "d": "o", "B": "8bРВ", "i": "l1I!", "°": "º˚oO'\"", " ": "",
+    "-": "−–—_~－一ー﹣‐‑", "+": "十＋", ".": ",·。", "d": "oc4a6", "B": "8bRРВ", "i": "l1I!", "°": "º˚oO'\"", " ": "",
 }  # fmt: skip
 ALIKE = 0.5  # what a look-alike counts
 DEGREE_FROM_ZERO = 0.15  # a raised ring may be read as a zero
-# every prefix of: sign, up to three digits, one decimal, unit
-PREFIX = re.compile(r"[-+]?(\d{1,3}(\.\d?)?(°|d(B[id]?)?)?)?")
-WHOLE = re.compile(r"([-+]?)(\d{1,3}(?:\.\d)?)(°|dB[id]?)?")
+WHOLE = {
+    "bearing": re.compile(r"([-+]?)(\d{1,3})(°)?"),
+    "level": re.compile(r"([-+]?)(\d{1,2}(?:\.\d)?)(dB[id]?)?"),
+}
+PREFIX = {  # every beginning of such a number
+    "bearing": re.compile(r"[-+]?(\d{1,3}(°)?)?"),
+    "level": re.compile(r"[-+]?(\d{1,2}(\.\d?)?(d(B[id]?)?)?)?"),
+}
 BEAM = 10
 LEAST = 1e-4  # odds of a character in a column below which it is not followed
 
@@ -45,18 +50,22 @@ class Alphabet:
         self.symbols = list(LOOKS_LIKE)
         self._classes = [[(place[c], 1.0 if c == s else ALIKE) for c in s + LOOKS_LIKE[s] if c in place] for s in self.symbols]
 
-    def numbers(self, log_odds):
-        """The likeliest numbers of a line, best first: list of `NumberOdds`; log_odds (columns, classes)."""
+    def numbers(self, log_odds, kind):
+        """The likeliest numbers of a line, best first: list of `NumberOdds`.
+
+        log_odds : (columns, classes); kind : "bearing" (three digits, degree sign) or "level" (two digits, one
+        decimal, dB)
+        """
         odds = np.exp(log_odds)
         columns = np.stack([sum(odds[:, k] * weight for k, weight in classes) for classes in self._classes], axis=1)
         degree, zero = self.symbols.index("°"), self.symbols.index("0")
         columns[:, degree] += DEGREE_FROM_ZERO * columns[:, zero]
         columns = np.minimum(columns, 1.0)
         blank = np.minimum(odds[:, 0] + columns[:, self.symbols.index(" ")], 1.0)  # spaces carry no meaning here
-        return _gather(_prefix_search(self.symbols, columns, blank))
+        return _gather(_prefix_search(self.symbols, columns, blank, PREFIX[kind]), WHOLE[kind])
 
 
-def _prefix_search(symbols, columns, blank):
+def _prefix_search(symbols, columns, blank, prefix):
     """Odds of the likeliest texts: {text: odds}."""
     beams = {"": (1.0, 0.0)}  # text: odds of ending in a blank, in its last character
     for row, gap in zip(columns, blank):
@@ -75,18 +84,18 @@ def _prefix_search(symbols, columns, blank):
                     fresh = in_blank * share
                 else:
                     fresh = (in_blank + in_mark) * share
-                if fresh > 0 and PREFIX.fullmatch(text + symbol):
+                if fresh > 0 and prefix.fullmatch(text + symbol):
                     add(text + symbol, 0.0, fresh)
         kept = sorted(grown.items(), key=lambda item: -sum(item[1]))[:BEAM]
         beams = dict(kept)
     return {text: sum(both) for text, both in beams.items()}
 
 
-def _gather(texts):
+def _gather(texts, whole):
     """Texts of one value and unit together, best first."""
     total = {}
     for text, odds in texts.items():
-        match = WHOLE.fullmatch(text)
+        match = whole.fullmatch(text)
         if match is None:
             continue
         sign, digits, unit = match.groups()

@@ -73,7 +73,7 @@ def find_rays(grid, seen, *, rim=()):
     grid : Grid in sheet px; seen : list of Seen; rim : indices of those that are bearings
     """
     inside = [k for k, item in enumerate(seen) if item.rho < INSIDE_RHO and k not in rim]
-    marks = [k for k in inside if seen[k].number_odds > NUMBER_ODDS and seen[k].numbers[0].unit != "deg"]
+    marks = [k for k in inside if seen[k].level_odds > NUMBER_ODDS]
     points = {k: _plane_point(grid, seen[k].line, 0) for k in inside}
     proposals = [(points[i], points[j]) for n, i in enumerate(marks) for j in marks[n + 1 :]]
     proposals += [(points[k], np.zeros(2)) for k in marks]
@@ -120,7 +120,7 @@ def _gather(grid, seen, marks, points, first, second):
 
 def _usual_turn(items):
     """The turn that most of the lines agree on, by the odds of their numbers; a short line's turn says less."""
-    weights = [item.number_odds * (1.0 if item.line.length > 1.5 * item.line.height else 0.5) for item in items]
+    weights = [item.level_odds * (1.0 if item.line.length > 1.5 * item.line.height else 0.5) for item in items]
     turns = np.array([item.line.turn_deg for item in items])
     off = np.abs((turns[:, None] - turns[None, :] + 180) % 360 - 180)
     return float(turns[np.argmax((off < TURN_SLACK_DEG) @ np.array(weights))])
@@ -150,7 +150,7 @@ def _anchored(grid, seen, on, along, across, turn_deg):
     _, anchor, shift, side = best
     heights, lengths = [seen[k].line.height for k in on], [seen[k].line.length for k in on]
     tall = [h for h, w in zip(heights, lengths) if w > 1.5 * h] or heights
-    score = sum(seen[k].number_odds for k in on)
+    score = sum(seen[k].level_odds for k in on)
     return Ray(
         along=along, across=across, side=side, shift=float(shift), anchor=anchor, turn_deg=turn_deg,
         height=float(np.median(tall)), length=float(max(*lengths, 2.0 * np.median(tall))),

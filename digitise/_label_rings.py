@@ -19,7 +19,10 @@ __all__ = ["RingText", "read_ring_texts"]
 
 OFF_RING = 0.36  # of the gap to the next ring, that a label may lie off the ring it names
 OFF_ROW = 1.0  # heights
-CROP_PAD = 0.35  # heights of paper left at either end
+LONE_ODDS, LONE_OFF = 0.6, 0.5  # of a label that stands at no known ring: odds at least, heights off its place at most
+CROP_PAD = 0.6  # heights of paper left at the end of a crop
+MINUS_PAD = 0.8  # and before its beginning
+CROP_TALL = 1.1  # height of a crop over a detected line's
 MIN_RHO = 0.03
 MAX_RINGS = 24
 READ_WELL = 0.75  # mean odds of the crops of a row that is the right way up
@@ -30,9 +33,14 @@ WEIGHTS = {"detected": 2.0, "filled": 1.0, "plain": 0.7, "strip": 1.5}  # of the
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class RingText:
-    """What stands at one ring: its index, the best `Seen`, and the numbers' odds over all looks."""
+    """What stands at one ring: its index (None beside no ring that was found), its radius and how far that may be off.
 
-    ring: int
+    seen : the best look; numbers : `NumberOdds` over all looks, best first
+    """
+
+    ring: int | None
+    rho: float
+    rho_u: float
     seen: Seen
     numbers: tuple
 
@@ -56,7 +64,7 @@ def _read_row(sheet, engine, seen, ray, rings, rim):
     """Yield what a row says, each as texts and whether the labels' place is safe."""
     grid = sheet.grid
     ray, filled = _right_way_up(sheet, engine, ray, rings)
-    found = _detected(grid, ray, seen, rings, rim)
+    found, lone = _detected(grid, ray, seen, rings, rim)
     lines = [_crop_line(grid, ray, ring, found.get(ring)) for ring in rings]
     if found:
         filled = read_lines(sheet, engine, lines)
@@ -64,16 +72,16 @@ def _read_row(sheet, engine, seen, ray, rings, rim):
     crops = {ring: {"filled": a, "plain": b} for ring, a, b in zip(rings, filled, plain)}
     for ring, item in found.items():
         crops[ring]["detected"] = item
-    yield _texts(crops), ray.safe
+    yield _texts(grid, crops) + lone, ray.safe
     if in_line(grid, ray, rings):
         for shift, numbers in strip_numbers(sheet, engine, ray, rings):
             moved = replace(ray, shift=ray.shift + shift)
             gap = float(np.median(np.abs(np.diff(grid.ring_rho[rings]))))
             strips = {
-                ring: {"strip": replace(crops[ring]["filled"], line=moved.line_at(grid, grid.ring_rho[ring]), numbers=mine)}
+                ring: {"strip": replace(crops[ring]["filled"], line=moved.line_at(grid, grid.ring_rho[ring]), levels=mine)}
                 for ring, mine in numbers.items()
             }
-            yield _texts(strips), abs(moved.shift) < SAFE_SHIFT * gap
+            yield _texts(grid, strips), abs(moved.shift) < SAFE_SHIFT * gap
 
 
 def _right_way_up(sheet, engine, ray, rings):
@@ -90,7 +98,7 @@ def _right_way_up(sheet, engine, ray, rings):
             continue
         turned = ray if best is None else _as_turned(ray, turn)
         looks = read_lines(sheet, engine, [_crop_line(sheet.grid, turned, ring, None) for ring in rings])
-        odds = [look.numbers[0].odds if look.numbers else 0.0 for look in looks]
+        odds = [look.levels[0].odds if look.levels else 0.0 for look in looks]
         if best is None:
             tried, best = [turn], (sum(odds), turned, looks)
             if np.mean(odds) > READ_WELL:
@@ -118,27 +126,24 @@ def _page_deg(grid, ray):
 
 
 def _detected(grid, ray, seen, rings, rim):
-    """{ring: Seen} of the detected lines that are labels of the row."""
-    found = {}
+    """{ring: Seen} of the detected lines that are labels of the row, and the labels that stand at no known ring."""
+    found, lone = {}, []
     for k, item in enumerate(seen):
-        if k in rim or not item.numbers:
-            continue
         off = abs((item.line.turn_deg - ray.turn_deg + 180) % 360 - 180)
-        ring = _ring_of(grid, ray, item.line, rings)
-        if ring is not None and off < 20 and (ring not in found or item.number_odds > found[ring].number_odds):
-            found[ring] = item
-    return found
-
-
-def _ring_of(grid, ray, line, rings):
-    """The ring whose label a detected line is, or None."""
-    if not 0.5 < line.height / ray.height < 2.0:
-        return None
-    rho, off_row = ray.place_of(grid, line)
-    if abs(off_row) > OFF_ROW * ray.height / grid.outer_px:
-        return None
-    ring = min(rings, key=lambda k: abs(grid.ring_rho[k] - rho))
-    return ring if abs(grid.ring_rho[ring] - rho) < OFF_RING * _room(grid, ring) else None
+        if k in rim or not item.levels or off > 20 or not 0.5 < item.line.height / ray.height < 2.0:
+            continue
+        rho, off_row = ray.place_of(grid, item.line)
+        if abs(off_row) > OFF_ROW * ray.height / grid.outer_px:
+            continue
+        ring = min(rings, key=lambda k: abs(grid.ring_rho[k] - rho))
+        if abs(grid.ring_rho[ring] - rho) < OFF_RING * _room(grid, ring):
+            if ring not in found or item.level_odds > found[ring].level_odds:
+                found[ring] = item
+        elif item.level_odds > LONE_ODDS and MIN_RHO < rho < 1.0:
+            rho_u = LONE_OFF * ray.height / grid.outer_px
+            if all(abs(rho - other.rho) > 2 * rho_u for other in lone):
+                lone.append(RingText(ring=None, rho=rho, rho_u=rho_u, seen=item, numbers=item.levels))
+    return found, tuple(lone)
 
 
 def _room(grid, ring):
@@ -150,7 +155,8 @@ def _room(grid, ring):
 def _crop_line(grid, ray, ring, found):
     """The crop for a ring's label, no longer than its neighbours leave room for."""
     line = ray.line_at(grid, grid.ring_rho[ring])
-    room = ray.length + 2 * CROP_PAD * ray.height
+    before = MINUS_PAD * ray.height  # a minus sign is thin, and easily left out of the boxes that proposed the row
+    room = ray.length + CROP_PAD * ray.height + before
     others = np.delete(grid.ring_rho, ring)
     if len(others):
         other = ray.line_at(grid, others[np.argmin(np.abs(others - grid.ring_rho[ring]))])
@@ -160,19 +166,23 @@ def _crop_line(grid, ray, ring, found):
         if above < 0.8 * ray.height:
             room = min(room, max(apart, 1.2 * ray.height))
     if found is not None:
-        room = min(room, max(found.line.length + 2 * CROP_PAD * ray.height, 1.6 * ray.height))
-        return replace(found.line, length=room, height=ray.height * 1.05, turn_deg=ray.turn_deg)
-    return replace(line, length=room, height=ray.height * 1.15)
+        room = min(room, max(found.line.length + CROP_PAD * ray.height, 1.6 * ray.height) + before)
+        line = replace(found.line, turn_deg=ray.turn_deg)
+    off = 0.5 * (before - CROP_PAD * ray.height)
+    turn = np.radians(line.turn_deg)
+    return replace(
+        line, x=line.x - off * np.cos(turn), y=line.y - off * np.sin(turn), length=room, height=CROP_TALL * ray.height
+    )  # fmt: skip
 
 
-def _texts(looks):
+def _texts(grid, looks):
     """`RingText` of every ring, from {ring: {kind of look: Seen}}."""
     texts = []
     for ring, seen in looks.items():
         numbers = _pooled(seen)
         if numbers:
-            lead = max(seen.values(), key=lambda item: sum(n.odds for n in item.numbers if n.value == numbers[0].value))
-            texts.append(RingText(ring=ring, seen=lead, numbers=numbers))
+            lead = max(seen.values(), key=lambda item: sum(n.odds for n in item.levels if n.value == numbers[0].value))
+            texts.append(RingText(ring=ring, rho=float(grid.ring_rho[ring]), rho_u=0.0, seen=lead, numbers=numbers))
     return tuple(texts)
 
 
@@ -181,10 +191,9 @@ def _pooled(looks):
     whole = sum(WEIGHTS[kind] for kind in looks)
     total = {}
     for kind, look in looks.items():
-        for number in look.numbers[:6]:
-            if number.unit != "deg":
-                key = number.value, number.unit
-                total[key] = total.get(key, 0.0) + WEIGHTS[kind] * float(number.odds) / whole
+        for number in look.levels[:6]:
+            key = number.value, number.unit
+            total[key] = total.get(key, 0.0) + WEIGHTS[kind] * float(number.odds) / whole
     ranked = sorted(total.items(), key=lambda item: -item[1])
     return tuple(NumberOdds(value=value, unit=unit, odds=odds) for (value, unit), odds in ranked[:6] if odds > 0.01)
 
@@ -192,7 +201,7 @@ def _pooled(looks):
 def _worth(grid, texts):
     """How much a row says together: the odds of its numbers, and more for those that fit one scale; and whether it is sure."""
     readings = [
-        LevelReading(ring=text.ring, rho=float(grid.ring_rho[text.ring]), options=[(n.value, n.odds) for n in text.numbers])
+        LevelReading(ring=text.ring, rho=text.rho, rho_u=text.rho_u, options=[(n.value, n.odds) for n in text.numbers])
         for text in texts
     ]
     vote = vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px)

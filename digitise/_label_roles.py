@@ -54,6 +54,8 @@ def _has_sample(gray, line, side):
     usual = np.nanmedian(np.where(good, middle, np.nan))
     good &= np.abs(middle - usual) < 0.12 * h + 0.5
     columns = np.flatnonzero(good)
+    if len(columns) < 2:
+        return False
     span = columns[-1] - columns[0] + 1
     clear = not (thick[columns[0] : columns[-1] + 1] >= SAMPLE_THICK * h).any()
     level = np.std(middle[columns]) < 0.1 * h + 0.5

@@ -44,7 +44,7 @@ def strip_numbers(sheet, engine, ray, rings):
         for ring, at in zip(rings, along + outward * share * gap):
             mine = np.abs(centres - at) < WINDOW * gap
             if mine.any():
-                numbers[ring] = tuple(engine.alphabet.numbers(columns[mine]))
+                numbers[ring] = tuple(engine.alphabet.numbers(columns[mine], "level"))
         out.append((share * gap_rho, numbers))
     return out
 

@@ -24,16 +24,21 @@ USUAL_STEPS = (1.0, 2.0, 3.0, 5.0, 6.0, 10.0, 20.0)
 RARE_STEPS = (0.5, 2.5, 4.0, 8.0, 15.0, 25.0, 30.0, 40.0, 50.0)
 SAME_DB = 0.3  # scales that differ by less are the same proposal
 SURE_ODDS = 0.5
+AGREED_ODDS, AGREED_SHARE = 0.35, 0.6  # of a reading that supports: at least, and of all its numbers
 MAX_SPAN_DB = 150.0
 
 
 @dataclass(frozen=True, kw_only=True)
 class LevelReading:
-    """What a ring may say: its index, radius, and (level, odds) pairs."""
+    """What a ring may say: its index (None where a label stands at no ring that was found), radius, (level, odds) pairs.
 
-    ring: int
+    rho_u : how far the radius may be off, rho
+    """
+
+    ring: int | None
     rho: float
     options: tuple
+    rho_u: float = 0.0
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -41,7 +46,8 @@ class LevelVote:
     """The winning scale.
 
     law ; slope : dB per rho of the even law, else NaN ; outer_db : level at rho 1
-    support : readings (ring, level) that agree with odds of SURE_ODDS or more
+    support : (ring, level) of the readings that agree; their sign may have been lost
+    signed : how many of these were read with their sign (or are 0)
     against : number of readings as sure that disagree
     score : log odds with habits, margin : over the best other proposal
     """
@@ -50,6 +56,7 @@ class LevelVote:
     outer_db: float
     slope: float
     support: tuple
+    signed: int
     against: int
     score: float
     margin: float
@@ -68,25 +75,26 @@ def vote_levels(readings, *, ring_rho, outer_px, laws=("even", *LOG_DB)):
     if not len(rho):
         return None
     tolerance = MATCH_PX / outer_px + MATCH_RHO
+    slack = tolerance + np.array([reading.rho_u for reading in readings])
     best = []
     for law in laws:
         outer, slope = _proposals(law, rho, level, owner)
         if not len(outer):
             continue
-        worth, unread = _worth(law, outer, slope, rho, level, odds, owner, len(readings), tolerance)
+        worth, unread = _worth(law, outer, slope, rho, level, odds, owner, slack)
         score = np.log(worth + UNREAD * unread + FLOOR).sum(axis=1) + _habit(law, outer, slope, ring_rho, tolerance)
         order = np.argsort(-score)[:40]
-        best += [(float(score[k]), law, float(outer[k]), float(slope[k]), worth[k]) for k in order]
+        best += [(float(score[k]), law, float(outer[k]), float(slope[k])) for k in order]
     if not best:
         return None
     best.sort(key=lambda item: -item[0])
-    score, law, outer, slope, worth = best[0]
+    score, law, outer, slope = best[0]
     probe = np.append(ring_rho[ring_rho > 0.2], 0.35)
     mine = _levels(law, outer, slope, probe)
-    others = [s for s, *kind, _ in best[1:] if np.abs(_levels(*kind, probe) - mine).max() > SAME_DB]
-    support, against = _count(readings, worth, law, outer, slope, tolerance)
+    others = [s for s, *kind in best[1:] if np.abs(_levels(*kind, probe) - mine).max() > SAME_DB]
+    support, signed, against = _count(readings, law, outer, slope, slack)
     return LevelVote(
-        law=law, outer_db=outer, slope=slope, support=support, against=against, score=score,
+        law=law, outer_db=outer, slope=slope, support=support, signed=signed, against=against, score=score,
         margin=score - max(others, default=score - 99.0),
     )  # fmt: skip
 
@@ -130,9 +138,10 @@ def _radii(law, outer, slope, level):
     return 1 + down / slope[:, None] if law == "even" else np.exp(down / LOG_DB[law])
 
 
-def _worth(law, outer, slope, rho, level, odds, owner, n, tolerance):
+def _worth(law, outer, slope, rho, level, odds, owner, slack):
     """Agreeing odds of every reading under every proposal (proposals, n), and the odds that it is no number (n,)."""
-    match = np.abs(_radii(law, outer, slope, level) - rho[None, :]) < tolerance
+    n = len(slack)
+    match = np.abs(_radii(law, outer, slope, level) - rho[None, :]) < slack[owner.astype(int)]
     worth, read = np.zeros((len(outer), n)), np.zeros(n)
     for k in range(n):
         mine = owner == k
@@ -158,16 +167,21 @@ def _habit(law, outer, slope, ring_rho, tolerance):
     return habit
 
 
-def _count(readings, worth, law, outer, slope, tolerance):
-    """The agreeing readings that are sure, and how many as sure disagree."""
-    support, against = [], 0
-    for reading, agreed in zip(readings, worth):
-        top_level, top_odds = max(reading.options, key=lambda item: item[1])
-        if agreed >= SURE_ODDS:
-            level = float(_levels(law, outer, slope, np.array(reading.rho)))
-            near = min((abs(s * value - level), s * value) for value, _ in reading.options for s in (1, -1))[1]
-            support.append((reading.ring, near))
-        elif top_odds >= SURE_ODDS:
-            here = _radii(law, np.array([outer]), np.array([slope]), np.array([top_level, -top_level]))[0]
-            against += int(np.all(np.abs(here - reading.rho) >= tolerance))
-    return tuple(support), against
+def _count(readings, law, outer, slope, slack):
+    """The readings that agree, how many of them with their sign, and how many that are as sure disagree."""
+    support, signed, against = [], 0, 0
+    for reading, near in zip(readings, slack):
+        values = np.array([value for value, _ in reading.options])
+        odds = np.array([share for _, share in reading.options])
+        with_sign, without = (
+            np.abs(_radii(law, np.array([outer]), np.array([slope]), sign * values)[0] - reading.rho) < near
+            for sign in (1, -1)
+        )
+        agreed = odds[with_sign | without].sum()
+        if agreed >= AGREED_ODDS and agreed >= AGREED_SHARE * odds.sum():
+            best = int(np.argmax(np.where(with_sign | without, odds, -1.0)))
+            support.append((reading.ring, float(values[best] if with_sign[best] else -values[best])))
+            signed += int(odds[with_sign].sum() >= odds[without & ~with_sign].sum())
+        elif odds.max() >= SURE_ODDS:
+            against += 1
+    return tuple(support), signed, against

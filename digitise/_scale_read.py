@@ -60,23 +60,27 @@ def _told_anchors(grid, settings):
 
 def _readings(grid, labels, told):
     """What every ring says: labels, replaced by what was told."""
-    readings = {}
+    readings, lone = {}, []
     for label in labels.with_role("ring") if labels is not None else ():
         options = label.readings or (((label.value, label.confidence),) if label.value is not None else ())
+        if not options:
+            continue
+        if label.ring_rho_u > 0:
+            lone.append(LevelReading(ring=None, rho=label.ring_rho, rho_u=label.ring_rho_u, options=tuple(options)))
+            continue
         rho = label.ring_rho if np.isfinite(label.ring_rho) else label.rho
         ring = int(np.argmin(np.abs(grid.ring_rho - rho)))
-        if options:
-            readings[ring] = LevelReading(ring=ring, rho=float(grid.ring_rho[ring]), options=tuple(options))
+        readings[ring] = LevelReading(ring=ring, rho=float(grid.ring_rho[ring]), options=tuple(options))
     for ring, level in told.items():
         rho = float(grid.ring_rho[ring]) if ring >= 0 else 0.0
         readings[ring] = LevelReading(ring=ring, rho=rho, options=((level, TOLD_ODDS),))
-    return list(readings.values())
+    return [*readings.values(), *lone]
 
 
 def _anchors(grid, vote, told):
     """Rings of known level: those whose labels agree, and the others that stand at whole steps of the same scale."""
-    level = {**dict(vote.support), **told}
-    values = np.array(sorted(level.values()))
+    level = {**{ring: value for ring, value in vote.support if ring is not None}, **told}
+    values = np.array(sorted({value for _, value in vote.support} | set(told.values())))
     scale_level = vote.level(grid.ring_rho)
     if vote.law == "even":
         step = float(np.diff(values).min()) if len(values) > 1 else 1.0
@@ -92,7 +96,7 @@ def _anchors(grid, vote, told):
 def _reasons(vote, labels, n_read, off_px):
     n, detail = len(vote.support), f"law {vote.law}, outermost ring {vote.outer_db:.3g} dB"
     enough = n >= ENOUGH and vote.margin >= SURE_MARGIN and vote.against <= n / 3
-    pair = n == 2 and vote.margin >= PAIR_MARGIN and vote.against == 0 and vote.law == "even"
+    pair = n == vote.signed == 2 and vote.margin >= PAIR_MARGIN and vote.against == 0 and vote.law == "even"
     if not (enough or pair):
         yield reason("levels-guessed", n, detail)
     elif labels is not None and not labels.ring_safe:

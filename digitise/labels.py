@@ -28,7 +28,8 @@ class Label:
     rho, plane_deg : centre in the chart plane; confidence : 0 to 1
     role : "ring", "rim", "caption", "legend", "other"
     readings : ((value, odds), ...) best first, for ring and rim labels
-    ring_rho : radius of the ring that a ring label names, NaN for others
+    ring_rho, ring_rho_u : radius of the ring that a ring label names, NaN for others, and how far it may be off (0 for
+        a ring that the grid holds)
     """
 
     text: str
@@ -45,6 +46,7 @@ class Label:
     angle_deg: float = 0.0
     readings: tuple = ()
     ring_rho: float = float("nan")
+    ring_rho_u: float = 0.0
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -91,8 +93,11 @@ def read_labels(picture, box, grid):
 
 def bearing_options(item):
     """The bearings that a line may be: ((bearing, odds), ...)."""
-    fit = [number for number in item.numbers if number.unit in ("", "deg") and number.value == round(number.value)]
-    return tuple((number.value, float(number.odds)) for number in fit[:KEPT_READINGS] if -180 <= number.value <= 360)
+    total = {}
+    for number in item.bearings:
+        if -180 <= number.value <= 360:
+            total[number.value] = min(1.0, total.get(number.value, 0.0) + float(number.odds))
+    return tuple(sorted(total.items(), key=lambda pair: -pair[1])[:KEPT_READINGS])
 
 
 def _rim_members(seen):
@@ -126,21 +131,22 @@ def _ring_label(sheet, text):
     return _label(
         sheet, text.seen, value=best.value, unit=best.unit, confidence=best.odds, role="ring",
         readings=tuple((number.value, number.odds) for number in text.numbers),
-        ring_rho=float(sheet.grid.ring_rho[text.ring]),
+        ring_rho=text.rho, ring_rho_u=text.rho_u,
     )  # fmt: skip
 
 
 def _rim_label(sheet, seen, bearing):
     options = bearing_options(seen)
     odds = dict(options).get(bearing, 0.0)
-    unit = "deg" if any(number.unit == "deg" for number in seen.numbers[:2]) else ""
+    unit = "deg" if any(number.unit == "deg" for number in seen.bearings[:1]) else ""
     return _label(sheet, seen, value=bearing, unit=unit, confidence=min(1.0, odds), role="rim", readings=options)
 
 
 def _text_label(sheet, seen):
     from ._label_roles import role_of_text
 
-    number = seen.numbers[0] if seen.numbers and seen.numbers[0].odds > 0.5 else None
+    number = max((*seen.levels[:1], *seen.bearings[:1]), key=lambda item: item.odds, default=None)
+    number = number if number is not None and number.odds > 0.5 else None
     return _label(
         sheet, seen, value=number.value if number else None, unit=number.unit if number else "",
         confidence=seen.text_odds, role=role_of_text(sheet, seen),
