@@ -8,7 +8,7 @@ layer of a scanned page that was read by a machine) is left out: it is somebody 
 import ctypes
 import math
 import unicodedata
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -17,7 +17,7 @@ from ._pdf_objects import VectorText
 __all__ = ["collect_texts"]
 
 MAX_LETTERS = 20_000
-JOIN_EM = 0.28  # letters closer than this along their line are one word
+JOIN_EM = 0.28  # letters closer than this are one word, unless a space is set between
 SPACE_EM = 0.75  # and words closer than this one phrase
 OFF_LINE_EM = 0.25
 INVISIBLE = 3  # text rendering mode, ISO 32000-1, table 106
@@ -26,7 +26,7 @@ MINUS = "\u2212"
 
 @dataclass(frozen=True, kw_only=True)
 class _Letter:
-    """A letter: sign, box along (s) and across (t) its line, the line's turn, the font's size."""
+    """A letter: sign, box along (s) and across (t) its line, turn, size, and if a space is before it."""
 
     sign: str
     s0: float
@@ -36,6 +36,7 @@ class _Letter:
     base: float
     turn: float
     size: float
+    spaced: bool = False
 
 
 def collect_texts(page, view):
@@ -53,14 +54,17 @@ def collect_texts(page, view):
 
 
 def _letters(raw, text_page, view):
-    """Every drawn letter in reading order, spaces left out."""
+    """Every drawn letter in reading order; spaces are remembered with the letter that follows."""
     left, right, bottom, top, x, y = (ctypes.c_double() for _ in range(6))
     scale = math.sqrt(abs(np.linalg.det(view.matrix[:, :2])))
-    hidden = {}
+    hidden, spaced = {}, False
     for k in range(min(raw.FPDFText_CountChars(text_page), MAX_LETTERS)):
         code = raw.FPDFText_GetUnicode(text_page, k)
         sign = chr(code) if 32 < code < 0x110000 and not 0xD800 <= code < 0xE000 else ""
-        if not sign.strip() or raw.FPDFText_IsGenerated(text_page, k) == 1:
+        if raw.FPDFText_IsGenerated(text_page, k) == 1:
+            continue
+        if not sign.strip():
+            spaced = True
             continue
         item = raw.FPDFText_GetTextObject(text_page, k)
         key = ctypes.addressof(item.contents) if item else 0
@@ -83,9 +87,9 @@ def _letters(raw, text_page, view):
         turn = math.atan2(along[1], along[0])
         turn = round(math.degrees(turn), 2)
         corners = np.array([[a, b] for a in numbers[:2] for b in numbers[2:4]])
-        yield _letter(
-            sign, corners, numbers[4:], turn, raw.FPDFText_GetFontSize(text_page, k) * scale, m, view
-        )
+        size = raw.FPDFText_GetFontSize(text_page, k) * scale
+        yield replace(_letter(sign, corners, numbers[4:], turn, size, m, view), spaced=spaced)
+        spaced = False
 
 
 def _letter(sign, corners, origin, turn, size, text_matrix, view):
@@ -95,9 +99,8 @@ def _letter(sign, corners, origin, turn, size, text_matrix, view):
     shift = np.array([[c, s], [-s, c]]) @ view.matrix[:, 2]
     own = corners @ frame.T + shift
     at = frame @ origin + shift
-    stretch = (
-        math.hypot(text_matrix.a, text_matrix.b) or 1.0
-    )  # a font of size 1 under a matrix of 10 is 10 high
+    # A font of size 1 under a matrix of 10 is 10 high.
+    stretch = math.hypot(text_matrix.a, text_matrix.b) or 1.0
     size = size * stretch if size * stretch > 0 else float(np.ptp(own[:, 1]))
     return _Letter(
         sign=sign,
@@ -130,12 +133,17 @@ def _phrases(letters):
             group = []
             for letter in row:
                 gap = (letter.s0 - group[-1][0].s1) / max(letter.size, 1e-6) if group else 0.0
-                if group and (gap > SPACE_EM or (gap > JOIN_EM and _both_numbers(group, letter))):
+                if group and (gap > SPACE_EM or (_is_spaced(letter, gap) and _both_numbers(group, letter))):
                     groups.append(group)
                     group = []
                 group.append((letter, gap if group else 0.0))
             groups.append(group)
     return groups
+
+
+def _is_spaced(letter, gap):
+    """Whether a space stands before a letter, as a letter of its own or as bare paper."""
+    return gap > JOIN_EM or (letter.spaced and gap > 0)
 
 
 def _both_numbers(group, letter):
@@ -145,7 +153,7 @@ def _both_numbers(group, letter):
 
 def _phrase(group):
     letters = [letter for letter, _ in group]
-    text = "".join((" " if gap > JOIN_EM else "") + letter.sign for letter, gap in group)
+    text = "".join((" " if _is_spaced(letter, gap) else "") + letter.sign for letter, gap in group)
     s0, s1 = min(item.s0 for item in letters), max(item.s1 for item in letters)
     t0, t1 = min(item.t0 for item in letters), max(item.t1 for item in letters)
     turn = math.radians(letters[0].turn)

@@ -39,13 +39,34 @@ MAX_REASONS = 12  # the record holds them all
 
 
 class Page:
-    """The sheet that the parts are laid on, from the top down."""
+    """The sheet that the parts are laid on, from the top down; a picture of pixels.
+
+    What is laid on it goes through `draw` and `put`, so that a sheet of another kind need only answer these.
+    """
 
     def __init__(self, reading, record, colours, paper):
         self.reading, self.record, self.colours, self.paper = reading, record, colours, paper
-        self.image = Image.new("RGB", (WIDTH_PX, ROOM_PX + ROOM_FOR_TRACE_PX * len(reading.traces)), PAPER)
-        self.draw = ImageDraw.Draw(self.image)
         self.y = MARGIN_PX
+        self.begin(ROOM_PX + ROOM_FOR_TRACE_PX * len(reading.traces))
+
+    def begin(self, height):
+        """Make an empty sheet and its pen."""
+        self.image = Image.new("RGB", (WIDTH_PX, height), PAPER)
+        self.draw = ImageDraw.Draw(self.image)
+
+    def blank(self, width, height):
+        """An empty panel in the chart's paper."""
+        panel = np.empty((height, width, 3), np.uint8)
+        panel[:] = np.round(self.paper)
+        return panel
+
+    def over(self, panel, rgb, view):
+        """The panel that the reading is laid over: the picture's part in a `View`, whose px `panel` holds."""
+        return panel
+
+    def put(self, panel, x, y):
+        """Lay a finished panel on the sheet."""
+        self.image.paste(Image.fromarray(panel), (x, y))
 
     def text(self, x, y, words, *, size=16, fill=TEXT, anchor="la"):
         """Put a line of text; the anchor is Pillow's."""
@@ -81,7 +102,7 @@ class Page:
         )
         self.y += 26
         for x, panel in ((MARGIN_PX, shown), (right, plain)):
-            self.image.paste(Image.fromarray(panel), (x, self.y))
+            self.put(panel, x, self.y)
             self.draw.rectangle(
                 (x - 1, self.y - 1, x + panel.shape[1], self.y + panel.shape[0]), outline=RULE
             )
@@ -182,7 +203,7 @@ class Page:
         left = MARGIN_PX + 60
         self.text(MARGIN_PX, self.y, "95 % error by bearing, dB")
         self.y += 26
-        self.image.paste(Image.fromarray(strip), (left, self.y))
+        self.put(strip, left, self.y)
         self.draw.rectangle((left - 1, self.y - 1, left + strip.shape[1], self.y + STRIP_PX), outline=RULE)
         for level in ERROR_TICKS_DB:
             y = self.y + (1 - float(error_place(level))) * (STRIP_PX - 1)
@@ -223,10 +244,9 @@ class Page:
         self.y += 34
 
     def _sample(self, x, state, colour):
-        sample = np.empty((20, 44, 3), np.uint8)
-        sample[:] = np.round(self.paper)
+        sample = self.blank(44, 20)
         draw_sample(sample, state, colour)
-        self.image.paste(Image.fromarray(sample), (x, self.y))
+        self.put(sample, x, self.y)
 
     def review(self):
         """The reasons to look, and the caution."""

@@ -21,6 +21,7 @@ __all__ = [
     "draw_sample",
     "draw_trace",
     "error_place",
+    "make_mask",
     "make_view",
     "on_arc",
     "picture_panel",
@@ -30,7 +31,7 @@ __all__ = [
 FINER = 2  # mask pixels a panel pixel
 SHIFT = 4  # fixed-point bits of a place, for OpenCV
 ARC_SLACK_DEG = 0.5
-THIN_PX = 0.9
+THIN_PX, HAIR_PX = 0.9, 0.5
 OVER_PX, ANEW_PX = 1.4, 2.2  # a seen trace over the chart leaves the ink in sight on both sides
 MARKER_PX = 3.4
 MARKER_APART_PX = 11.0
@@ -177,12 +178,17 @@ class Mask:
         return np.round(((np.asarray(points) + 0.5) * FINER - 0.5) * (1 << SHIFT)).astype(np.int32)
 
 
+def make_mask(canvas):
+    """The mask of a panel: of pixels for an array, the panel's own where it is drawn with lines."""
+    return Mask(canvas) if isinstance(canvas, np.ndarray) else canvas.mask()
+
+
 def draw_grid(canvas, reading, to_panel, paper):
     """The chart's rings and spokes on a panel of plain paper."""
     grid = reading.grid
     opposite = np.zeros(3) if np.mean(paper) > 127 else np.full(3, 255.0)
     angles = arc_angles(grid, 361)
-    spokes, rings = Mask(canvas), Mask(canvas)
+    spokes, rings = make_mask(canvas), make_mask(canvas)
     for plane in grid.spoke_deg:
         if on_arc(grid, plane):
             spokes.line(to_panel(np.array([0.0, 1.0]), np.array([plane, plane])), THIN_PX)
@@ -201,10 +207,10 @@ def draw_trace(canvas, reading, trace, to_panel, colour, *, anew):
     if anew:
         error = np.where(has, table.error95_db, 0.0)
         low, high = reading.scale.rho(level - error), reading.scale.rho(level + error)
-        band = Mask(canvas)
+        band = make_mask(canvas)
         band.quads(_quads(to_panel(np.clip(low, 0, 1.5), plane), to_panel(np.clip(high, 0, 1.5), plane), has))
         band.lay(colour, BAND_STRENGTH)
-    mask = Mask(canvas)
+    mask = make_mask(canvas)
     x, y = to_panel(np.clip(reading.scale.rho(level), 0, 1.5), plane)
     ring = to_panel(np.ones(len(plane)), plane)
     state = np.where(on_arc(reading.grid, plane), table.state, "")  # off the drawn arc nothing is missed
@@ -219,7 +225,7 @@ def draw_error_strip(canvas, table, colour):
     error = np.clip(np.where(has, table.error95_db, ERROR_FROM_DB), ERROR_FROM_DB, ERROR_TO_DB)
     x = table.angle_deg / 360 * (width - 1)
     y = (1 - error_place(error)) * (height - 1)
-    mask = Mask(canvas)
+    mask = make_mask(canvas)
     _states(mask, x, y, table.state, ANEW_PX, closed=False, ring=(x, np.full(len(x), 6.0)))
     mask.lay(colour)
 
@@ -232,13 +238,14 @@ def error_place(error_db):
 def rule_strip(strip, paper):
     """Lines of even error and bearing on the bare strip."""
     height, width = strip.shape[:2]
-    shade = tuple(float(v) for v in np.clip(paper + (-1 if np.mean(paper) > 127 else 1) * 45, 0, 255))
+    mask = make_mask(strip)
     for level in ERROR_TICKS_DB:
         y = round((1 - float(error_place(level))) * (height - 1))
-        cv2.line(strip, (0, y), (width - 1, y), shade, 1)
+        mask.line((np.array([0, width - 1]), np.array([y, y])), HAIR_PX)
     for bearing in range(0, 361, 30):
         x = round(bearing / 360 * (width - 1))
-        cv2.line(strip, (x, 0), (x, height - 1), shade, 1)
+        mask.line((np.array([x, x]), np.array([0, height - 1])), HAIR_PX)
+    mask.lay(np.clip(paper + (-1 if np.mean(paper) > 127 else 1) * 60, 0, 255))
 
 
 def draw_sample(canvas, state, colour):
@@ -246,7 +253,7 @@ def draw_sample(canvas, state, colour):
     height, width = canvas.shape[:2]
     x = np.linspace(4, width - 5, 12)
     y = np.full(12, (height - 1) / 2)
-    mask = Mask(canvas)
+    mask = make_mask(canvas)
     _states(mask, x, y, np.full(12, state), ANEW_PX, closed=False, ring=(x, y))
     mask.lay(colour)
 

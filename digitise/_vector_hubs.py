@@ -9,6 +9,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ._vector_pieces import LONGEST_CHORD
+
 __all__ = ["Hub", "Ring", "Spoke", "find_hubs", "ring_cover", "style_of"]
 
 MIN_OUTER_PT = 18.0
@@ -193,7 +195,7 @@ def _judge(pieces, styles, discs, x, y):
     low = pieces.each(np.minimum, np.where(pieces.vertex, rho, np.inf))
     radius = 0.5 * (low + high)
     round_it = (high - low <= 2 * pieces.slack(radius)) & (pieces.each(np.minimum, rho) >= 0.98 * radius)
-    round_it &= radius > 0.5 * pieces.unit
+    round_it &= (radius > 0.5 * pieces.unit) & (pieces.longest <= LONGEST_CHORD * radius)
     rings = _rings(pieces, styles, np.flatnonzero(round_it & ~discs), radius, deg, False)
     rings += [
         disc

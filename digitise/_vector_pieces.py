@@ -9,9 +9,10 @@ import numpy as np
 
 from .frozen import lock_arrays
 
-__all__ = ["Pieces", "cut_pieces"]
+__all__ = ["LONGEST_CHORD", "Pieces", "cut_pieces"]
 
 STRAIGHT_PT = 0.05  # farthest off its chord
+LONGEST_CHORD = 0.4  # radii: a circle of 16 chords, which stray 2 % from it
 ROUND_SHARE, ROUND_PT = 6e-4, 0.06  # an arc's points stray from a circle by its drawing's rounding, no more
 
 
@@ -22,7 +23,7 @@ class Pieces:
     xy : (N, 2) points, one line after the other; vertex : (N,) bool, points that the drawing names itself
     start : (n,) index of each line's first point; count : (n,) of its points
     path, run : (n,) where each comes from: page.paths[path].runs[run]
-    length : (n,); straight : (n,) bool
+    length : (n,); longest : (n,) of its chords; straight : (n,) bool
     centre : (n, 2), radius : (n,) of the circle through each arc, NaN where it is none; sweep_deg : (n,) of
         the arc
     unit : length of one point on the page
@@ -35,6 +36,7 @@ class Pieces:
     path: np.ndarray
     run: np.ndarray
     length: np.ndarray
+    longest: np.ndarray
     straight: np.ndarray
     centre: np.ndarray
     radius: np.ndarray
@@ -89,10 +91,10 @@ def cut_pieces(page, shape=None):
     span = np.maximum(np.hypot(*chord.T), 1e-12)
     offset = xy - xy[start][owner]
     off = np.abs(offset[:, 0] * chord[owner, 1] - offset[:, 1] * chord[owner, 0]) / span[owner]
-    length = np.add.reduceat(step, start)
+    length, longest = np.add.reduceat(step, start), np.maximum.reduceat(step, start)
     # A closed line has a short chord, which nothing keeps close to: it must not pass for straight.
     straight = (np.maximum.reduceat(off, start) <= STRAIGHT_PT * unit) & (length <= 1.02 * span)
-    centre, radius, sweep = _arcs(xy, vertex, start, owner, count, straight, unit)
+    centre, radius, sweep = _arcs(xy, vertex, start, owner, count, straight, longest, unit)
     return Pieces(
         xy=xy,
         vertex=vertex,
@@ -101,6 +103,7 @@ def cut_pieces(page, shape=None):
         path=np.array(paths),
         run=np.array(numbers),
         length=length,
+        longest=longest,
         straight=straight,
         centre=centre,
         radius=radius,
@@ -109,7 +112,7 @@ def cut_pieces(page, shape=None):
     )
 
 
-def _arcs(xy, vertex, start, owner, count, straight, unit):
+def _arcs(xy, vertex, start, owner, count, straight, longest, unit):
     """Centre, radius and sweep of every line that is an arc (algebraic fit: Kasa 1976, IEEE Trans. IM 25)."""
     weight = vertex.astype(float)
     total = np.add.reduceat(weight, start)
@@ -132,6 +135,7 @@ def _arcs(xy, vertex, start, owner, count, straight, unit):
     good &= np.maximum.reduceat(np.where(vertex, stray, 0), start) <= ROUND_SHARE * radius + ROUND_PT * unit
     # Chords and four-arc circles run beside the circle, but not far: a square's corners lie on a circle too.
     good &= np.maximum.reduceat(stray, start) <= 0.02 * radius
+    good &= longest <= LONGEST_CHORD * radius
     turn = np.arctan2(arm[:, 1], arm[:, 0])
     turned = np.abs((np.diff(turn, append=turn[-1:]) + np.pi) % (2 * np.pi) - np.pi)
     turned[start + count - 1] = 0

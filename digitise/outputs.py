@@ -2,6 +2,7 @@
 
 For a picture `panel.png`: `panel.csv`, `panel.record.json`, `panel.proof.png`; with several traces
 `panel.1.csv`, `panel.2.csv` ...; with several charts on the picture the stem becomes `panel-1`, `panel-2` ...
+`panel.proof.pdf` stands beside them where it is asked for.
 
 All files of one picture are written under passing names in the same folder and renamed only when every one of
 them is there; when a rename fails, what was renamed is undone. A file that is in the way is replaced only
@@ -64,13 +65,14 @@ def chart_stem(path, *, chart_number=1, n_charts=1):
     return f"{stem}-{chart_number}" if n_charts > 1 else stem
 
 
-def make_files(readings, *, with_proof=True):
+def make_files(readings, *, with_proof=True, with_proof_pdf=False):
     """The files of every chart of one picture, as a list of `ChartFiles`.
 
     Parameters
     ----------
     readings : tuple of Reading, charts of one picture in reading order
     with_proof : draw the proofs too, which take most of the time
+    with_proof_pdf : and as PDF pages
     """
     from .proof import draw_proof, encode_proof
 
@@ -86,6 +88,10 @@ def make_files(readings, *, with_proof=True):
         files[f"{stem}.record.json"] = write_record(record).encode()
         if with_proof:
             files[f"{stem}.proof.png"] = encode_proof(draw_proof(reading, record))
+        if with_proof_pdf:
+            from .proof_pdf import proof_pdf
+
+            files[f"{stem}.proof.pdf"] = proof_pdf(reading, record)
         charts.append(ChartFiles(stem=stem, record=record, files=files))
     return charts
 
@@ -233,8 +239,9 @@ def _in_the_way(chart, folder):
         page = f", page {old['page']}" if old.get("page") else ""
         raise _in_way(folder / own, f"holds the reading of another picture ({old['file']}{page})")
     tables = {trace["table"] for trace in earlier["traces"]}
+    belong = tables | {own, f"{chart.stem}.proof.png", f"{chart.stem}.proof.pdf"}
     for name in standing:
-        if name not in tables | {own, f"{chart.stem}.proof.png"} or (folder / name).is_dir():
+        if name not in belong or (folder / name).is_dir():
             raise _in_way(folder / name, "is there already and belongs to no earlier reading")
     # A record may name anything: only what such a name can be is looked for, and here only.
     numbered = re.compile(re.escape(chart.stem) + r"(\.[0-9]+)?\.csv")

@@ -14,7 +14,7 @@ from ._proof_colour import distinct_colours, main_colours
 from ._proof_page import MARGIN_PX, PANEL_PX, STRIP_PX, WIDTH_PX, Page
 from ._proof_panel import draw_error_strip, draw_grid, draw_trace, make_view, picture_panel, rule_strip
 
-__all__ = ["draw_proof", "encode_proof"]
+__all__ = ["draw_proof", "encode_proof", "lay_out"]
 
 PANEL_LEAST_PX, PANEL_MOST_PX = 360, 690
 STRIP_LABELS_PX = 60  # room left of the strip for its numbers
@@ -28,26 +28,29 @@ def draw_proof(reading, record):
     reading : Reading
     record : its record (`record.make_record`), for the figures and names
     """
+    return lay_out(reading, record, Page)
+
+
+def lay_out(reading, record, kind):
+    """A proof on a sheet of a kind (`Page`, or what answers its calls): what its `finish` returns."""
     view = make_view(reading, width=PANEL_PX, least=PANEL_LEAST_PX, most=PANEL_MOST_PX)
     shown = picture_panel(reading.picture.rgb, view, (255, 255, 255))
     present, paper = main_colours(shown)
     colours = distinct_colours(present, paper, max(len(reading.traces), 1))
-    plain = np.empty_like(shown)
-    plain[:] = np.round(paper)
+    page = kind(reading, record, colours, paper)
+    shown, plain = page.over(shown, reading.picture.rgb, view), page.blank(view.width, view.height)
     over, anew = _over_chart(view, reading), _drawn_anew(view, reading)
     draw_grid(plain, reading, anew, paper)
     for trace, colour in zip(reading.traces, colours, strict=False):
         draw_trace(plain, reading, trace, anew, colour, anew=True)
         draw_trace(shown, reading, trace, over, colour, anew=False)
-    strips = np.empty((STRIP_PX, WIDTH_PX - 2 * MARGIN_PX - STRIP_LABELS_PX, 3), np.uint8)
-    strips[:] = np.round(paper)
-    rule_strip(strips, paper)
+    strip = page.blank(WIDTH_PX - 2 * MARGIN_PX - STRIP_LABELS_PX, STRIP_PX)
+    rule_strip(strip, paper)
     for trace, colour in zip(reading.traces, colours, strict=False):
-        draw_error_strip(strips, trace.table, colour)
-    page = Page(reading, record, colours, paper)
+        draw_error_strip(strip, trace.table, colour)
     page.head()
     page.panels(shown, plain, anew, over)
-    page.strip(strips)
+    page.strip(strip)
     page.traces()
     page.review()
     return page.finish()

@@ -146,6 +146,7 @@ def followed(trace, grid, *, covers=()):
         radial_share=np.where(has, line.radial_share, 1.0),
         state=state,
         clear=state == "seen",
+        support=1.0,
         width_px=trace.width_px,
         sheet_outer_px=outer_px,
     )

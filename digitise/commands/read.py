@@ -28,6 +28,9 @@ def add_arguments(parser):
     parser.add_argument(
         "--json", action="store_true", help="print the record on standard output (a list of several)"
     )
+    parser.add_argument(
+        "--proof-pdf", action="store_true", help="write the proof as a PDF page too, for a project file"
+    )
     add_reading_options(parser)
 
 
@@ -71,7 +74,7 @@ def _read_one(path, args, taken):
     log.debug("%s: opened in %.0f ms", path, 1000 * (time.perf_counter() - start))
     readings = read_charts(picture, settings=settings)
     log.debug("%s: read after %.0f ms", path, 1000 * (time.perf_counter() - start))
-    charts = make_files(readings)
+    charts = make_files(readings, with_proof_pdf=args.proof_pdf)
     log.debug("%s: proof drawn after %.0f ms", path, 1000 * (time.perf_counter() - start))
     written = write_whole(charts, args.out, taken=taken)
     log.debug("%s: written after %.0f ms", path, 1000 * (time.perf_counter() - start))
