@@ -17,7 +17,7 @@ from .review import reason
 __all__ = ["scale_from_labels"]
 
 ENOUGH = 3  # labels that agree, with which habits of the trade are not needed
-SURE_MARGIN = 2.5  # log odds by which the next scale must be behind, with ENOUGH labels
+SURE_MARGIN = 3.0  # log odds by which the next scale must be behind, with ENOUGH labels
 PAIR_MARGIN = 3.5  # and with two
 LEAST_MARGIN = 1.0  # below, the labels say too little to go on
 ON_STEP_PX = 0.5  # a drawn ring this near to a whole step of the scale is taken to stand on it
