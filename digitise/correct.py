@@ -1,7 +1,8 @@
-"""Correct a grid by hand: move its centre or a ring, add or take away a ring, and settle it on the drawn lines.
+"""Correct a grid by hand: move its centre or a ring, add or drop a ring, settle it on the drawn lines.
 
-Each correction is a pure function from `Grid` to `Grid`, in picture px as a person points at them. What was placed by
-hand is uncertain by `HAND_U_PX`; settling it on the lines on the picture gives it back a measured uncertainty.
+Each correction is a pure function from `Grid` to `Grid`, in picture px as a person points at them. What was
+placed by hand is uncertain by `HAND_U_PX`; settling it on the lines on the picture gives it back a measured
+uncertainty.
 """
 
 from dataclasses import replace
@@ -21,13 +22,15 @@ HAND_U_PX = 0.4  # standard uncertainty of a point set by hand under a loupe; a 
 LEAST_APART_PX = 2.0  # two rings nearer than this are one line
 SETTLE_REACH_PX = (7.0, 4.0, 3.0)  # half lengths of the cuts across a line, round by round
 LEAST_POINTS = 12  # on a ring, for it to take part
-LEAST_SHARE = 0.25  # of a ring's cuts that must find a line, likewise: a line that only crosses it is another one
+LEAST_SHARE = (
+    0.25  # of a ring's cuts that must find a line, likewise: a line that only crosses it is another one
+)
 PLACES = np.array([2, 5])  # of the centre's x and y among the homography's first eight entries
 SIZES = np.array([0, 1, 3, 4])  # of the entries that hold size, turn and stretch
 
 
 def grid_by_hand(centre_x, centre_y, outer_px):
-    """A grid that has nothing but a centre and an outermost ring, as drawn by hand on a picture without one."""
+    """A grid that has nothing but a centre and an outermost ring, as drawn by hand."""
     homography = np.array([[outer_px, 0, centre_x], [0, outer_px, centre_y], [0, 0, 1.0]])
     covariance = np.zeros((8, 8))
     covariance[PLACES, PLACES] = HAND_U_PX**2
@@ -106,9 +109,11 @@ def settle_grid(picture, grid):
     for reach in SETTLE_REACH_PX:
         rings = [
             ring_points(full, plane, r, arc_deg=grid.arc_deg, reach_px=max(reach, w / 2 + 2.5))
-            for r, w in zip(rho, grid.ring_width_px)
+            for r, w in zip(rho, grid.ring_width_px, strict=True)
         ]
-        found = np.array([points.good.sum() >= max(LEAST_POINTS, LEAST_SHARE * len(points.good)) for points in rings])
+        found = np.array(
+            [points.good.sum() >= max(LEAST_POINTS, LEAST_SHARE * len(points.good)) for points in rings]
+        )
         if not found.any():
             raise NotReadError(
                 f"no drawn ring lies within {SETTLE_REACH_PX[0]:.0f} px of the grid", stage="grid",
@@ -116,23 +121,32 @@ def settle_grid(picture, grid):
             )  # fmt: skip
         lines = [spoke_points(full, plane, angle, 0.25, 0.97) for angle in grid.spoke_deg]
         chosen = np.flatnonzero(found)
-        fit = fit_plane([rings[k] for k in chosen], lines, grid.spoke_deg, start=parameters, ring_rho=rho[chosen])
+        fit = fit_plane(
+            [rings[k] for k in chosen], lines, grid.spoke_deg, start=parameters, ring_rho=rho[chosen]
+        )
         parameters, plane = fit.parameters, fit.homography
         rho, uncertain = rho.copy(), np.full(len(rho), HAND_U_PX / outer_radius(plane))
         rho[chosen], uncertain[chosen] = fit.ring_rho, fit.ring_rho_u
         keep = found
     settled = replace(
-        grid, homography=plane, covariance=fit.covariance, residual_px=fit.residual_px, reasons=(),
-        skew_deg=float(np.degrees(parameters[3])), skew_u_deg=float(np.degrees(fit.turn_u)) if lines else grid.skew_u_deg,
+        grid,
+        homography=plane,
+        covariance=fit.covariance,
+        residual_px=fit.residual_px,
+        reasons=(),
+        skew_deg=float(np.degrees(parameters[3])),
+        skew_u_deg=float(np.degrees(fit.turn_u)) if lines else grid.skew_u_deg,
         ring_drawn=np.where(keep, [points.drawn for points in rings], grid.ring_drawn),
         ring_width_px=np.where(keep, [points.width_px for points in rings], grid.ring_width_px),
-    )  # fmt: skip
+    )
     return _from_radii(settled, rho, uncertain)
 
 
 def _check_order(radii, outer_px):
     if radii[-1] * outer_px < LEAST_APART_PX or np.any(-np.diff(radii) * outer_px < LEAST_APART_PX):
-        raise UsageError("a ring would lie on another one or on the centre", remedy="move it elsewhere", stage="grid")
+        raise UsageError(
+            "a ring would lie on another one or on the centre", remedy="move it elsewhere", stage="grid"
+        )
 
 
 def _from_radii(grid, radii, uncertain, **more):

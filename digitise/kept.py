@@ -1,7 +1,8 @@
 """Results of stages, kept so that a later reading of the same picture redoes only what a change touches.
 
-A stage is a pure function, so its result may be taken again when its inputs are the same: the same frozen objects
-(compared by identity), or equal plain values. The window keeps one of these for as long as a picture is open.
+A stage is a pure function, so its result may be taken again when its inputs are the same: the same frozen
+objects (compared by identity), or equal plain values. The window keeps one of these for as long as a picture
+is open.
 """
 
 from collections import OrderedDict, defaultdict
@@ -19,7 +20,7 @@ class Kept:
         self._found = defaultdict(OrderedDict)
 
     def result(self, stage, *inputs, large=False, **aside):
-        """`stage(*inputs, **aside)`, or what it returned before for the same inputs; what it raises is not kept.
+        """`stage(*inputs, **aside)`, or what it returned before for the same inputs; errors are not kept.
 
         large : keep only a few; aside : handed on to the stage, and no part of what makes two calls the same
         """

@@ -1,18 +1,18 @@
 """The window's commands, one method each, named as in `keys`; they tell the session and ask the worker."""
 
-import importlib.resources
 import os
 
-from digitise.exceptions import DigitiseError, UsageError
+from digitise.exceptions import DigitiseError
 
-from . import flow
+from . import flow, jobs
 from .clipboard import pasted_source
 from .dialogs import AskUnsaved, SaveDialog, ask_picture, show_keys
-from .pages import SIZE_PX, PageChooser, look_at_pages
+from .pages import SIZE_PX, PageChooser
+from .samples import is_sample
 from .table_text import table_text
 from .words import said
 
-__all__ = ["Actions", "sample_pictures"]
+__all__ = ["Actions"]
 
 SCALINGS = (100, 125, 150, 175, 200, 250, 300)
 ZOOM_STEP = 1.5
@@ -25,7 +25,7 @@ class Actions:
         self.window, self.session = window, window.session
         self.page_chooser = self.dialog = None
 
-    # --- file ------------------------------------------------------------------------------------------------
+    # --- file
 
     def open_picture(self):
         """Ask for a file and open it."""
@@ -40,14 +40,16 @@ class Actions:
 
     def _open(self, path, page=None, picture_path=None, pasted=False):
         self.window.say(f"Opening {os.path.basename(path)}\u2026", "busy")
-        self.window.worker.ask("open", _open_source, path, page, picture_path, pasted)
+        self.window.worker.ask("open", jobs.open_source, path, page, picture_path, pasted)
 
     def opened(self, answer):
         """Take up what was opened, or say why it was not."""
-        if isinstance(answer.error, flow.NeedsPicture):
+        if isinstance(answer.error, flow.NeedsPictureError):
             record = answer.error.source
             self.window.say(said(answer.error), "alert")
-            path = ask_picture(self.window.root, folder=os.path.dirname(record), title="Where is the record's picture?")
+            path = ask_picture(
+                self.window.root, folder=os.path.dirname(record), title="Where is the record's picture?"
+            )
             if path:
                 self._open(record, picture_path=path)
             return
@@ -79,7 +81,12 @@ class Actions:
     def _offer_pages(self, first, *, only_if_several=False):
         look = self.window.look
         self.window.worker.ask(
-            "pages", _pages, self.session.now.picture.path, look.px(SIZE_PX), max(first, 1), only_if_several
+            "pages",
+            jobs.look_at_pages,
+            self.session.now.picture.path,
+            look.px(SIZE_PX),
+            max(first, 1),
+            only_if_several,
         )
 
     def pages_seen(self, answer):
@@ -112,12 +119,18 @@ class Actions:
             self.window.say("There is nothing to save yet", "alert")
             return
         now = self.session.now
-        folder = self.session.folder or (os.getcwd() if now.pasted or _is_sample(now.source) else os.path.dirname(os.path.abspath(now.source)))
-        self.dialog = SaveDialog(self.window.root, self.window.look, now, folder, lambda chosen: self._save(chosen, then))
+        folder = self.session.folder or (
+            os.getcwd()
+            if now.pasted or is_sample(now.source)
+            else os.path.dirname(os.path.abspath(now.source))
+        )
+        self.dialog = SaveDialog(
+            self.window.root, self.window.look, now, folder, lambda chosen: self._save(chosen, then)
+        )
 
     def _save(self, folder, then=None):
         self.window.say("Saving\u2026", "busy")
-        self.window.worker.ask("save", _save_state, self.session.now, folder, then)
+        self.window.worker.ask("save", jobs.save, self.session.now, folder, then)
 
     def saved(self, answer):
         """Say what was written, and go on with what waited for it."""
@@ -149,7 +162,7 @@ class Actions:
             self.window.root, self.window.look, words=words, lose=act, save=lambda: self.save(then=act)
         )
 
-    # --- edit ------------------------------------------------------------------------------------------------
+    # --- edit
 
     def undo(self):
         """Take back the last step."""
@@ -202,7 +215,7 @@ class Actions:
             self.window.say(said(error), "alert")
         self.window.changed()
 
-    # --- tools -----------------------------------------------------------------------------------------------
+    # --- tools
 
     def take_tool(self, name):
         """Take a tool in hand."""
@@ -238,7 +251,7 @@ class Actions:
 
     def _ask_grid(self, work, grid, words):
         self.window.say("Looking for the lines\u2026", "busy")
-        self.window.worker.ask("grid", _grid, work, self.session.now, grid, words)
+        self.window.worker.ask("grid", jobs.look_for_lines, work, self.session.now, grid, words)
 
     def grid_seen(self, answer):
         """Take the grid that was settled, unless something else was done meanwhile."""
@@ -249,7 +262,7 @@ class Actions:
         if serial == self.session.now.serial:
             self.attempt(self.session.correct_grid, grid, words)
 
-    # --- view ------------------------------------------------------------------------------------------------
+    # --- view
 
     def zoom_in(self):
         """Zoom in about the middle."""
@@ -304,11 +317,11 @@ class Actions:
 
     def toggle_fields(self):
         """Hide the fields, or show them again."""
-        self.window.toggle_fields()
+        self.window.panes.toggle_fields()
 
     def next_pane(self):
         """Give the keyboard to the next pane."""
-        self.window.next_pane()
+        self.window.panes.focus_next()
 
     def larger_text(self):
         """The next larger scaling."""
@@ -337,41 +350,3 @@ def _tool(name):
 
 for _name in ("look", "mark", "ink", "pin", "cover", "grid", "crop"):
     setattr(Actions, f"tool_{_name}", _tool(_name))
-
-
-def sample_pictures():
-    """Names of the pictures that come with the program, sorted; empty when they are not installed."""
-    try:
-        folder = importlib.resources.files("digitise.samples")
-        names = sorted(str(item) for item in folder.iterdir())
-    except (ModuleNotFoundError, OSError):
-        return []
-    return [name for name in names if name.endswith((".png", ".jpg")) and "." not in os.path.basename(name)[:-4]]
-
-
-def _is_sample(source):
-    return os.path.abspath(source) in {os.path.abspath(name) for name in sample_pictures()}
-
-
-# What runs in the worker thread:
-
-
-def _open_source(path, page, picture_path, pasted):
-    return flow.open_source(path, page=page, picture_path=picture_path, pasted=pasted)
-
-
-def _save_state(state, folder, then):
-    state = flow.complete(state)
-    if not state.charts:
-        raise UsageError("there is no chart to save", stage="outputs")
-    return state, flow.save_charts(state, folder), then
-
-
-def _pages(path, size_px, first, only_if_several):
-    return *look_at_pages(path, size_px, first), first, only_if_several
-
-
-def _grid(work, state, grid, words):
-    if work is flow.place_grid:
-        return state.serial, flow.place_grid(state, grid.centre_x, grid.centre_y, grid.outer_px), words
-    return state.serial, work(state, grid), words

@@ -1,4 +1,4 @@
-"""The picture with the reading over it: zoom about the pointer, pan, loupe, and the tools; a thin widget over `Hand`."""
+"""The picture with the reading over it: zoom, pan, loupe and the tools; a thin widget over `Hand`."""
 
 import tkinter as tk
 from tkinter import ttk
@@ -8,11 +8,12 @@ import numpy as np
 from digitise.exceptions import DigitiseError
 
 from .colours import overlay_colours
-from .frame import fit_frame, frame_pixels, loupe_pixels, to_ppm
+from .frame import fit_frame, frame_pixels, to_ppm
 from .hand import TOOLS
 from .level_editor import LevelEditor
 from .overlay import overlay_shapes, pointed_shapes
 from .pen import Pen
+from .sight import Sight
 from .theme import COLOURS
 from .words import said
 
@@ -20,7 +21,6 @@ __all__ = ["ChartView"]
 
 REACH_PX = 9  # design px, how near a click must be
 WHEEL_FACTOR = 1.25
-LOUPE_PX, LOUPE_ZOOM = 132, 9
 CURSORS = {"look": "fleur", "ink": "crosshair", "grid": "crosshair"}
 ARROWS = {"Left": (-1, 0), "Right": (1, 0), "Up": (0, -1), "Down": (0, 1)}
 
@@ -28,7 +28,8 @@ ARROWS = {"Left": (-1, 0), "Right": (1, 0), "Up": (0, -1), "Down": (0, 1)}
 class ChartView(ttk.Frame):
     """The picture's pane.
 
-    window : what is called back: `changed()`, `say(words, kind)`, `settle(grid)`, `place(grid)`, `pointed(x, y)`
+    window : what is called back: `changed()`, `say(words, kind)`, `settle(grid)`, `place(grid)`, `pointed(x,
+    y)`
     """
 
     def __init__(self, parent, window):
@@ -40,11 +41,12 @@ class ChartView(ttk.Frame):
         )  # fmt: skip
         self.canvas.pack(fill="both", expand=True)
         self.pen = Pen(self.canvas, self.look)
-        self.frame = fit_frame(0, 0, 100, 100, 100, 100)
+        self.frame = fit_frame((0, 0, 100, 100), 100, 100)
         self.sight = None  # picture place of the pointer or of the keyboard's sight
         self.by_key = False
         self.overlay_on = True
-        self._image = self._loupe = self._waiting = self._pan = None
+        self._image = self._waiting = self._pan = None
+        self._sight = Sight(self)
         self._editor = LevelEditor(self)
         self._fitted, self._coloured = None, None
         bind = self.canvas.bind
@@ -54,19 +56,22 @@ class ChartView(ttk.Frame):
         bind("<ButtonRelease-1>", self._release)
         bind("<Motion>", self._motion)
         bind("<Leave>", self._leave)
-        bind("<ButtonPress-2>", lambda event: self._start_pan(event))
+        bind("<ButtonPress-2>", self._start_pan)
         bind("<B2-Motion>", self._drag_pan)
-        bind("<ButtonPress-3>", lambda event: self.window.place_menu(event.x_root, event.y_root, *self._at(event)))
+        bind(
+            "<ButtonPress-3>",
+            lambda event: self.window.place_menu(event.x_root, event.y_root, *self._at(event)),
+        )
         bind("<Menu>", lambda _: self._menu_at_sight())
         bind("<MouseWheel>", lambda event: self._wheel(event, event.delta))
         bind("<Button-4>", lambda event: self._wheel(event, 1))
         bind("<Button-5>", lambda event: self._wheel(event, -1))
-        bind("<Return>", lambda event: self._click_at_sight(event))
+        bind("<Return>", self._click_at_sight)
         for name, (dx, dy) in ARROWS.items():
             for prefix, step in (("", 1), ("Shift-", 10)):
                 bind(f"<{prefix}{name}>", lambda _, x=dx * step, y=dy * step: self._arrow(x, y))
 
-    # --- what is shown ---------------------------------------------------------------------------------------
+    # --- what is shown
 
     def refresh(self):
         """Draw anew, once the present events are done."""
@@ -81,7 +86,7 @@ class ChartView(ttk.Frame):
         box = (0, 0, now.picture.width, now.picture.height)
         if chart is not None and not picture:
             box = (chart.box.x, chart.box.y, chart.box.w, chart.box.h)
-        self.frame = fit_frame(*box, max(self.canvas.winfo_width(), 50), max(self.canvas.winfo_height(), 50))
+        self.frame = fit_frame(box, max(self.canvas.winfo_width(), 50), max(self.canvas.winfo_height(), 50))
         self.refresh()
 
     def zoom(self, factor, x=None, y=None):
@@ -98,7 +103,8 @@ class ChartView(ttk.Frame):
     def show_place(self, x_px, y_px, reach_px):
         """Lead to a place on the picture."""
         w, h = self.frame.width, self.frame.height
-        self.frame = fit_frame(x_px - reach_px, y_px - reach_px, 2 * reach_px, 2 * reach_px, w, h, most_zoom=8.0)
+        box = (x_px - reach_px, y_px - reach_px, 2 * reach_px, 2 * reach_px)
+        self.frame = fit_frame(box, w, h, most_zoom=8.0)
         self.sight, self.by_key = (x_px, y_px), True
         self.refresh()
 
@@ -128,9 +134,7 @@ class ChartView(ttk.Frame):
         self._choose_colours()
         shapes = []
         if self.overlay_on:
-            shapes = overlay_shapes(
-                self.session, self.place, draft=self.hand.draft, scale_px=self.look.unit
-            )
+            shapes = overlay_shapes(self.session, self.place, draft=self.hand.draft, scale_px=self.look.unit)
         self.pen.draw(shapes)
         self.show_row()
         self._draw_sight()
@@ -174,43 +178,9 @@ class ChartView(ttk.Frame):
         self.window.colours_changed(self.pen.grid_colour, self.pen.trace_colours)
 
     def _draw_sight(self):
-        """The keyboard's sight and the loupe."""
-        self.canvas.delete("sight")
-        if self.sight is None:
-            return
-        x, y = self.place(*self.sight)
-        unit = self.look.unit
-        if self.by_key:
-            for colour, width in ((COLOURS["paper"], 3), (COLOURS["text"], 1)):
-                for dx, dy in ((1, 0), (0, 1)):
-                    for side in (-1, 1):
-                        self.canvas.create_line(
-                            x + side * dx * 4 * unit, y + side * dy * 4 * unit, x + side * dx * 14 * unit,
-                            y + side * dy * 14 * unit, fill=colour, width=width * unit, tags="sight",
-                        )  # fmt: skip
-        if self.hand.tool != "look" or self.session.held is not None:
-            self._draw_loupe(x, y)
+        self._sight.draw(loupe=self.hand.tool != "look" or self.session.held is not None)
 
-    def _draw_loupe(self, x, y):
-        size, edge = self.look.px(LOUPE_PX), self.look.px(10)
-        at = self.session.place_of_held() if self.by_key and self.session.held else self.sight
-        pixels = loupe_pixels(self.session.now.picture.rgb, *at, size=size, zoom=LOUPE_ZOOM * self.look.unit)
-        self._loupe = tk.PhotoImage(master=self.canvas, data=to_ppm(pixels), format="PPM")
-        left, top = edge, edge
-        if x < size + 4 * edge and y < size + 4 * edge:
-            left = self.frame.width - size - edge
-        self.canvas.create_image(left, top, image=self._loupe, anchor="nw", tags="sight")
-        self.canvas.create_rectangle(left, top, left + size, top + size, outline=COLOURS["text"], tags="sight")
-        cx, cy = left + size / 2, top + size / 2
-        gap, reach = 3 * self.look.unit, size / 2
-        for colour, width in ((COLOURS["paper"], 3), (COLOURS["mark"], 1)):
-            for x0, y0, x1, y1 in (
-                (cx - reach, cy, cx - gap, cy), (cx + gap, cy, cx + reach, cy),
-                (cx, cy - reach, cx, cy - gap), (cx, cy + gap, cx, cy + reach),
-            ):  # fmt: skip
-                self.canvas.create_line(x0, y0, x1, y1, fill=colour, width=width * self.look.unit, tags="sight")
-
-    # --- the pointer -----------------------------------------------------------------------------------------
+    # --- the pointer
 
     def _at(self, event):
         edge = int(self.canvas["highlightthickness"])
@@ -304,7 +274,7 @@ class ChartView(ttk.Frame):
         edge = int(self.canvas["highlightthickness"])
         self.zoom(WHEEL_FACTOR if delta > 0 else 1 / WHEEL_FACTOR, event.x - edge, event.y - edge)
 
-    # --- the keyboard ----------------------------------------------------------------------------------------
+    # --- the keyboard
 
     def _arrow(self, dx, dy):
         if not self.session.open:
@@ -327,7 +297,7 @@ class ChartView(ttk.Frame):
         return "break"
 
     def _click_at_sight(self, event):
-        """A click at the sight; for tools that draw a box or a grid the first is one end, the second the other."""
+        """Click at the sight; with tools that draw, the first click is one end, the second the other."""
         if not self.session.open or self.sight is None:
             return
         self.by_key = True

@@ -1,7 +1,8 @@
-"""What the clipboard holds for us: a picture, or the names of files; what Tk allows, and Pillow where Tk does not.
+"""What the clipboard holds for us: a picture, or the names of files.
 
-On X11 Tk hands over any kind of clipboard contents as numbers in text; there a copied PNG picture is read so. Windows
-and macOS give Tk text only, so Pillow's own grabber is asked for the picture. Copied files come as text everywhere.
+On X11 Tk hands over any kind of clipboard contents as numbers in text; there a copied PNG picture is read so.
+Windows and macOS give Tk text only, so Pillow's own grabber is asked for the picture. Copied files come as
+text everywhere.
 """
 
 import io
@@ -9,11 +10,11 @@ import os
 import tempfile
 import time
 import tkinter as tk
-import urllib.parse
 
-__all__ = ["paths_from_text", "pasted_source"]
+from .file_names import paths_from_text
 
-MOST_TEXT = 20_000
+__all__ = ["pasted_source"]
+
 KINDS = ("image/png", "image/jpeg", "image/bmp", "image/tiff")
 
 
@@ -36,24 +37,6 @@ def pasted_source(widget):
         if paths:
             return paths[0], False
     return None
-
-
-def paths_from_text(text):
-    """Names of files that are there, from lines of text, file addresses or quoted names."""
-    found = []
-    for line in text[:MOST_TEXT].splitlines():
-        name = line.strip().strip("\"'")
-        if name.startswith("file://"):
-            name = urllib.parse.unquote(urllib.parse.urlparse(name).path)
-            if os.name == "nt" and name[:1] == "/":
-                name = name[1:]
-        name = os.path.expanduser(name)
-        try:
-            if name and os.path.isfile(name):
-                found.append(name)
-        except ValueError:  # a null byte
-            continue
-    return found
 
 
 def _bytes(widget, kind):

@@ -23,7 +23,7 @@ def overlay_colours(rgb, n_traces):
 
 
 def _apart(one, other):
-    """Mean distance of two colours over kinds of sight, in units of a channel; enough to rank five candidates."""
+    """Mean distance of two colours over kinds of sight; enough to rank five candidates."""
     difference = (np.asarray(one, float) / 255) ** 2.2 - (np.asarray(other, float) / 255) ** 2.2
     return float(np.mean([np.linalg.norm(sight @ difference) for sight in SIGHTS]))
 

@@ -15,14 +15,20 @@ from .words import said
 __all__ = ["AskUnsaved", "SaveDialog", "show_keys"]
 
 PICTURE_TYPES = (
-    ("Pictures and records", "*.png *.jpg *.jpeg *.gif *.tif *.tiff *.bmp *.webp *.pdf *.PNG *.JPG *.PDF *.json"),
+    (
+        "Pictures and records",
+        "*.png *.jpg *.jpeg *.gif *.tif *.tiff *.bmp *.webp *.pdf *.PNG *.JPG *.PDF *.json",
+    ),
     ("All files", "*"),
 )
 
 
 def ask_picture(parent, *, folder=None, title="Open a picture or a record"):
     """A file's name, or ""."""
-    return filedialog.askopenfilename(parent=parent, title=title, initialdir=folder, filetypes=PICTURE_TYPES) or ""
+    return (
+        filedialog.askopenfilename(parent=parent, title=title, initialdir=folder, filetypes=PICTURE_TYPES)
+        or ""
+    )
 
 
 class SaveDialog:
@@ -35,7 +41,9 @@ class SaveDialog:
         self.done, self.state = done, state
         self.top = toplevel(parent, "Save", look)
         px = look.px
-        ttk.Label(self.top, text="Folder for table, record and proof").grid(row=0, column=0, columnspan=2, sticky="w")
+        ttk.Label(self.top, text="Folder for table, record and proof").grid(
+            row=0, column=0, columnspan=2, sticky="w"
+        )
         self.folder = tk.StringVar(self.top, folder)
         self.entry = ttk.Entry(self.top, textvariable=self.folder, width=52, font=look.fonts["text"])
         self.entry.grid(row=1, column=0, sticky="ew", pady=px(4))
@@ -72,7 +80,9 @@ class SaveDialog:
         self.done(folder)
 
     def _choose(self):
-        chosen = filedialog.askdirectory(parent=self.top, initialdir=self.folder.get() or None, title="Folder")
+        chosen = filedialog.askdirectory(
+            parent=self.top, initialdir=self.folder.get() or None, title="Folder"
+        )
         if chosen:
             self.folder.set(chosen)
 
@@ -97,7 +107,9 @@ class AskUnsaved:
         self.top = toplevel(parent, "Unsaved work", look)
         self.save, self.lose = save, lose
         px = look.px
-        ttk.Label(self.top, text="What you told of this picture is not saved.", style="Bold.TLabel").pack(anchor="w")
+        ttk.Label(self.top, text="What you told of this picture is not saved.", style="Bold.TLabel").pack(
+            anchor="w"
+        )
         ttk.Label(self.top, text="Save it first?").pack(anchor="w", pady=(px(2), px(14)))
         buttons = ttk.Frame(self.top)
         buttons.pack(anchor="e")
@@ -139,8 +151,12 @@ def show_keys(parent, look):
         block.pack(anchor="w", pady=(0, px(12)))
         ttk.Label(block, text=title, style="Bold.TLabel").grid(row=0, column=0, columnspan=2, sticky="w")
         for row, (key, words) in enumerate(items, 1):
-            ttk.Label(block, text=key, style="Fixed.TLabel").grid(row=row, column=0, sticky="w", padx=(0, px(10)))
-            ttk.Label(block, text=words, wraplength=px(230), justify="left").grid(row=row, column=1, sticky="w")
+            ttk.Label(block, text=key, style="Fixed.TLabel").grid(
+                row=row, column=0, sticky="w", padx=(0, px(10))
+            )
+            ttk.Label(block, text=words, wraplength=px(230), justify="left").grid(
+                row=row, column=1, sticky="w"
+            )
         heights[at] += len(items) + 2
     top.focus_set()
     return top

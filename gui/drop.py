@@ -1,7 +1,7 @@
 """Files dropped on the window, where Tk allows.
 
-Tk by itself takes no dropped files on Windows and X11; where the `tkdnd` extension of Tk is installed it is used. On
-macOS files dropped on the application's icon come as a call of Tk itself.
+Tk by itself takes no dropped files on Windows and X11; where the `tkdnd` extension of Tk is installed it is
+used. On macOS files dropped on the application's icon come as a call of Tk itself.
 """
 
 import tkinter as tk

@@ -23,18 +23,18 @@ from digitise.settings import Settings
 
 from .state import Chart, Seen, State
 
-__all__ = ["NeedsPicture", "Saved", "complete", "open_source", "place_grid", "save_charts", "settle"]
+__all__ = ["NeedsPictureError", "Saved", "complete", "open_source", "place_grid", "save_charts", "settle"]
 
 RECORD_END = ".json"
 
 
-class NeedsPicture(DigitiseError):
+class NeedsPictureError(DigitiseError):
     """A record was opened whose picture is not beside it; `source` is the record."""
 
 
 @dataclass(frozen=True, kw_only=True)
 class Saved:
-    """What was saved: outputs.Written, the folder, and the number of every chart left out because it is not read."""
+    """What was saved: outputs.Written, the folder, the numbers of the charts left out as not read."""
 
     written: object
     folder: str
@@ -45,7 +45,7 @@ def open_source(path, *, page=None, picture_path=None, pasted=False):
     """Open a picture or a record and read it; a complete `State`.
 
     picture_path : the picture that goes with a record, when it is not beside it
-    Raises `PictureError`, or `NeedsPicture` for a record whose picture is elsewhere.
+    Raises `PictureError`, or `NeedsPictureError` for a record whose picture is elsewhere.
     """
     path = os.fspath(path)
     if path.lower().endswith(RECORD_END):
@@ -56,7 +56,7 @@ def open_source(path, *, page=None, picture_path=None, pasted=False):
 
 
 def complete(state):
-    """Find the charts when they are awaited, and read every chart that is awaited, the one worked on first."""
+    """Find the charts if they are awaited, and read every one that is, the one worked on first."""
     if state.charts is None:
         state = _find(state)
     charts = list(state.charts)
@@ -95,11 +95,15 @@ def save_charts(state, folder):
     """
     readings = tuple(chart.reading for chart in state.charts if chart.reading is not None)
     if not readings:
-        raise UsageError("no chart is read yet", remedy="mend what is said beside the fields", stage="outputs")
+        raise UsageError(
+            "no chart is read yet", remedy="mend what is said beside the fields", stage="outputs"
+        )
     left_out = tuple(k for k, chart in enumerate(state.charts, 1) if chart.reading is None)
     target = Path(folder) / os.path.basename(state.picture.path)
     if state.pasted and target.exists() and target.read_bytes() != Path(state.picture.path).read_bytes():
-        raise UsageError("is there already", remedy="name another folder", stage="outputs", source=str(target))
+        raise UsageError(
+            "is there already", remedy="name another folder", stage="outputs", source=str(target)
+        )
     written = write_whole(make_files(readings), folder)
     if state.pasted and not target.exists():
         write_file(target, Path(state.picture.path).read_bytes())
@@ -120,7 +124,9 @@ def _find(state):
     for number, box in enumerate(boxes, 1):
         settings = _settings_there(box, state.before) or template
         chart = (number, len(boxes)) if len(boxes) > 1 else None
-        charts.append(Chart(settings=replace(settings, crop=template.crop, page=template.page, chart=chart), box=box))
+        charts.append(
+            Chart(settings=replace(settings, crop=template.crop, page=template.page, chart=chart), box=box)
+        )
     at = min(state.at, len(charts) - 1)
     return replace(state, charts=tuple(charts), at=at, before=(), fault=None)
 
@@ -178,27 +184,33 @@ def _open_record(path, picture_path):
     beside = Path(path).parent / name
     if picture_path is None:
         if not name or not beside.is_file():
-            raise NeedsPicture(f"its picture {name} is not beside it", remedy="show where it is", source=path)
+            raise NeedsPictureError(f"its picture {name} is not beside it", remedy="show where it is", source=path)
         picture_path = beside
     told = _told(record, path)
     picture = open_picture(picture_path, page=told.page)
     if picture.sha256 != record["chart"]["sha256"]:
         raise PictureError(
-            "is not the picture that the record was made from", remedy="open the picture itself to read it anew",
-            stage="record", source=os.fspath(picture_path),
-        )  # fmt: skip
+            "is not the picture that the record was made from",
+            remedy="open the picture itself to read it anew",
+            stage="record",
+            source=os.fspath(picture_path),
+        )
     state = State(
-        picture=picture, kept=Kept(), template=Settings(page=told.page, crop=told.crop, step_deg=told.step_deg),
-        source=path, at=record["chart"]["number"] - 1,
-    )  # fmt: skip
+        picture=picture,
+        kept=Kept(),
+        template=Settings(page=told.page, crop=told.crop, step_deg=told.step_deg),
+        source=path,
+        at=record["chart"]["number"] - 1,
+    )
     if told.grid is not None and told.chart is None:
         chart = Chart(settings=told, box=_recorded_box(record, told.grid, picture))
         return complete(replace(state, charts=(chart,), at=0))
     state = _find(state)
     wanted = _siblings(path, record)
-    if len(state.charts) != record["chart"]["of"]:
+    number, of = record["chart"]["number"], record["chart"]["of"]
+    if len(state.charts) != of:
         raise PictureError(
-            f"is of chart {record['chart']['number']} of {record['chart']['of']}, and {len(state.charts)} were found",
+            f"is of chart {number} of {of}, and {len(state.charts)} were found",
             remedy="open the picture itself to read it anew", stage="record", source=path,
         )  # fmt: skip
     charts = [
@@ -214,13 +226,20 @@ def _recorded_box(record, grid, picture):
         x, y, w, h = region
         if 0 <= x and 0 <= y and 0 < w <= picture.width - x and 0 < h <= picture.height - y:
             return Box(
-                x=x, y=y, w=w, h=h, centre_x=grid.centre_x, centre_y=grid.centre_y, outer_px=grid.outer_px, score=1.0
+                x=x,
+                y=y,
+                w=w,
+                h=h,
+                centre_x=grid.centre_x,
+                centre_y=grid.centre_y,
+                outer_px=grid.outer_px,
+                score=1.0,
             )
     return box_around(grid, picture)
 
 
 def _siblings(path, record):
-    """Number of a chart -> its settings, from this record and those beside it that are of the same picture."""
+    """Number of a chart -> its settings, from this record and those beside it of the same picture."""
     number, of = record["chart"]["number"], record["chart"]["of"]
     wanted = {number: _told(record, path)}
     parts = re.fullmatch(rf"(.*-){number}(\.record\.json)", os.path.basename(path))
@@ -242,6 +261,8 @@ def _told(record, path):
         return settings_as_told(record)
     except UsageError as error:
         raise PictureError(
-            f"holds settings that cannot be right: {error.cause}", remedy="open the picture itself to read it anew",
-            stage="record", source=os.fspath(path),
-        ) from None  # fmt: skip
+            f"holds settings that cannot be right: {error.cause}",
+            remedy="open the picture itself to read it anew",
+            stage="record",
+            source=os.fspath(path),
+        ) from None

@@ -51,8 +51,9 @@ def _scale_words(reading):
 def _bearing_words(reading):
     bearing = reading.bearing
     turn = "clockwise" if bearing.turn == "cw" else "counter-clockwise"
+    origin, zero_deg = SOURCES.get(bearing.source, bearing.source), round(bearing.zero_deg, 1) % 360
     signed = ", printed \u00b1180" if bearing.signed else ""
-    return f"{SOURCES.get(bearing.source, bearing.source)}: 0\u00b0 at {round(bearing.zero_deg, 1) % 360:g}\u00b0 from the top, {turn}{signed}"
+    return f"{origin}: 0\u00b0 at {zero_deg:g}\u00b0 from the top, {turn}{signed}"
 
 
 def _db(value):

@@ -55,8 +55,9 @@ class Frame:
         )
 
 
-def fit_frame(x, y, w, h, width, height, *, most_zoom=4.0):
-    """The frame in which a box of the picture just fits."""
+def fit_frame(box, width, height, *, most_zoom=4.0):
+    """The frame in which a box (x, y, w, h) of the picture just fits."""
+    x, y, w, h = box
     zoom = float(np.clip(min(width / max(w, 1), height / max(h, 1)), LEAST_ZOOM, most_zoom))
     return Frame(
         left=x - 0.5 + w / 2 - width / 2 / zoom, top=y - 0.5 + h / 2 - height / 2 / zoom,
@@ -84,7 +85,7 @@ def frame_pixels(rgb, frame, *, crop=None, covers=()):
 def loupe_pixels(rgb, x_px, y_px, *, size, zoom):
     """(size, size, 3) uint8 about a point of the picture, its pixels as squares."""
     reach = int(size / zoom / 2) + 2
-    x0, y0 = int(round(x_px)), int(round(y_px))
+    x0, y0 = round(x_px), round(y_px)
     part = np.full((2 * reach + 1, 2 * reach + 1, 3), BEYOND, np.uint8)
     height, width = rgb.shape[:2]
     xs, ys = np.arange(x0 - reach, x0 + reach + 1), np.arange(y0 - reach, y0 + reach + 1)

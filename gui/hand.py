@@ -1,7 +1,8 @@
 """What the pointer and the arrow keys do on the picture, tool by tool; no widget takes part.
 
-Places are in picture px; `reach_px` is how near a click must be, which the view works out from its zoom. A press and
-a release with little between them is a click. While something is dragged, `draft` says what to draw.
+Places are in picture px; `reach_px` is how near a click must be, which the view works out from its zoom. A
+press and a release with little between them is a click. While something is dragged, `draft` says what to
+draw.
 """
 
 from dataclasses import dataclass
@@ -38,10 +39,11 @@ class Draft:
 class Hand:
     """The tool in hand and what it is in the middle of.
 
-    tool : key of `TOOLS`; draft : Draft or None; asks : place of a new mark whose level is to be typed, or None;
-    asks_mark : index of a mark whose level is to be typed again, or None; placed : Draft of a grid that was drawn or
-    dragged, for the caller to look for lines near it; anew : the next drag with
-    the tool Grid draws a new grid
+    tool : key of `TOOLS`; draft : Draft or None; asks : place of a new mark whose level is to be typed, or
+    None;
+    asks_mark : index of a mark whose level is to be typed again, or None; placed : Draft of a grid that was
+    drawn or dragged, for the caller to look for lines near it; anew : the next drag with the tool Grid draws
+    a new grid
     """
 
     def __init__(self, session):
@@ -199,6 +201,6 @@ def _ring_or_none(grid, k, rho):
 
 
 def _box(one, other):
-    """Box between two points; a box begins at the outer edge of its first px, half a px before that px's centre."""
+    """Box between two points; it begins at the outer edge of its first px, half a px before the centre."""
     x, y = min(one[0], other[0]) + 0.5, min(one[1], other[1]) + 0.5
     return x, y, abs(one[0] - other[0]), abs(one[1] - other[1])

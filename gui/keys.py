@@ -1,4 +1,4 @@
-"""Every command of the window: its words, its key as Tk names it and as it is shown. One table, so that none is hidden.
+"""Every command of the window with its words and its key, in one table so that none is hidden.
 
 Single letters act only while no text is being typed.
 """
@@ -12,8 +12,8 @@ __all__ = ["COMMANDS", "Command", "command", "groups"]
 class Command:
     """One command.
 
-    name : method of the window that does it; words : as in the menus; keys : Tk event sequences; shown : the key
-    as shown; group : the menu it stands in; plain : a bare key, which text fields keep for themselves
+    name : method of the window that does it; words : as in the menus; keys : Tk event sequences; shown : the
+    key as shown; group : the menu it stands in; plain : a bare key, which text fields keep for themselves
     """
 
     name: str

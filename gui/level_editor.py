@@ -36,7 +36,12 @@ class LevelEditor:
         self.entry.pack(side="left", padx=px(4))
         tk.Label(row, text="dB", background=paper, font=fonts["text"]).pack(side="left")
         self.fault = tk.Label(
-            box, background=paper, foreground=COLOURS["alert"], font=fonts["small"], wraplength=px(220), justify="left"
+            box,
+            background=paper,
+            foreground=COLOURS["alert"],
+            font=fonts["small"],
+            wraplength=px(220),
+            justify="left",
         )
         if k is not None:
             self.entry.insert(0, f"{self.session.settings.marks[k].level_db:g}")

@@ -19,5 +19,7 @@ def read_level(text):
     except ValueError:
         value = math.nan
     if not math.isfinite(value):
-        raise UsageError(f"\u201c{text.strip()}\u201d is not a number" if text.strip() else "type a level in dB")
+        raise UsageError(
+            f"\u201c{text.strip()}\u201d is not a number" if text.strip() else "type a level in dB"
+        )
     return value

@@ -70,7 +70,9 @@ class TableView(ttk.Frame):
         px = self.look.px
         top = ttk.Frame(self)
         top.pack(side="bottom", fill="x", pady=(px(3), 0))
-        ttk.Button(top, text="Copy the table", style="Small.TButton", command=lambda: window.actions.copy_table()).pack(side="left")
+        ttk.Button(top, text="Copy the table", style="Small.TButton", command=window.actions.copy_table).pack(
+            side="left"
+        )
         self.note = ttk.Label(top, style="Dim.TLabel")
         self.note.pack(side="left", padx=px(8))
         _caution(self, self.look)
@@ -78,8 +80,12 @@ class TableView(ttk.Frame):
         self.tree = ttk.Treeview(self, columns=names, show="headings", selectmode="extended", height=4)
         for name, heading in COLUMNS:
             self.tree.heading(name, text=heading)
-            width = max(self.look.fonts["small"].measure(heading), self.look.fonts["text"].measure("bridged")) + px(10)
-            self.tree.column(name, width=width, minwidth=px(40), anchor="w" if name == "state" else "e", stretch=True)
+            width = max(
+                self.look.fonts["small"].measure(heading), self.look.fonts["text"].measure("bridged")
+            ) + px(10)
+            self.tree.column(
+                name, width=width, minwidth=px(40), anchor="w" if name == "state" else "e", stretch=True
+            )
         bar = ttk.Scrollbar(self, orient="vertical", command=self.tree.yview)
         self.tree.configure(yscrollcommand=bar.set)
         bar.pack(side="right", fill="y")
@@ -94,16 +100,22 @@ class TableView(ttk.Frame):
 
     def refresh(self):
         """Show the rows of the trace."""
-        trace = self.session.shown_trace if self.session.chart is not None and self.session.chart.done else None
+        trace = (
+            self.session.shown_trace if self.session.chart is not None and self.session.chart.done else None
+        )
         if trace is self._shown:
             return
         self._shown = trace
         self.tree.delete(*self.tree.get_children())
         for k, line in enumerate(write_table(trace.table).splitlines()[1:] if trace is not None else ()):
             values = line.split(",")
-            self.tree.insert("", "end", iid=str(k), values=[value or "\u2013" for value in values], tags=(values[-1],))
+            self.tree.insert(
+                "", "end", iid=str(k), values=[value or "\u2013" for value in values], tags=(values[-1],)
+            )
         self.show_row()
-        self.note.configure(text=f"{len(self.tree.get_children())} rows" if trace is not None else "no table yet")
+        self.note.configure(
+            text=f"{len(self.tree.get_children())} rows" if trace is not None else "no table yet"
+        )
 
     def show_row(self):
         """Select the row being pointed at."""
@@ -157,14 +169,18 @@ class FiguresView(ttk.Frame):
         caption = self.session.reading.caption.lower()
         named = [cut for cut in ("azimuth", "elevation") if cut in caption]
         for item in figures_of(trace.table, cut=named[0] if len(named) == 1 else ""):
-            self.tree.insert("", "end", values=(item.title, figure_words(item)), tags=("absent",) if item.absent else ())
+            self.tree.insert(
+                "", "end", values=(item.title, figure_words(item)), tags=("absent",) if item.absent else ()
+            )
 
 
 def _caution(page, look):
     """The caution at the foot of a page."""
     label = ttk.Label(page, text=CAUTION_SHORT, style="Dim.TLabel", justify="left", wraplength=look.px(380))
     label.pack(side="bottom", fill="x", pady=(look.px(3), 0))
-    page.bind("<Configure>", lambda event: label.configure(wraplength=max(event.width - look.px(6), 50)), add="+")
+    page.bind(
+        "<Configure>", lambda event: label.configure(wraplength=max(event.width - look.px(6), 50)), add="+"
+    )
 
 
 def figure_words(item):

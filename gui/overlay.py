@@ -1,7 +1,8 @@
-"""What lies over the picture, as plain shapes in screen px: grid, traces, marks, pins, covers, reasons; no widget.
+"""What lies over the picture, as plain shapes in screen px: grid, traces, marks, pins, covers, reasons.
 
-States and kinds differ by dash and shape besides colour: a seen row is a full line, a bridged one a dashed line with
-open circles, floor a filled triangle, missing a cross on the outermost ring; a mark is a diamond, a pin a drop.
+States and kinds differ by dash and shape besides colour: a seen row is a full line, a bridged one a dashed
+line with open circles, floor a filled triangle, missing a cross on the outermost ring; a mark is a diamond, a
+pin a drop.
 """
 
 from dataclasses import dataclass
@@ -10,8 +11,8 @@ import numpy as np
 
 from digitise._proof_panel import on_arc
 
+from .at_place import trace_places
 from .places import reason_places
-from .session import trace_places
 
 __all__ = ["Shape", "overlay_shapes", "pointed_shapes", "redraw_shapes"]
 
@@ -26,7 +27,8 @@ class Shape:
 
     kind : "line", "circle", "triangle", "cross", "diamond", "drop", "box", "tag", "words" or "plus"
     style : what it stands for, which the view turns into colour, width and dash
-    points : (n, 2) screen px; text : of a tag or beside a marker; k : which trace; held : it is what the keys move
+    points : (n, 2) screen px; text : of a tag or beside a marker; k : which trace; held : it is what the keys
+    move
     """
 
     kind: str
@@ -114,7 +116,9 @@ def _grid(session, grid, place, stale, scale_px, *, zero=True):
     angles = start + np.linspace(0, (end - start) % 360 or 360.0, RING_POINTS)
     style = "grid-stale" if stale else "grid"
     for plane in grid.spoke_deg:
-        yield Shape(kind="line", style=f"{style}-spoke", points=_on_grid(grid, place, np.array([0.06, 1.0]), plane))
+        yield Shape(
+            kind="line", style=f"{style}-spoke", points=_on_grid(grid, place, np.array([0.06, 1.0]), plane)
+        )
     for k, rho in enumerate(grid.ring_rho):
         name = f"{style}-outer" if k == 0 else f"{style}-ring"
         held = session.held == ("ring", k)
@@ -126,15 +130,22 @@ def _grid(session, grid, place, stale, scale_px, *, zero=True):
         return
     last = None
     along = _quiet_angle(reading)
-    for rho, level in zip(grid.ring_rho, reading.scale.level(grid.ring_rho)):
+    for rho, level in zip(grid.ring_rho, reading.scale.level(grid.ring_rho), strict=True):
         point = _on_grid(grid, place, np.array([rho]), along)
         if last is None or np.hypot(*(point - last)[0]) >= LABEL_APART_PX * scale_px:
-            yield Shape(kind="tag", style="ring-level", points=point, text=f"{round(float(level), 2) + 0.0:g}")
+            yield Shape(
+                kind="tag", style="ring-level", points=point, text=f"{round(float(level), 2) + 0.0:g}"
+            )
             last = point
     if zero:
         at = reading.bearing.to_plane(np.zeros(1))
         turn = "\u21bb" if reading.bearing.turn == "cw" else "\u21ba"
-        yield Shape(kind="tag", style="zero", points=_on_grid(grid, place, np.array([1.0]), at), text=f"0\u00b0 {turn}")
+        yield Shape(
+            kind="tag",
+            style="zero",
+            points=_on_grid(grid, place, np.array([1.0]), at),
+            text=f"0\u00b0 {turn}",
+        )
 
 
 def _quiet_angle(reading):
@@ -162,25 +173,31 @@ def _traces(session, place, stale, scale_px):
         x, y = trace_places(reading, trace)
         points = _points(place, x, y)
         plane = reading.bearing.to_plane(trace.table.angle_deg)
-        state = np.where(on_arc(reading.grid, plane), trace.table.state, "")  # off the drawn arc nothing is missed
+        state = np.where(
+            on_arc(reading.grid, plane), trace.table.state, ""
+        )  # off the drawn arc nothing is missed
         for first, last, style in _runs(state):
             index = np.arange(first, last + 1) % len(state)
             yield Shape(kind="line", style=f"trace-{style}{suffix}", points=points[index], k=k)
         ring = _on_grid(reading.grid, place, 1.0, plane)
-        for name, kind, where in (("bridged", "circle", points), ("floor", "triangle", points), ("missing", "cross", ring)):
+        for name, kind, where in (
+            ("bridged", "circle", points),
+            ("floor", "triangle", points),
+            ("missing", "cross", ring),
+        ):
             for point in _apart(where[state == name], MARKER_APART_PX * scale_px):
                 yield Shape(kind=kind, style=f"trace-{name}{suffix}", points=point[None], k=k)
 
 
 def _runs(state):
-    """(first, last, "seen" or "bridged") of the lines round a table; last may run past its end by one, to close."""
+    """(first, last, "seen" or "bridged") of the lines round a table; last may be its length, to close."""
     n = len(state)
     lined = np.isin(state, ("seen", "bridged"))
     joined = lined & np.roll(lined, -1)
     solid = joined & (state == "seen") & (np.roll(state, -1) == "seen")
     for chosen, style in ((solid, "seen"), (joined & ~solid, "bridged")):
         edges = np.diff(np.concatenate(([0], chosen.astype(np.int8), [0])))
-        for first, end in zip(np.flatnonzero(edges == 1), np.flatnonzero(edges == -1)):
+        for first, end in zip(np.flatnonzero(edges == 1), np.flatnonzero(edges == -1), strict=True):
             yield first, min(end, n), style
 
 
@@ -199,7 +216,13 @@ def _told(session, place, draft):
     for k, mark in enumerate(settings.marks):
         at = _dragged(session, draft, ("mark", k)) or (mark.x_px, mark.y_px)
         points = _points(place, np.array([at[0]]), np.array([at[1]]))
-        yield Shape(kind="diamond", style="mark", points=points, text=f"{mark.level_db:g}", held=session.held == ("mark", k))
+        yield Shape(
+            kind="diamond",
+            style="mark",
+            points=points,
+            text=f"{mark.level_db:g}",
+            held=session.held == ("mark", k),
+        )
     for k, pin in enumerate(settings.pins):
         at = _dragged(session, draft, ("pin", k)) or pin
         points = _points(place, np.array([at[0]]), np.array([at[1]]))

@@ -6,19 +6,12 @@ from tkinter import ttk
 import numpy as np
 
 from .frame import to_ppm
+from .jobs import MOST_PAGES
 from .theme import COLOURS, toplevel
 
-__all__ = ["PageChooser", "look_at_pages"]
+__all__ = ["SIZE_PX", "PageChooser"]
 
 COLUMNS, SIZE_PX = 4, 150
-MOST_PAGES = 24  # at a time
-
-
-def look_at_pages(path, size_px, first):
-    """(number of pages, thumbnails from page `first` on); runs in the worker thread."""
-    from digitise.pdf import page_count, page_thumbnails
-
-    return page_count(path), page_thumbnails(path, size_px=size_px, first=first, count=MOST_PAGES)
 
 
 class PageChooser:
@@ -36,12 +29,22 @@ class PageChooser:
             image = tk.PhotoImage(master=self.top, data=to_ppm(shown), format="PPM")
             self._images.append(image)
             button = tk.Button(
-                grid, image=image, text=f"page {page}", compound="top", font=look.fonts["text"], relief="flat",
-                background=COLOURS["accent-soft"] if page == here else COLOURS["paper"], borderwidth=0,
-                highlightthickness=px(2), highlightcolor=COLOURS["focus"], highlightbackground=COLOURS["rule"],
-                activebackground=COLOURS["accent-soft"], command=lambda page=page: self.choose(page),
-                width=px(SIZE_PX) + px(8), height=px(SIZE_PX) + look.fonts["text"].metrics("linespace") + px(8),
-            )  # fmt: skip
+                grid,
+                image=image,
+                text=f"page {page}",
+                compound="top",
+                font=look.fonts["text"],
+                relief="flat",
+                background=COLOURS["accent-soft"] if page == here else COLOURS["paper"],
+                borderwidth=0,
+                highlightthickness=px(2),
+                highlightcolor=COLOURS["focus"],
+                highlightbackground=COLOURS["rule"],
+                activebackground=COLOURS["accent-soft"],
+                command=lambda page=page: self.choose(page),
+                width=px(SIZE_PX) + px(8),
+                height=px(SIZE_PX) + look.fonts["text"].metrics("linespace") + px(8),
+            )
             button.bind("<Return>", lambda _, page=page: self.choose(page))
             button.grid(row=k // COLUMNS, column=k % COLUMNS, padx=px(4), pady=px(4))
             self.buttons.append(button)
@@ -49,9 +52,13 @@ class PageChooser:
         row.pack(fill="x", pady=(px(8), 0))
         ttk.Label(row, text=f"{n_pages} pages", style="Dim.TLabel").pack(side="left")
         if first + len(thumbnails) <= n_pages:
-            ttk.Button(row, text="Later pages", command=lambda: self._more(more, first + MOST_PAGES)).pack(side="right")
+            ttk.Button(row, text="Later pages", command=lambda: self._more(more, first + MOST_PAGES)).pack(
+                side="right"
+            )
         if first > 1:
-            ttk.Button(row, text="Earlier pages", command=lambda: self._more(more, first - MOST_PAGES)).pack(side="right")
+            ttk.Button(row, text="Earlier pages", command=lambda: self._more(more, first - MOST_PAGES)).pack(
+                side="right"
+            )
         if self.buttons:
             self.buttons[0].focus_set()
 

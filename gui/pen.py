@@ -65,9 +65,14 @@ class Pen:
         unit = self.look.unit
         scaled = tuple(max(1, round(part * unit)) for part in dash) if dash else ()
         self.canvas.create_line(
-            *np.round(points, 2).ravel().tolist(), fill=colour, width=width * unit, dash=scaled, tags=self.tag,
-            capstyle="round" if not dash else "butt", joinstyle="round",
-        )  # fmt: skip
+            *np.round(points, 2).ravel().tolist(),
+            fill=colour,
+            width=width * unit,
+            dash=scaled,
+            tags=self.tag,
+            capstyle="round" if not dash else "butt",
+            joinstyle="round",
+        )
 
     def _round(self, x, y, radius, **options):
         self.canvas.create_oval(x - radius, y - radius, x + radius, y + radius, tags=self.tag, **options)
@@ -94,7 +99,13 @@ class Pen:
         (x, y), r = shape.points[0], 0.9 * MARKER_PX * self.look.unit
         for side in (-1, 1):
             self.canvas.create_line(
-                x - r, y - side * r, x + r, y + side * r, fill=self.colour(shape), width=1.6 * self.look.unit, tags=self.tag
+                x - r,
+                y - side * r,
+                x + r,
+                y + side * r,
+                fill=self.colour(shape),
+                width=1.6 * self.look.unit,
+                tags=self.tag,
             )
 
     def _plus(self, shape):
@@ -103,7 +114,13 @@ class Pen:
         colour = MARK if shape.held else self.colour(shape)
         for dx, dy in ((r, 0), (0, r)):
             self.canvas.create_line(
-                x - dx, y - dy, x + dx, y + dy, fill=colour, width=(2.6 if shape.held else 1.6) * unit, tags=self.tag
+                x - dx,
+                y - dy,
+                x + dx,
+                y + dy,
+                fill=colour,
+                width=(2.6 if shape.held else 1.6) * unit,
+                tags=self.tag,
             )
 
     def _diamond(self, shape):
@@ -135,7 +152,9 @@ class Pen:
         colour = {"cover": COLOURS["dim"], "draft-cover": COLOURS["dim"]}.get(shape.style, COLOURS["accent"])
         if shape.style == "chart-other":
             colour = COLOURS["dim"]
-        dash = {"crop": (8, 4), "draft-crop": (8, 4), "chart-other": (2, 4), "chart-here": (2, 4)}.get(shape.style)
+        dash = {"crop": (8, 4), "draft-crop": (8, 4), "chart-other": (2, 4), "chart-here": (2, 4)}.get(
+            shape.style
+        )
         scaled = tuple(max(1, round(part * unit)) for part in dash) if dash else ()
         self.canvas.create_rectangle(
             x0, y0, x1, y1, outline=MARK if shape.held else colour, width=(2.4 if shape.held else 1.4) * unit,
@@ -150,7 +169,9 @@ class Pen:
 
     def _words(self, shape):
         x, y = shape.points[0]
-        self.canvas.create_text(x, y, text=shape.text, fill=COLOURS["text"], font=self.look.fonts["text"], tags=self.tag)
+        self.canvas.create_text(
+            x, y, text=shape.text, fill=COLOURS["text"], font=self.look.fonts["text"], tags=self.tag
+        )
 
     def _label(self, x, y, words, colour, anchor, *, filled=False):
         """Words on a small ground of their own, readable on any picture."""
@@ -161,4 +182,6 @@ class Pen:
         self.canvas.create_rectangle(
             left, y - height / 2, left + width, y + height / 2, fill=ground, outline="", tags=self.tag
         )
-        self.canvas.create_text(left + 3 * unit, y, text=words, fill=ink, font=font, anchor="w", tags=self.tag)
+        self.canvas.create_text(
+            left + 3 * unit, y, text=words, fill=ink, font=font, anchor="w", tags=self.tag
+        )

@@ -33,7 +33,10 @@ def place_choices(window, x_px, y_px):
             k = int(off.argmin())
             yield "Type this ring's level\u2026", lambda: window.ask_level(x_px, y_px)
             if len(grid.ring_rho) > 1:
-                yield "This is no ring", lambda: _correct(actions, correct.drop_ring, grid, k, "remove a ring")
+                yield (
+                    "This is no ring",
+                    lambda: _correct(actions, correct.drop_ring, grid, k, "remove a ring"),
+                )
         else:
             yield "Add a ring here", lambda: _correct(actions, correct.add_ring, grid, rho, "add a ring")
         yield "0\u00b0 is printed in this direction", lambda: actions.attempt(session.zero_here, x_px, y_px)

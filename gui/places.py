@@ -4,11 +4,19 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .session import trace_places
+from .at_place import trace_places
 
 __all__ = ["Spot", "reason_places"]
 
-ON_TRACE = ("much-bridged", "rows-missing", "leaves-chart", "trace-doubtful", "traces-alike", "wide-error", "peak-low")
+ON_TRACE = (
+    "much-bridged",
+    "rows-missing",
+    "leaves-chart",
+    "trace-doubtful",
+    "traces-alike",
+    "wide-error",
+    "peak-low",
+)
 ON_RIM = ("bearing-assumed", "bearing-mirrored")
 
 
@@ -31,7 +39,9 @@ def reason_places(reading):
     """A list of (sentence, `Spot`) in the order of `Reading.review`."""
     items = [(None, item) for item in reading.reasons]
     items += [(k, item) for k, trace in enumerate(reading.traces) for item in trace.reasons]
-    return [(sentence, _spot(reading, k, item)) for sentence, (k, item) in zip(reading.review, items, strict=True)]
+    return [
+        (sentence, _spot(reading, k, item)) for sentence, (k, item) in zip(reading.review, items, strict=True)
+    ]
 
 
 def _spot(reading, k, item):

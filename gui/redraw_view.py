@@ -1,5 +1,6 @@
-"""The reading drawn anew beside the picture: it follows the pointer and tells bearing, level, error and state."""
+"""The reading drawn anew: it follows the pointer and tells bearing, level, error and state."""
 
+import itertools
 import tkinter as tk
 from tkinter import ttk
 
@@ -40,9 +41,17 @@ class RedrawView(ttk.Frame):
         self.readout.pack(fill="x", pady=(px(4), 0))
         self.cells = {}
         for column, (name, title) in enumerate(
-            (("bearing", "bearing"), ("level", "level"), ("relative", "below peak"), ("error", "95 % error"), ("state", "state"))
+            (
+                ("bearing", "bearing"),
+                ("level", "level"),
+                ("relative", "below peak"),
+                ("error", "95 % error"),
+                ("state", "state"),
+            )
         ):
-            ttk.Label(self.readout, text=title, style="Dim.TLabel").grid(row=0, column=column, sticky="w", padx=(0, px(8)))
+            ttk.Label(self.readout, text=title, style="Dim.TLabel").grid(
+                row=0, column=column, sticky="w", padx=(0, px(8))
+            )
             cell = ttk.Label(self.readout, text="", font=self.look.fonts["bold"], width=8)
             cell.grid(row=1, column=column, sticky="w", padx=(0, px(8)))
             self.readout.columnconfigure(column, weight=1)
@@ -74,7 +83,13 @@ class RedrawView(ttk.Frame):
         if reading is None:
             self._image = None
             self.canvas.delete("all")
-            words = "" if not self.session.open else "Not read yet" if self.session.fault is None else "No reading"
+            words = (
+                ""
+                if not self.session.open
+                else "Not read yet"
+                if self.session.fault is None
+                else "No reading"
+            )
             width, height = self.canvas.winfo_width(), self.canvas.winfo_height()
             self.canvas.create_text(
                 width / 2, height / 2, text=words, fill=COLOURS["dim"], font=self.look.fonts["text"]
@@ -106,10 +121,12 @@ class RedrawView(ttk.Frame):
 
     def _draw_band(self, reading):
         """The 95 % error as a band, under everything."""
-        pixels = np.empty((max(self.canvas.winfo_height(), 2), max(self.canvas.winfo_width(), 2), 3), np.uint8)
+        pixels = np.empty(
+            (max(self.canvas.winfo_height(), 2), max(self.canvas.winfo_width(), 2), 3), np.uint8
+        )
         pixels[:] = PAPER
         if self.session.chart.done:
-            for trace, colour in zip(reading.traces, self.pen.trace_colours):
+            for trace, colour in zip(reading.traces, itertools.cycle(self.pen.trace_colours), strict=False):
                 mask = Mask(pixels)
                 mask.quads(self._band(reading, trace))
                 rgb = tuple(int(colour[k : k + 2], 16) for k in (1, 3, 5))
@@ -146,15 +163,21 @@ class RedrawView(ttk.Frame):
                 )
                 words = f"{trace.ink} {trace.dash}"
                 if len(traces) == 1:
-                    ttk.Label(self.traces, text=words).pack(side="left", padx=self.look.px(6), pady=self.look.px(3))
+                    ttk.Label(self.traces, text=words).pack(
+                        side="left", padx=self.look.px(6), pady=self.look.px(3)
+                    )
                     continue
                 ttk.Radiobutton(
-                    self.traces, text=f"{k + 1}  {words}", variable=self.chosen, value=k, style="Tab.Toolbutton",
+                    self.traces,
+                    text=f"{k + 1}  {words}",
+                    variable=self.chosen,
+                    value=k,
+                    style="Tab.Toolbutton",
                     command=lambda k=k: self.window.trace_chosen(k),
-                ).pack(side="left")  # fmt: skip
+                ).pack(side="left")
         self.chosen.set(self.session.trace)
 
-    # --- what is pointed at ----------------------------------------------------------------------------------
+    # --- what is pointed at
 
     def _motion(self, event):
         reading, trace = self.session.reading, self.session.shown_trace
@@ -193,7 +216,13 @@ def row_words(reading, table, row):
     bearing = float(table.angle_deg[row])
     said = bearing - 360 if reading.bearing.signed and bearing > 180 else bearing
     state = str(table.state[row])
-    words = {"bearing": f"{said:g}\u00b0", "state": state, "level": "\u2013", "relative": "\u2013", "error": "\u2013"}
+    words = {
+        "bearing": f"{said:g}\u00b0",
+        "state": state,
+        "level": "\u2013",
+        "relative": "\u2013",
+        "error": "\u2013",
+    }
     if state != "missing":
         bound = "\u2264 " if state == "floor" else ""
         words |= {

@@ -57,7 +57,9 @@ class ReviewList(ttk.Frame):
         self.text.delete("1.0", "end")
         for k, (sentence, _) in enumerate(self.spots):
             name = f"item{k}"
-            self.text.insert("end", f"{k + 1}\t", ("item", "number", name), plain(sentence) + "\n", ("item", name))
+            self.text.insert(
+                "end", f"{k + 1}\t", ("item", "number", name), plain(sentence) + "\n", ("item", name)
+            )
             self.text.tag_bind(name, "<Button-1>", lambda _, k=k: self.choose(k))
             self.text.tag_bind(name, "<Enter>", lambda _: self.text.configure(cursor="hand2"))
             self.text.tag_bind(name, "<Leave>", lambda _: self.text.configure(cursor="arrow"))

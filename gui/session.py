@@ -1,7 +1,8 @@
 """All that the window holds, without a window: the state, its history, what is held, what is unsaved.
 
 Every edit makes a new frozen `State` and keeps the old one. Edits that cannot be right for any picture raise
-`UsageError` and change nothing; those that do not fit this picture become the fault of the chart when it is read.
+`UsageError` and change nothing; those that do not fit this picture become the fault of the chart when it is
+read.
 """
 
 from dataclasses import replace
@@ -13,9 +14,10 @@ from digitise.exceptions import UsageError
 from digitise.find import box_around
 from digitise.settings import Mark
 
+from .at_place import ink_at
 from .state import Chart, State
 
-__all__ = ["Session", "trace_places"]
+__all__ = ["Session"]
 
 MOST_STEPS = 200  # of undo
 LEVEL_NAMES = ("outer_db", "centre_db", "marks", "ring_levels")
@@ -25,8 +27,9 @@ NOTHING = State(picture=None, kept=None, charts=())
 class Session:
     """The state being worked on and its history.
 
-    now : State; held : ("mark", k), ("pin", k), ("cover", k), ("centre", 0), ("ring", k) or None, what the arrow
-    keys move; row : index of the table row being pointed at, or None; trace : index of the trace shown in full
+    now : State; held : ("mark", k), ("pin", k), ("cover", k), ("centre", 0), ("ring", k) or None, what the
+    arrow keys move; row : index of the table row being pointed at, or None; trace : index of the trace shown
+    in full
     """
 
     def __init__(self):
@@ -38,7 +41,7 @@ class Session:
         self._saved = NOTHING
         self.folder = None
 
-    # --- what there is ---------------------------------------------------------------------------------------
+    # --- what there is
 
     @property
     def open(self):
@@ -76,7 +79,7 @@ class Session:
         """Whether work would be lost: something was told since the picture was opened or saved."""
         return self._settings_of(self.now) != self._settings_of(self._saved)
 
-    # --- history ---------------------------------------------------------------------------------------------
+    # --- history
 
     def start(self, state):
         """Take up a picture that was opened and read; the history begins anew."""
@@ -86,7 +89,7 @@ class Session:
         self.trace = 0
 
     def take(self, state):
-        """Take in a state that was read meanwhile, wherever in the history it stands; True when it is the one shown."""
+        """Take in a state that was read meanwhile, wherever it stands; True when it is the one shown."""
         for steps in (self._past, self._future):
             for k, other in enumerate(steps):
                 if other.serial == state.serial:
@@ -142,12 +145,14 @@ class Session:
         charts = None if state.charts is None else tuple(chart.settings for chart in state.charts)
         return state.picture, state.template, charts
 
-    # --- edits -----------------------------------------------------------------------------------------------
+    # --- edits
 
     def tell(self, words, *, group=None, **changes):
         """Change settings of the chart being worked on; names as in `Settings`."""
         if self.chart is None:
-            raise UsageError("there is no chart yet", remedy="open a picture, or place a grid with the tool Grid")
+            raise UsageError(
+                "there is no chart yet", remedy="open a picture, or place a grid with the tool Grid"
+            )
         settings = replace(self.settings, **changes)
         if settings != self.settings:
             self._go(self.now.with_chart(self.chart.told(settings), words, group=group))
@@ -157,7 +162,9 @@ class Session:
         way = {"outer_db": ("outer_db", "centre_db"), "centre_db": ("outer_db", "centre_db")}
         kept = {name for changed in changes for name in way.get(changed, (changed,))}
         given = any(value not in (None, ()) for value in changes.values())
-        cleared = {name: () if name in ("marks", "ring_levels") else None for name in LEVEL_NAMES} if given else {}
+        cleared = (
+            {name: () if name in ("marks", "ring_levels") else None for name in LEVEL_NAMES} if given else {}
+        )
         others = {name: value for name, value in cleared.items() if name not in kept}
         self.tell(words, group=group, scale=None, **(others | changes))
 
@@ -183,7 +190,9 @@ class Session:
             if abs(page_deg - nearest) < min(4.0, unit / 3):
                 page_deg = nearest
                 break
-        self.tell_bearing(f"0\u00b0 at {page_deg % 360:.1f}\u00b0 from the top", zero_deg=round(page_deg % 360, 2))
+        self.tell_bearing(
+            f"0\u00b0 at {page_deg % 360:.1f}\u00b0 from the top", zero_deg=round(page_deg % 360, 2)
+        )
 
     def add_mark(self, x_px, y_px, level_db):
         """Add a mark; it is held afterwards."""
@@ -204,7 +213,8 @@ class Session:
 
     def pick_ink(self, x_px, y_px, *, also=False):
         """Read the trace whose ink is at a point; `also` keeps the inks chosen before."""
-        ink = self.ink_at(x_px, y_px)
+        reading = self.chart.reading if self.chart else None
+        ink = ink_at(self.now.picture, reading, x_px, y_px)
         before = self.settings.inks if also else ()
         if ink not in before:
             self.tell(f"ink {ink}", inks=(*before, ink))
@@ -244,7 +254,7 @@ class Session:
             self.held = self.row = None
             self.trace = 0
 
-    # --- what is held ----------------------------------------------------------------------------------------
+    # --- what is held
 
     def points(self):
         """Everything that can be held, in order: marks, pins, covers, then the centre and the rings."""
@@ -288,10 +298,16 @@ class Session:
             self.tell_levels("move a mark", group=group, marks=_with(settings.marks, k, moved))
         elif name == "pin":
             x, y = settings.pins[k]
-            self.tell("move a pin", group=group, pins=_with(settings.pins, k, (round(x + dx_px, 3), round(y + dy_px, 3))))
+            self.tell(
+                "move a pin",
+                group=group,
+                pins=_with(settings.pins, k, (round(x + dx_px, 3), round(y + dy_px, 3))),
+            )
         elif name == "cover":
             x, y, w, h = settings.covers[k]
-            self.tell("move a cover", group=group, covers=_with(settings.covers, k, (x + dx_px, y + dy_px, w, h)))
+            self.tell(
+                "move a cover", group=group, covers=_with(settings.covers, k, (x + dx_px, y + dy_px, w, h))
+            )
         elif name == "centre":
             self.correct_grid(correct.move_centre(self._grid(), dx_px, dy_px), "move the centre", group=group)
         else:
@@ -325,34 +341,6 @@ class Session:
         if grid is None:
             raise UsageError("there is no grid yet", remedy="drag from the centre to the outermost ring")
         return grid
-
-    # --- what is at a place ----------------------------------------------------------------------------------
-
-    def ink_at(self, x_px, y_px, *, reach_px=3.0):
-        """The ink at a point as "#rrggbb": of the trace that was read there, else the strongest colour around."""
-        reading = self.chart.reading if self.chart else None
-        for trace in reading.traces if reading is not None else ():
-            x, y = trace_places(reading, trace)
-            if np.nanmin(np.hypot(x - x_px, y - y_px), initial=np.inf) < reach_px:
-                return trace.ink
-        rgb = self.now.picture.rgb
-        y0, x0 = round(y_px), round(x_px)
-        part = rgb[max(0, y0 - 2) : y0 + 3, max(0, x0 - 2) : x0 + 3].reshape(-1, 3).astype(float)
-        if not part.size:
-            raise UsageError("there is no picture at that point", remedy="click on the trace")
-        paper = np.median(rgb[::7, ::7].reshape(-1, 3), axis=0)
-        contrast = np.linalg.norm(part - paper, axis=1)
-        if contrast.max() < 24:
-            raise UsageError("there is only paper at that point", remedy="click on the trace itself")
-        return "#" + "".join(f"{int(value):02x}" for value in part[int(np.argmax(contrast))])
-
-
-def trace_places(reading, trace):
-    """Picture x, y of every row of a table, (n,) each, NaN where it has no value."""
-    table = trace.table
-    known = np.isfinite(table.chart_db)
-    rho = np.where(known, reading.scale.rho(np.where(known, table.chart_db, 0.0)), np.nan)
-    return reading.grid.to_picture(rho, reading.bearing.to_plane(table.angle_deg))
 
 
 def _with(items, k, item):

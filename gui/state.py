@@ -1,6 +1,7 @@
-"""What the window shows, as frozen values: a picture, its charts, what the user told of each and how far each is read.
+"""What the window shows, as frozen values: a picture, its charts, what was told of each and its reading.
 
-Every change makes a new `State`; the old ones are kept as they are, results included, so that undo costs nothing.
+Every change makes a new `State`; the old ones are kept as they are, results included, so that undo costs
+nothing.
 """
 
 import itertools
@@ -10,6 +11,7 @@ from digitise.settings import Settings
 
 __all__ = ["Chart", "Seen", "State"]
 
+NOTHING_TOLD = Settings()
 _serials = itertools.count(1)
 
 
@@ -73,14 +75,15 @@ class State:
     before : charts whose settings pass on to charts found in the same place
     fault : DigitiseError when no chart was found
     words : what the user did to come here; group : steps of one group count as one for undo
-    source : the file as named by the user; pasted : the picture came from the clipboard and has no file of its own
+    source : the file as named by the user; pasted : the picture came from the clipboard and has no file of
+    its own
     """
 
     picture: object
     kept: object = field(repr=False)
     charts: tuple | None = None
     at: int = 0
-    template: Settings = Settings()
+    template: Settings = NOTHING_TOLD
     before: tuple = ()
     fault: object = None
     words: str = ""

@@ -1,7 +1,7 @@
-"""The look of the window: one light set of colours, fonts that grow with the scaling, ttk styles. Our own design.
+"""The look of the window: one light set of colours, fonts that grow with the scaling, ttk styles.
 
-Colours carry no meaning alone: a state has its dash or shape, a fault its word. Text keeps 4.5 : 1 to its ground, and
-what must be told apart in a view keeps 3 : 1 (W3C WCAG 2.1, 1.4.3 and 1.4.11).
+Colours carry no meaning alone: a state has its dash or shape, a fault its word. Text keeps 4.5 : 1 to its
+ground, and what must be told apart in a view keeps 3 : 1 (W3C WCAG 2.1, 1.4.3 and 1.4.11).
 """
 
 import tkinter as tk
@@ -85,11 +85,19 @@ class Look:
             "Fixed.TLabel": {"font": fonts["fixed"]},
         }.items():
             style.configure(name, **options)
-        button = {"padding": (px(9), px(3)), "borderwidth": 1, "background": c["paper"], "lightcolor": c["paper"]}
+        button = {
+            "padding": (px(9), px(3)),
+            "borderwidth": 1,
+            "background": c["paper"],
+            "lightcolor": c["paper"],
+        }
         button |= {"darkcolor": c["paper"], "anchor": "center", "width": -1}
         style.configure("TButton", **button)
         style.configure("Small.TButton", **(button | {"padding": (px(5), 0), "font": fonts["small"]}))
-        style.configure("Main.TButton", **(button | {"background": c["accent"], "foreground": c["paper"], "bordercolor": c["accent"]}))
+        style.configure(
+            "Main.TButton",
+            **(button | {"background": c["accent"], "foreground": c["paper"], "bordercolor": c["accent"]}),
+        )
         style.configure("Main.TButton", lightcolor=c["accent"], darkcolor=c["accent"])
         ground = [("disabled", c["ground"]), ("pressed", c["press"]), ("active", c["accent-soft"])]
         ink = [("disabled", "#8a929b")]
@@ -103,15 +111,29 @@ class Look:
             "Main.TButton", background=dark, lightcolor=dark, darkcolor=dark, foreground=ink,
             bordercolor=[("focus", c["focus"]), ("disabled", c["rule"])],
         )  # fmt: skip
-        style.configure("Tool.Toolbutton", padding=(px(8), px(5)), borderwidth=1, anchor="w", background=c["ground"])
-        style.configure("Tab.Toolbutton", padding=(px(10), px(4)), borderwidth=1, anchor="center", background=c["ground"])
+        style.configure(
+            "Tool.Toolbutton", padding=(px(8), px(5)), borderwidth=1, anchor="w", background=c["ground"]
+        )
+        style.configure(
+            "Tab.Toolbutton", padding=(px(10), px(4)), borderwidth=1, anchor="center", background=c["ground"]
+        )
         chosen = [("selected", c["accent"]), ("active", c["accent-soft"])]
         for name in ("Tool.Toolbutton", "Tab.Toolbutton"):
             style.map(
-                name, background=chosen, lightcolor=chosen, darkcolor=chosen, relief=[("selected", "flat")],
-                foreground=[("disabled", "#8a929b"), ("selected", c["paper"])], bordercolor=[("focus", c["focus"])],
-            )  # fmt: skip
-        field = {"fieldbackground": c["paper"], "padding": (px(4), px(2)), "lightcolor": c["paper"], "borderwidth": 1}
+                name,
+                background=chosen,
+                lightcolor=chosen,
+                darkcolor=chosen,
+                relief=[("selected", "flat")],
+                foreground=[("disabled", "#8a929b"), ("selected", c["paper"])],
+                bordercolor=[("focus", c["focus"])],
+            )
+        field = {
+            "fieldbackground": c["paper"],
+            "padding": (px(4), px(2)),
+            "lightcolor": c["paper"],
+            "borderwidth": 1,
+        }
         for name in ("TEntry", "TCombobox", "TSpinbox"):
             style.configure(name, **field, arrowsize=px(12), arrowcolor=c["dim"])
             style.map(
@@ -121,31 +143,57 @@ class Look:
                 selectforeground=[("readonly", c["text"])],
             )  # fmt: skip
             style.configure(f"Wrong.{name}", **field, bordercolor=c["alert"], arrowsize=px(12))
-            style.map(f"Wrong.{name}", bordercolor=[("focus", c["alert"])], lightcolor=[("focus", c["alert"])])
+            style.map(
+                f"Wrong.{name}", bordercolor=[("focus", c["alert"])], lightcolor=[("focus", c["alert"])]
+            )
         for name in ("TCheckbutton", "TRadiobutton"):
             style.configure(
-                f"Panel.{name}", background=c["panel"], indicatorsize=px(11), indicatormargin=(0, 0, px(5), 0),
-                indicatorbackground=c["paper"], padding=(0, px(1)), upperbordercolor=c["dim"], lowerbordercolor=c["dim"],
-            )  # fmt: skip
+                f"Panel.{name}",
+                background=c["panel"],
+                indicatorsize=px(11),
+                indicatormargin=(0, 0, px(5), 0),
+                indicatorbackground=c["paper"],
+                padding=(0, px(1)),
+                upperbordercolor=c["dim"],
+                lowerbordercolor=c["dim"],
+            )
             style.map(
-                f"Panel.{name}", background=[("active", c["accent-soft"])],
-                indicatorforeground=[("selected", c["accent"])], indicatorbackground=[("selected", c["paper"])],
-            )  # fmt: skip
+                f"Panel.{name}",
+                background=[("active", c["accent-soft"])],
+                indicatorforeground=[("selected", c["accent"])],
+                indicatorbackground=[("selected", c["paper"])],
+            )
         style.configure("TNotebook", borderwidth=0, background=c["ground"], tabmargins=(0, 0, 0, 0))
-        style.configure("TNotebook.Tab", padding=(px(10), px(3)), background=c["ground"], bordercolor=c["rule"])
+        style.configure(
+            "TNotebook.Tab", padding=(px(10), px(3)), background=c["ground"], bordercolor=c["rule"]
+        )
         style.map(
-            "TNotebook.Tab", background=[("selected", c["paper"])], lightcolor=[("selected", c["paper"])],
-            padding=[("selected", (px(10), px(3)))], foreground=[("!selected", c["dim"])],
-        )  # fmt: skip
+            "TNotebook.Tab",
+            background=[("selected", c["paper"])],
+            lightcolor=[("selected", c["paper"])],
+            padding=[("selected", (px(10), px(3)))],
+            foreground=[("!selected", c["dim"])],
+        )
         row = fonts["text"].metrics("linespace") + px(4)
-        style.configure("Treeview", background=c["paper"], fieldbackground=c["paper"], rowheight=row, borderwidth=0)
-        style.configure("Treeview.Heading", font=fonts["small"], background=c["ground"], padding=(px(4), px(2)))
-        style.map("Treeview", background=[("selected", c["accent-soft"])], foreground=[("selected", c["text"])])
+        style.configure(
+            "Treeview", background=c["paper"], fieldbackground=c["paper"], rowheight=row, borderwidth=0
+        )
+        style.configure(
+            "Treeview.Heading", font=fonts["small"], background=c["ground"], padding=(px(4), px(2))
+        )
+        style.map(
+            "Treeview", background=[("selected", c["accent-soft"])], foreground=[("selected", c["text"])]
+        )
         for name in ("Vertical.TScrollbar", "Horizontal.TScrollbar"):
             style.configure(
-                name, background="#b9c0c8", arrowsize=px(11), bordercolor=c["ground"], gripcount=0, width=px(11),
+                name,
+                background="#b9c0c8",
+                arrowsize=px(11),
+                bordercolor=c["ground"],
+                gripcount=0,
+                width=px(11),
                 arrowcolor=c["dim"],
-            )  # fmt: skip
+            )
             style.map(name, background=[("active", c["dim"]), ("disabled", c["ground"])])
         for pattern, value in (
             ("*TCombobox*Listbox.font", fonts["text"]),

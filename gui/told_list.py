@@ -18,9 +18,7 @@ class ToldList:
         self.title.grid(row=row, column=0, sticky="nw", pady=self.look.px(2))
         self.frame = ttk.Frame(panel.body, style="Panel.TFrame")
         self.frame.grid(row=row, column=1, columnspan=2, sticky="ew")
-        self.fault = ttk.Label(
-            panel.body, style="Fault.TLabel", wraplength=self.look.px(230), justify="left"
-        )
+        self.fault = ttk.Label(panel.body, style="Fault.TLabel", wraplength=self.look.px(230), justify="left")
         self.fault.grid(row=row + 1, column=0, columnspan=3, sticky="w")
         self._shown = None
 
@@ -47,7 +45,9 @@ class ToldList:
                 self.frame, text=mark + words, style="Small.TButton", command=lambda k=k: self._hold(k)
             )
             button.grid(row=k, column=0, sticky="ew", pady=1)
-            remove = ttk.Button(self.frame, text="\u00d7", style="Small.TButton", command=lambda k=k: self._drop(k))
+            remove = ttk.Button(
+                self.frame, text="\u00d7", style="Small.TButton", command=lambda k=k: self._drop(k)
+            )
             remove.grid(row=k, column=1, padx=(self.look.px(3), 0), pady=1)
 
     def say(self, words):
@@ -82,9 +82,15 @@ class TraceList:
         for child in self.frame.winfo_children():
             child.destroy()
         told = any(chosen for _, _, chosen in shown)
-        words = "only the chosen inks are read" if told else "every trace is read; choose inks to read only those"
+        words = (
+            "only the chosen inks are read" if told else "every trace is read; choose inks to read only those"
+        )
         ttk.Label(
-            self.frame, text=words if shown else "", style="PanelDim.TLabel", wraplength=self.look.px(228), justify="left"
+            self.frame,
+            text=words if shown else "",
+            style="PanelDim.TLabel",
+            wraplength=self.look.px(228),
+            justify="left",
         ).pack(anchor="w")
         for ink, traced, chosen in shown:
             line = ttk.Frame(self.frame, style="Panel.TFrame")
@@ -115,7 +121,10 @@ class TraceList:
         outer = chart.grid.outer_px if chart.grid is not None else 0
         found = [ink.hex for ink in chart.seen.inks if ink.length_px > LEAST_INK * outer][:MOST_INKS]
         order = [*traces, *(ink for ink in (*told, *found) if ink not in traces)]
-        return tuple((ink, f"  {', '.join(traces[ink])}" if ink in traces else "", ink in told) for ink in dict.fromkeys(order))
+        return tuple(
+            (ink, f"  {', '.join(traces[ink])}" if ink in traces else "", ink in told)
+            for ink in dict.fromkeys(order)
+        )
 
     def _toggle(self, ink):
         self.session.toggle_ink(ink)

@@ -18,15 +18,21 @@ class Welcome(ttk.Frame):
         px = window.look.px
         middle = ttk.Frame(self)
         middle.place(relx=0.5, rely=0.45, anchor="center")
-        ttk.Label(middle, text="From a picture of a radiation pattern to a table", style="Title.TLabel").pack(anchor="w")
+        ttk.Label(middle, text="From a picture of a radiation pattern to a table", style="Title.TLabel").pack(
+            anchor="w"
+        )
         ways = ["Open a picture, a PDF or an earlier record", "Paste one with Ctrl+V"]
         if window.drops:
             ways.append("Drop one on this window")
         for words in ways:
             ttk.Label(middle, text=f"\u2013  {words}").pack(anchor="w", pady=(px(6), 0))
-        ttk.Button(middle, text="Open\u2026", style="Main.TButton", command=window.actions.open_picture).pack(anchor="w", pady=px(14))
+        ttk.Button(middle, text="Open\u2026", style="Main.TButton", command=window.actions.open_picture).pack(
+            anchor="w", pady=px(14)
+        )
         if samples:
-            ttk.Label(middle, text="Or try a sample; the antennas are invented:", foreground=COLOURS["dim"]).pack(anchor="w")
+            ttk.Label(
+                middle, text="Or try a sample; the antennas are invented:", foreground=COLOURS["dim"]
+            ).pack(anchor="w")
             row = ttk.Frame(middle)
             row.pack(anchor="w", pady=px(4))
             for k, path in enumerate(samples[:MOST_SAMPLES]):

@@ -1,4 +1,4 @@
-"""The window: lays out the panes, routes keys to actions and answers of the worker to the session, keeps all in step."""
+"""The window: routes keys to actions and answers of the worker to the session, keeps all panes in step."""
 
 import tkinter as tk
 from tkinter import ttk
@@ -6,15 +6,17 @@ from tkinter import ttk
 import numpy as np
 
 from . import flow
-from .actions import Actions, sample_pictures
+from .actions import Actions
 from .chart_view import ChartView
 from .drop import take_drops
 from .fields import Fields
 from .hand import TOOLS, Hand
 from .keys import COMMANDS, command, groups
 from .lists import Lists
+from .panes import Panes
 from .place_menu import open_place_menu
 from .redraw_view import RedrawView, row_at
+from .samples import sample_pictures
 from .session import Session
 from .theme import COLOURS, Look
 from .welcome import Welcome
@@ -24,10 +26,14 @@ from .worker import Worker
 __all__ = ["Window"]
 
 POLL_MS = 15
-NARROW_PX = 1000  # design px: below, the panes share one place
 ABOVE_PX = 64  # design px that a desktop's title bar and our menu take of the screen's height
 TYPING = ("Entry", "TEntry", "TCombobox", "Text", "Spinbox", "TSpinbox")
-MARKS = {"plain": ("", "TLabel"), "busy": ("\u22ef ", "TLabel"), "calm": ("\u2713 ", "Calm.TLabel"), "alert": ("! ", "Alert.TLabel")}
+MARKS = {
+    "plain": ("", "TLabel"),
+    "busy": ("\u22ef ", "TLabel"),
+    "calm": ("\u2713 ", "Calm.TLabel"),
+    "alert": ("! ", "Alert.TLabel"),
+}
 
 
 class Window:
@@ -56,7 +62,7 @@ class Window:
         root.minsize(min(self.look.px(620), width), min(self.look.px(420), height))
         self._poll()
 
-    # --- building --------------------------------------------------------------------------------------------
+    # --- building
 
     def _build(self):
         root, px = self.root, self.look.px
@@ -76,19 +82,11 @@ class Window:
                 self.tools, text=f"{title} ({key})", variable=self.tool, value=name, style="Tool.Toolbutton",
                 command=lambda name=name: self.actions.take_tool(name), width=9,
             ).pack(fill="x", pady=(0, px(3)))  # fmt: skip
-        self.tabs = ttk.Frame(self.body)
-        self.tab = tk.StringVar(root, "chart")
-        for name, title in (("chart", "Chart"), ("redraw", "Redraw"), ("lists", "Lists")):
-            ttk.Radiobutton(
-                self.tabs, text=title, variable=self.tab, value=name, style="Tab.Toolbutton", command=self._arrange
-            ).pack(side="left", padx=(0, px(3)))
         self.chart_view = ChartView(self.body, self)
         self.redraw = RedrawView(self.body, self)
         self.lists = Lists(self.body, self)
         self.welcome = Welcome(self.body, self, sample_pictures())
-        self._narrow = None
-        self.fields_on = True
-        self.body.bind("<Configure>", lambda event: self._sized(event.width))
+        self.panes = Panes(self)
         self._title()
         self.changed()
 
@@ -128,7 +126,9 @@ class Window:
         for title, items in groups().items():
             part = tk.Menu(menu, tearoff=False)
             for item in items:
-                part.add_command(label=item.words, accelerator=item.shown, command=getattr(self.actions, item.name))
+                part.add_command(
+                    label=item.words, accelerator=item.shown, command=getattr(self.actions, item.name)
+                )
             menu.add_cascade(label=title, menu=part, underline=0)
         self.menu = menu
         self.root.configure(menu=menu)
@@ -158,81 +158,12 @@ class Window:
         self._build()
         self.picture_changed(new=False)
 
-    # --- arranging -------------------------------------------------------------------------------------------
-
-    def _sized(self, width):
-        narrow = width < self.look.px(NARROW_PX)
-        if narrow != self._narrow:
-            self._narrow = narrow
-            self._arrange()
-
-    def _arrange(self):
-        """Lay the panes out: side by side where there is room, else one at a time."""
-        px, body = self.look.px, self.body
-        for pane in (self.fields, self.tools, self.tabs, self.chart_view, self.redraw, self.lists, self.welcome):
-            pane.grid_forget()
-        for k in range(4):
-            body.columnconfigure(k, weight=0, uniform="")
-        for k in range(3):
-            body.rowconfigure(k, weight=0, uniform="")
-        if self.fields_on and self.session.open:
-            self.fields.grid(row=0, column=0, rowspan=3, sticky="ns", padx=(0, px(6)))
-        if not self.session.open:
-            body.columnconfigure(2, weight=1)
-            body.rowconfigure(1, weight=1)
-            self.welcome.grid(row=1, column=2, sticky="nsew")
-            return
-        if self._narrow:
-            body.columnconfigure(2, weight=1)
-            body.rowconfigure(1, weight=1)
-            self.tabs.grid(row=0, column=1, columnspan=2, sticky="w", pady=(0, px(4)))
-            pane = {"chart": self.chart_view, "redraw": self.redraw, "lists": self.lists}[self.tab.get()]
-            if pane is self.chart_view:
-                self.tools.grid(row=1, column=1, sticky="n", padx=(0, px(6)))
-            pane.grid(row=1, column=2 if pane is self.chart_view else 1, columnspan=1 if pane is self.chart_view else 2, sticky="nsew")
-        else:
-            self.tools.grid(row=0, column=1, rowspan=2, sticky="n", padx=(0, px(6)))
-            body.columnconfigure(2, weight=5, uniform="panes")
-            body.columnconfigure(3, weight=4, uniform="panes")
-            body.rowconfigure(0, weight=3, uniform="side")
-            body.rowconfigure(1, weight=2, uniform="side")
-            self.chart_view.grid(row=0, column=2, rowspan=2, sticky="nsew")
-            self.redraw.grid(row=0, column=3, sticky="nsew", padx=(px(8), 0), pady=(0, px(6)))
-            self.lists.grid(row=1, column=3, sticky="nsew", padx=(px(8), 0))
-
-    def toggle_fields(self):
-        """Hide the fields, or show them again."""
-        self.fields_on = not self.fields_on
-        self._arrange()
-
-    def show_pane(self, name):
-        """Bring a pane into sight where the panes share one place."""
-        if self._narrow and self.tab.get() != name:
-            self.tab.set(name)
-            self._arrange()
-
     def show_review(self):
         """Bring the review into sight."""
-        self.show_pane("lists")
+        self.panes.show("lists")
         self.lists.book.select(0)
 
-    def next_pane(self):
-        """Give the keyboard to the next pane that is in sight."""
-        panes = [
-            (self.fields, self.fields.focus_first),
-            (self.chart_view, self.chart_view.canvas.focus_set),
-            (self.redraw, self.redraw.canvas.focus_set),
-            (self.lists, self.lists.focus_page),
-        ]
-        here = self.root.focus_get()
-        at = next((k for k, (pane, _) in enumerate(panes) if here is not None and str(here).startswith(str(pane))), -1)
-        for step in range(1, len(panes) + 1):
-            pane, focus = panes[(at + step) % len(panes)]
-            if pane.winfo_ismapped():
-                focus()
-                return
-
-    # --- keeping in step -------------------------------------------------------------------------------------
+    # --- keeping in step
 
     def changed(self):
         """The session changed: ask for what is awaited, and show everything."""
@@ -296,8 +227,8 @@ class Window:
         """Another picture or chart is being worked on."""
         self.hand.cancel()
         if new:
-            self.tab.set("chart")
-        self._arrange()
+            self.panes.show("chart")
+        self.panes.arrange()
         self.root.update_idletasks()
         self.chart_view.picture_changed()
         self.changed()
@@ -305,7 +236,7 @@ class Window:
     def tool_changed(self):
         """Another tool was taken in hand."""
         self.tool.set(self.hand.tool)
-        self.show_pane("chart")
+        self.panes.show("chart")
         self.chart_view.tool_changed()
 
     def colours_changed(self, grid_colour, trace_colours):
@@ -318,13 +249,12 @@ class Window:
 
     def held_changed(self):
         """Something else is held."""
-        for part in (self.fields.marks, self.fields.pins, self.fields.covers):
-            part.refresh()
+        self.fields.held_changed()
 
     def show_held(self):
         """Something is held that may be out of sight: bring it into sight."""
         self.held_changed()
-        self.show_pane("chart")
+        self.panes.show("chart")
         place = self.session.place_of_held()
         if place is not None:
             view = self.chart_view
@@ -370,7 +300,7 @@ class Window:
         """Lead to the place of a reason."""
         if spot.trace is not None:
             self.trace_chosen(spot.trace)
-        self.show_pane("chart")
+        self.panes.show("chart")
         self.chart_view.show_place(spot.x_px, spot.y_px, spot.reach_px)
         if spot.row is not None:
             self.row_pointed(spot.row)
@@ -388,7 +318,7 @@ class Window:
         """Take in what is still being typed."""
         self.fields.leave()
 
-    # --- the worker ------------------------------------------------------------------------------------------
+    # --- the worker
 
     def _poll(self):
         for answer in self.worker.answers():

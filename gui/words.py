@@ -1,4 +1,4 @@
-"""What the library says, in the window's words: option names become the names of fields, and each fault finds its field."""
+"""What the library says, in the window's words; each fault finds the field that it belongs beside."""
 
 import re
 
@@ -21,7 +21,14 @@ FIELD_TITLES = {  # field -> its title in the window
     "crop": "a crop",
     "page": "the page",
 }
-STAGE_FIELDS = {"scale": "outer", "bearing": "zero", "ink": "ink", "follow": "ink", "find": "grid", "grid": "grid"}
+STAGE_FIELDS = {
+    "scale": "outer",
+    "bearing": "zero",
+    "ink": "ink",
+    "follow": "ink",
+    "find": "grid",
+    "grid": "grid",
+}
 OPTION = re.compile(r"--([a-z-]+)(?: X,Y,W,H| X,Y| DB| N)?")
 
 
@@ -33,7 +40,8 @@ def said(error):
         return head + _plain(text)
     if isinstance(error, MemoryError):
         return "not enough memory; crop or scale the picture down first"
-    return f"internal error ({type(error).__name__}: {' '.join(str(error).split())[:120]}); start with --debug to see more"
+    cause = " ".join(str(error).split())[:120]
+    return f"internal error ({type(error).__name__}: {cause}); start with --debug to see more"
 
 
 def fault_field(error):

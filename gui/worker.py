@@ -1,7 +1,7 @@
 """One worker thread beside the window: takes jobs, answers through a queue that the window polls.
 
-Of several waiting jobs of one name only the newest is done. A job that has begun is finished; its answer is marked
-as late when a newer one of its name was asked for meanwhile.
+Of several waiting jobs of one name only the newest is done. A job that has begun is finished; its answer is
+marked as late when a newer one of its name was asked for meanwhile.
 """
 
 import logging
@@ -18,7 +18,7 @@ log = logging.getLogger(__name__)
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Answer:
-    """What came of a job: its name, and the value or the error; late when a newer job of the name was asked for."""
+    """What came of a job: its name, the value or the error; late when a newer one was asked for."""
 
     name: str
     value: object = None

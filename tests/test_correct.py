@@ -1,4 +1,4 @@
-"""Corrections of a grid by hand: what is moved moves, the rest stays, and settling finds the drawn lines again."""
+"""Corrections of a grid by hand: what is moved moves, the rest stays, settling finds the lines again."""
 
 import numpy as np
 import pytest
@@ -28,7 +28,7 @@ def radii_px(grid):
 
 
 def test_the_centre_moves_with_all_rings(grid):
-    """Moving the centre shifts every point of the grid alike, and makes its place as uncertain as a hand is."""
+    """Moving the centre shifts every point alike, and makes its place as uncertain as a hand is."""
     moved = correct.move_centre(grid, 2.5, -1.5)
 
     before, after = grid.to_picture(0.75, 40.0), moved.to_picture(0.75, 40.0)
@@ -109,7 +109,7 @@ def test_settling_on_paper_is_refused():
     rgb = np.full((300, 300, 3), 255, np.uint8)
     blank = Picture(rgb=rgb, path="blank.png", sha256="0" * 64, width=300, height=300)
 
-    with pytest.raises(NotReadError, match="no drawn ring lies within .* nearer"):
+    with pytest.raises(NotReadError, match=r"no drawn ring lies within .* nearer"):
         correct.settle_grid(blank, correct.grid_by_hand(150, 150, 100))
 
 
@@ -127,13 +127,17 @@ def test_no_correction_alters_its_input(grid):
 
 
 def test_a_grid_by_hand_is_read_with_and_recorded(tmp_path):
-    """The reading takes the told grid as it is, its record says so, and taking it up again gives the same table."""
+    """The reading takes the told grid as it is, its record says so, and gives the same table again."""
     reading = hand_reading()
     by_hand = correct.move_ring(reading.grid, 0, 1.004)
-    settings = Settings(outer_db=0.0, centre_db=-40.0, zero_deg=0.0, turn="cw", grid=by_hand, crop=(0, 0, 600, 620))
+    settings = Settings(
+        outer_db=0.0, centre_db=-40.0, zero_deg=0.0, turn="cw", grid=by_hand, crop=(0, 0, 600, 620)
+    )
     (first,) = read_charts(reading.picture, settings=settings)
     path = tmp_path / "panel.record.json"
-    path.write_text(write_record(make_record(first, tables=["panel.csv"] * len(first.traces))), encoding="utf-8")
+    path.write_text(
+        write_record(make_record(first, tables=["panel.csv"] * len(first.traces))), encoding="utf-8"
+    )
 
     told = settings_as_told(read_record(path))
     (again,) = read_charts(reading.picture, settings=told)

@@ -12,6 +12,7 @@ class Counting:
         self.runs = []
 
     def __call__(self, *inputs, more=0):
+        """Run."""
         self.runs.append(inputs)
         return [*inputs, more]
 

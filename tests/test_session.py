@@ -1,4 +1,4 @@
-"""The window's session, hand, worker and shapes, without a screen: what is told, undone, held, saved and opened again."""
+"""The window's session, hand, worker and shapes, without a screen."""
 
 import json
 import subprocess
@@ -21,13 +21,14 @@ from digitise.review import REASONS, reason
 from digitise.settings import Mark, Settings
 from digitise.table import build_table, read_table
 from gui import flow
-from gui.clipboard import paths_from_text
+from gui.at_place import trace_places
+from gui.file_names import paths_from_text
 from gui.frame import Frame, fit_frame, frame_pixels, loupe_pixels, to_ppm
 from gui.hand import Hand
 from gui.level_text import read_level
 from gui.overlay import overlay_shapes, pointed_shapes, redraw_shapes
 from gui.places import reason_places
-from gui.session import Session, trace_places
+from gui.session import Session
 from gui.state import State
 from gui.table_text import table_text
 from gui.words import FIELD_TITLES, fault_field, said
@@ -38,6 +39,10 @@ from tests.hand import DEG, INKS, RING_RHO, cardioid_page, hand_reading
 
 TOLD = {"outer_db": 0.0, "centre_db": -40.0, "zero_deg": 0.0, "turn": "cw"}
 ARGUMENTS = ["--outer", "0", "--centre", "-40", "--zero", "top", "--turn", "cw"]
+NO_WIDGETS = (
+    "at_place", "colours", "file_names", "flow", "found_words", "frame", "hand", "jobs", "keys", "level_text",
+    "overlay", "places", "samples", "session", "specs", "state", "table_text", "words", "worker",
+)  # fmt: skip
 REACH = 6.0
 CLICK_PX = 0.8  # how roughly a person clicks under the loupe
 LEVEL_DB = 0.05  # of a clean painted chart, with room
@@ -82,25 +87,25 @@ def ring_point(session, ring, plane_deg=75.0):
 
 
 def level_error(reading, k=0):
-    """Largest error of the k-th trace, dB, from -8 to -1 dB, where it runs clear of rings: the painted cardioid."""
+    """Largest error of the k-th trace, dB, from -8 to -1 dB, where it runs clear of rings."""
     trace = reading.traces[k]
     true = patterns.first_order(np.arange(360.0) - 40 * INKS.index(trace.ink))
     return float(np.abs(trace.table.chart_db - true)[(true > -8) & (true < -1)].max())
 
 
-# --- no screen ---------------------------------------------------------------------------------------------------
+# --- no screen
 
 
 def test_the_session_needs_no_tkinter():
     """Everything but the widgets is imported without it."""
-    code = (
-        "import sys, gui.session, gui.flow, gui.hand, gui.overlay, gui.places, gui.words, gui.worker, gui.frame, "
-        "gui.colours, gui.keys, gui.found_words, gui.level_text, gui.table_text; sys.exit('tkinter' in sys.modules)"
-    )
-    assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0
+    names = [f"gui.{name}" for name in NO_WIDGETS]
+    load = "[importlib.import_module(name) for name in sys.argv[1:]]"
+    code = f"import importlib, sys; {load}; sys.exit('tkinter' in sys.modules)"
+
+    assert subprocess.run([sys.executable, "-c", code, *names], check=False).returncode == 0
 
 
-# --- history -----------------------------------------------------------------------------------------------------
+# --- history
 
 
 EDITS = {
@@ -207,7 +212,7 @@ def test_what_cannot_be_right_changes_nothing(session):
     assert session.undo_words == ""
 
 
-# --- levels and bearing ------------------------------------------------------------------------------------------
+# --- levels and bearing
 
 
 def test_two_marks_give_the_scale(session):
@@ -279,7 +284,7 @@ def test_zero_is_told_by_a_place(session, plane_deg, told):
     assert session.settings.zero_deg == pytest.approx(told, abs=0.2)
 
 
-# --- inks, pins, covers, crop --------------------------------------------------------------------------------------
+# --- inks, pins, covers, crop
 
 
 def test_a_click_on_the_trace_picks_its_ink(session):
@@ -356,7 +361,7 @@ def test_a_crop_without_a_chart_says_what_to_do(session):
     assert session.chart.reading is not None
 
 
-# --- the grid ----------------------------------------------------------------------------------------------------
+# --- the grid
 
 
 @pytest.fixture
@@ -370,7 +375,7 @@ def hand(session):
 def drag(hand, start, end, *, shift=False):
     """Press, move and release."""
     hand.press(*start, reach_px=REACH, shift=shift)
-    hand.move(*((a + b) / 2 for a, b in zip(start, end)))
+    hand.move(*((a + b) / 2 for a, b in zip(start, end, strict=True)))
     hand.move(*end)
     hand.release(*end)
 
@@ -420,7 +425,7 @@ def test_a_ring_dragged_onto_another_is_refused(session, hand):
 
 
 def test_a_grid_is_placed_where_none_was_found():
-    """On a picture whose chart is not found, a drag from the centre to the rim makes one, and its rings are found."""
+    """On a picture without a chart a drag from the centre to the rim makes one."""
     rgb = np.full((620, 600, 3), 255, np.uint8)
     picture = hand_reading(rgb=rgb).picture
     session = Session()
@@ -452,7 +457,7 @@ def test_a_placed_grid_is_found_more_exactly(session, hand):
     assert found.outer_px == pytest.approx(OUTER_PX, abs=0.1)
 
 
-# --- the hand ----------------------------------------------------------------------------------------------------
+# --- the hand
 
 
 def test_a_click_on_a_ring_asks_for_its_level(session):
@@ -540,7 +545,7 @@ def test_arrow_keys_move_the_grid_by_tenths(session):
     assert moved.ring_rho[1] * moved.outer_px == pytest.approx(grid.ring_rho[1] * grid.outer_px + 0.1)
 
 
-# --- several charts ----------------------------------------------------------------------------------------------
+# --- several charts
 
 
 @pytest.fixture(scope="module")
@@ -548,7 +553,8 @@ def pair_path(tmp_path_factory):
     """Two charts on one picture, as a file."""
     trace = Trace(db=patterns.first_order(DEG), ink=INKS[0])
     charts = [
-        Chart(traces=(trace,), centre_x=x, centre_y=300.0, outer_px=180.0, ring_db=(0, -10, -20, -30)) for x in (250, 750)
+        Chart(traces=(trace,), centre_x=x, centre_y=300.0, outer_px=180.0, ring_db=(0, -10, -20, -30))
+        for x in (250, 750)
     ]
     path = tmp_path_factory.mktemp("pair") / "pair.png"
     Image.fromarray(paint(Page(charts=tuple(charts), width=1000, height=600))).save(path)
@@ -573,7 +579,11 @@ def test_each_chart_has_its_own_settings(pair, tmp_path):
     assert session.now.charts[0].reading is pair.charts[0].reading
 
     saved = flow.save_charts(session.now, tmp_path)
-    assert sorted(path.name for path in saved.written.paths)[:3] == ["pair-1.csv", "pair-1.proof.png", "pair-1.record.json"]
+    assert sorted(path.name for path in saved.written.paths)[:3] == [
+        "pair-1.csv",
+        "pair-1.proof.png",
+        "pair-1.record.json",
+    ]
     (tmp_path / "pair.png").write_bytes(Path(pair.source).read_bytes())
     again = flow.open_source(tmp_path / "pair-2.record.json")
 
@@ -596,7 +606,7 @@ def test_going_to_another_chart_while_one_is_read(pair):
     assert session.now.charts[0].reading.scale.level(np.ones(1))[0] == pytest.approx(2.0)
 
 
-# --- saving and opening again ------------------------------------------------------------------------------------
+# --- saving and opening again
 
 
 def test_saving_writes_what_the_command_line_writes(session, picture_path, tmp_path):
@@ -641,7 +651,7 @@ def test_a_record_without_its_picture_asks_for_it(session, picture_path, tmp_pat
     flow.save_charts(session.now, tmp_path)
     record = tmp_path / "panel.record.json"
 
-    with pytest.raises(flow.NeedsPicture, match=r"panel\.png is not beside it"):
+    with pytest.raises(flow.NeedsPictureError, match=r"panel\.png is not beside it"):
         flow.open_source(record)
     assert flow.open_source(record, picture_path=picture_path).chart.reading is not None
     other = tmp_path / "other.png"
@@ -659,7 +669,7 @@ def test_a_record_opens_nothing_outside_its_folder(session, tmp_path):
     path.write_text(json.dumps(record))
     (tmp_path / "secret.png").write_bytes(b"x")
 
-    with pytest.raises(flow.NeedsPicture, match=r"its picture secret\.png is not beside it"):
+    with pytest.raises(flow.NeedsPictureError, match=r"its picture secret\.png is not beside it"):
         flow.open_source(path)
 
 
@@ -710,7 +720,7 @@ def test_a_pasted_picture_is_saved_beside_its_record(opened, picture_path, tmp_p
     assert read_record(tmp_path / "panel.record.json")["chart"]["file"] == "panel.png"
 
 
-# --- speed -------------------------------------------------------------------------------------------------------
+# --- speed
 
 
 def test_a_told_level_is_read_anew_at_once(session):
@@ -725,7 +735,7 @@ def test_a_told_level_is_read_anew_at_once(session):
     assert min(spent) < MEGAPIXEL_S / 3
 
 
-# --- the worker --------------------------------------------------------------------------------------------------
+# --- the worker
 
 
 @pytest.fixture
@@ -788,17 +798,29 @@ def test_an_error_in_the_worker_comes_back(worker):
     assert errors[2] is None
 
 
-# --- words -------------------------------------------------------------------------------------------------------
+# --- words
 
 
 @pytest.mark.parametrize(
     ("error", "field", "part"),
     [
-        (NotReadError("no levels", remedy="give --outer and --centre", stage="scale"), "outer", "“Outermost ring” and “Centre”"),
+        (
+            NotReadError("no levels", remedy="give --outer and --centre", stage="scale"),
+            "outer",
+            "“Outermost ring” and “Centre”",
+        ),
         (NotReadError("not told", remedy="give --turn", stage="bearing"), "turn", "“Angles grow”"),
-        (UsageError("--ring-levels gives 2 levels, but 4 rings were found", stage="scale"), "ring-levels", "“Ring levels” gives"),
+        (
+            UsageError("--ring-levels gives 2 levels, but 4 rings were found", stage="scale"),
+            "ring-levels",
+            "“Ring levels” gives",
+        ),
         (UsageError("marks 1,2=0 and 3,4=-3 give one ring two levels", stage="scale"), "mark", "Marks 1,2=0"),
-        (NotReadError("no chart", remedy="cut it out with --crop X,Y,W,H", stage="find"), "crop", "with a crop"),
+        (
+            NotReadError("no chart", remedy="cut it out with --crop X,Y,W,H", stage="find"),
+            "crop",
+            "with a crop",
+        ),
         (NotReadError("no rings", stage="grid"), "grid", "No rings"),
         (ValueError("x"), "", "internal error"),
     ],
@@ -818,7 +840,12 @@ def test_every_option_that_tells_something_has_a_field():
 
     parser = ArgumentParser()
     add_reading_options(parser)
-    options = {option[2:] for action in parser._actions for option in action.option_strings if option.startswith("--")}
+    options = {
+        option[2:]
+        for action in parser._actions
+        for option in action.option_strings
+        if option.startswith("--")
+    }
 
     assert options - {"help", "like"} <= set(FIELD_TITLES)
 
@@ -838,7 +865,7 @@ def test_what_is_no_level(text):
         read_level(text)
 
 
-# --- what is drawn -----------------------------------------------------------------------------------------------
+# --- what is drawn
 
 
 def by_kind(shapes, style):
@@ -847,7 +874,7 @@ def by_kind(shapes, style):
 
 
 def test_states_differ_by_shape(opened):
-    """Seen is a line alone; bridged rows are dashed with circles, floor has triangles, missing crosses on the rim."""
+    """Seen is a line, bridged dashed with circles, floor has triangles, missing crosses on the rim."""
     level = np.full(360, -10.0)
     state = np.full(360, "seen", "U8")
     state[100:140], state[200:220], state[300:320] = "bridged", "floor", "missing"
@@ -874,7 +901,7 @@ def test_states_differ_by_shape(opened):
 
 
 def test_the_overlay_lies_on_the_chart(session):
-    """Rings are drawn at their radii, levels are written on them, the trace lies where the picture has its ink."""
+    """Rings lie at their radii with their levels, the trace where the picture has its ink."""
     shapes = overlay_shapes(session, lambda x, y: (x, y))
 
     rings = [shape for shape in shapes if shape.style in ("grid-outer", "grid-ring")]
@@ -891,7 +918,9 @@ def test_the_redraw_shows_the_bearings(session):
     """Twelve of them round the rim, and the traces."""
     shapes = redraw_shapes(session, lambda x, y: (x, y))
 
-    assert [shape.text for shape in shapes if shape.kind == "words"] == [f"{angle}°" for angle in range(0, 360, 30)]
+    assert [shape.text for shape in shapes if shape.kind == "words"] == [
+        f"{angle}°" for angle in range(0, 360, 30)
+    ]
     assert len({shape.k for shape in by_kind(shapes, "trace")}) == 2
 
 
@@ -932,7 +961,7 @@ def test_a_reason_with_a_place_leads_there():
     assert (spot.x_px, spot.y_px, spot.marked) == (123.0, 45.0, True)
 
 
-# --- the frame ---------------------------------------------------------------------------------------------------
+# --- the frame
 
 
 def test_zooming_keeps_the_place_under_the_pointer():
@@ -946,7 +975,7 @@ def test_zooming_keeps_the_place_under_the_pointer():
 
 def test_place_and_picture_place_are_inverse():
     """There and back."""
-    frame = fit_frame(10, 20, 300, 200, 640, 480)
+    frame = fit_frame((10, 20, 300, 200), 640, 480)
 
     assert frame.picture_place(*frame.place(33.3, 44.4)) == pytest.approx((33.3, 44.4))
     assert frame.place(10 - 0.5 + 150, 20 - 0.5 + 100) == pytest.approx((319.5, 239.5))
@@ -994,14 +1023,14 @@ def test_ppm_bytes():
     assert to_ppm(pixels) == b"P6 2 2 255\n" + bytes(range(12))
 
 
-# --- clipboard ---------------------------------------------------------------------------------------------------
+# --- clipboard
 
 
 def test_paths_in_copied_text(tmp_path):
     """File addresses, quoted names and plain ones; what is not there is left out."""
     path = tmp_path / "a chart.png"
     path.write_bytes(b"x")
-    text = f"copy\nfile://{str(path).replace(' ', '%20')}\n\"{path}\"\n{path}\nno such file\n\0\n"
+    text = f'copy\nfile://{str(path).replace(" ", "%20")}\n"{path}"\n{path}\nno such file\n\0\n'
 
     assert paths_from_text(text) == [str(path)] * 3
 

@@ -13,7 +13,10 @@ def add_arguments(parser):
     parser.add_argument("picture", metavar="PICTURE", nargs="?", help="picture, PDF or record to begin with")
     parser.add_argument("--page", metavar="N", type=int, help="page of a PDF or TIFF, from 1 (the first)")
     parser.add_argument(
-        "--scaling", metavar="PERCENT", type=int, help="size of text and lines, 75 to 400 percent (the screen's own)"
+        "--scaling",
+        metavar="PERCENT",
+        type=int,
+        help="size of text and lines, 75 to 400 percent (the screen's own)",
     )
 
 
@@ -46,7 +49,7 @@ def run(args):
 
 
 def _reporter(window, debug):
-    """An error of the program is said in the status line; with --debug its trace goes to standard error too."""
+    """An error of the program is said in the status line; with --debug its trace is printed too."""
 
     def report(kind, error, trace):
         if debug:
