@@ -78,7 +78,9 @@ def find_rays(grid, seen, *, rim=()):
     proposals = [(points[i], points[j]) for n, i in enumerate(marks) for j in marks[n + 1 :]]
     proposals += [(points[k], np.zeros(2)) for k in marks]
     rows = [_gather(grid, seen, marks, points, a, b) for a, b in proposals]
-    rows += [_from_long(grid, seen[k], k) for k in inside if seen[k].line.length > LONG * seen[k].line.height]
+    long = [k for k in inside if seen[k].line.length > LONG * seen[k].line.height]
+    rows += [_from_long(grid, seen[k].line, k) for k in long]
+    rows += [_from_long(grid, _levelled(seen[k].line), k) for k in long if 0 < abs(seen[k].line.turn_deg) < TURN_SLACK_DEG]
     best = []
     for ray in sorted((row for row in rows if row is not None), key=lambda row: -row.score):
         if all(np.degrees(np.arccos(np.clip(ray.along @ other.along, -1, 1))) > APART_DEG for other in best):
@@ -158,9 +160,15 @@ def _anchored(grid, seen, on, along, across, turn_deg):
     )  # fmt: skip
 
 
-def _from_long(grid, item, index):
+def _levelled(line):
+    """A line whose slant may come from what it was joined with."""
+    turn = np.radians(line.turn_deg)
+    height = max(0.6 * line.height, line.height - line.length * abs(np.sin(turn)))
+    return Line(x=line.x, y=line.y, length=line.length, height=height, turn_deg=0.0)
+
+
+def _from_long(grid, line, index):
     """The ray along one long line that runs towards the centre: a row of labels detected as one."""
-    line = item.line
     turn = np.radians(line.turn_deg)
     ends = [
         _plane_point(grid, Line(x=line.x + s * np.cos(turn), y=line.y + s * np.sin(turn), length=0.0, height=0.0, turn_deg=0.0), 0)

@@ -25,6 +25,7 @@ MINUS_PAD = 0.8  # and before its beginning
 CROP_TALL = 1.1  # height of a crop over a detected line's
 MIN_RHO = 0.03
 MAX_RINGS = 24
+FEW_RINGS = 5
 READ_WELL = 0.75  # mean odds of the crops of a row that is the right way up
 LONG_OVER_TALL = 2.0  # length of a short label over its height
 SURE_SUPPORT, SURE_MARGIN = 3, 3.0  # of a vote that ends the search
@@ -63,12 +64,10 @@ def read_ring_texts(sheet, engine, seen, *, rim=()):
 def _read_row(sheet, engine, seen, ray, rings, rim):
     """Yield what a row says, each as texts and whether the labels' place is safe."""
     grid = sheet.grid
-    ray, filled = _right_way_up(sheet, engine, ray, rings)
+    ray = _right_way_up(sheet, engine, ray, rings)
     found, lone = _detected(grid, ray, seen, rings, rim)
     lines = [_crop_line(grid, ray, ring, found.get(ring)) for ring in rings]
-    if found:
-        filled = read_lines(sheet, engine, lines)
-    plain = read_lines(sheet, engine, lines, cleaned=False)
+    filled, plain = (read_lines(sheet, engine, lines, cleaned=cleaned) for cleaned in (True, False))
     crops = {ring: {"filled": a, "plain": b} for ring, a, b in zip(rings, filled, plain)}
     for ring, item in found.items():
         crops[ring]["detected"] = item
@@ -85,29 +84,29 @@ def _read_row(sheet, engine, seen, ray, rings, rim):
 
 
 def _right_way_up(sheet, engine, ray, rings):
-    """The row with the turn of its letters settled, and its crops with grid lines filled.
+    """The row with the turn of its letters settled, by how well a few of its labels read.
 
     A short label that is turned looks square, so its turn is not known from its box: letters may stand level, along
     the ray or across it.
     """
-    best = None
+    best, few = None, rings[:FEW_RINGS]
     page = _page_deg(sheet.grid, ray)
     for turn in (ray.turn_deg, 0.0, page - 90, page + 90, page, page + 180):
         turn = (turn + 180) % 360 - 180
         if best is not None and any(abs((turn - t + 180) % 360 - 180) < 6 for t in tried):
             continue
         turned = ray if best is None else _as_turned(ray, turn)
-        looks = read_lines(sheet, engine, [_crop_line(sheet.grid, turned, ring, None) for ring in rings])
+        looks = read_lines(sheet, engine, [_crop_line(sheet.grid, turned, ring, None) for ring in few])
         odds = [look.levels[0].odds if look.levels else 0.0 for look in looks]
         if best is None:
-            tried, best = [turn], (sum(odds), turned, looks)
+            tried, best = [turn], (sum(odds), turned)
             if np.mean(odds) > READ_WELL:
                 break
         else:
             tried.append(turn)
             if sum(odds) > best[0] + 0.5:
-                best = sum(odds), turned, looks
-    return best[1:]
+                best = sum(odds), turned
+    return best[1]
 
 
 def _as_turned(ray, turn_deg):

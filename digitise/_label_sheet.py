@@ -12,6 +12,7 @@ __all__ = ["LabelSheet", "Line", "cut_label_sheet"]
 SMALL_OUTER_PX = 420.0  # charts below are enlarged, by MAX_ZOOM at most: letters of 6 px are unreadable as they are
 LARGE_OUTER_PX = 700.0  # charts above are reduced: their letters stay large enough
 MAX_ZOOM = 2.5
+SHARPEN, SHARPEN_PX = 1.2, 2.0  # amount and radius of the unsharp mask, sheet px
 LINE_PX = 48  # height that the recogniser reads
 
 
@@ -76,7 +77,15 @@ def cut_label_sheet(picture, box, grid):
         rgb = cv2.resize(rgb, size, interpolation=cv2.INTER_AREA if zoom < 1 else cv2.INTER_CUBIC)
     moved = _moved(grid, box.x, box.y, zoom)
     plain, clean = clean_gray(rgb, moved)
+    if zoom > 1:
+        plain, clean = _sharpened(plain), _sharpened(clean)
     return LabelSheet(clean=clean, plain=plain, grid=moved, x0=float(box.x), y0=float(box.y), zoom=zoom)
+
+
+def _sharpened(gray):
+    """Enlarged letters are soft; an unsharp mask brings back the contrast of their strokes."""
+    soft = cv2.GaussianBlur(gray, (0, 0), SHARPEN_PX)
+    return cv2.addWeighted(gray, 1 + SHARPEN, soft, -SHARPEN, 0)
 
 
 def _moved(grid, x0, y0, zoom):

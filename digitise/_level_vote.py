@@ -16,6 +16,7 @@ from ._laws import LOG_DB
 __all__ = ["LevelReading", "LevelVote", "vote_levels"]
 
 SIGN_LOST = 0.12  # share of a reading that counts for its negative: minus signs are thin
+ALL_LOST, ALL_LOST_COST = 0.8, 2.0  # the same where a whole chart's minus signs were lost, and the log odds of that
 SIGN_MADE = 0.03  # and of a negative one for its positive: a grid line may look like a minus
 FLOOR = 0.02  # odds left to a label that is read wrong with confidence
 UNREAD = 0.2  # worth of the odds of "no number"
@@ -71,7 +72,7 @@ def vote_levels(readings, *, ring_rho, outer_px, laws=("even", *LOG_DB)):
 
     readings : sequence of LevelReading; ring_rho : (n,) radii of all drawn rings; outer_px : px of rho 1
     """
-    rho, level, odds, owner = _flatten(readings)
+    rho, level, odds, owner = _flatten(readings, SIGN_LOST)
     if not len(rho):
         return None
     tolerance = MATCH_PX / outer_px + MATCH_RHO
@@ -81,8 +82,10 @@ def vote_levels(readings, *, ring_rho, outer_px, laws=("even", *LOG_DB)):
         outer, slope = _proposals(law, rho, level, owner)
         if not len(outer):
             continue
-        worth, unread = _worth(law, outer, slope, rho, level, odds, owner, slack)
-        score = np.log(worth + UNREAD * unread + FLOOR).sum(axis=1) + _habit(law, outer, slope, ring_rho, tolerance)
+        score = _habit(law, outer, slope, ring_rho, tolerance) + np.maximum(
+            _agreement(law, outer, slope, (rho, level, odds, owner), slack),
+            _agreement(law, outer, slope, _flatten(readings, ALL_LOST), slack) - ALL_LOST_COST,
+        )
         order = np.argsort(-score)[:40]
         best += [(float(score[k]), law, float(outer[k]), float(slope[k])) for k in order]
     if not best:
@@ -99,18 +102,19 @@ def vote_levels(readings, *, ring_rho, outer_px, laws=("even", *LOG_DB)):
     )  # fmt: skip
 
 
-def _flatten(readings):
-    rows = [(r.rho, level, odds, k) for k, r in enumerate(readings) for level, odds in _with_signs(r.options)]
+def _flatten(readings, lost):
+    """Radius, level, odds and index of every option of every reading, either sign of it."""
+    rows = [(r.rho, level, odds, k) for k, r in enumerate(readings) for level, odds in _with_signs(r.options, lost)]
     return tuple(np.array(column, float) for column in zip(*rows)) if rows else (np.zeros(0),) * 4
 
 
-def _with_signs(options):
+def _with_signs(options, lost):
     """Options with a share of each for the other sign."""
     out = {}
     for level, odds in options:
         out[level] = out.get(level, 0.0) + odds
         if level:
-            out[-level] = out.get(-level, 0.0) + odds * (SIGN_LOST if level > 0 else SIGN_MADE)
+            out[-level] = out.get(-level, 0.0) + odds * (lost if level > 0 else SIGN_MADE)
     return [(level, min(odds, 1.0)) for level, odds in out.items() if odds > 0.004]
 
 
@@ -138,16 +142,17 @@ def _radii(law, outer, slope, level):
     return 1 + down / slope[:, None] if law == "even" else np.exp(down / LOG_DB[law])
 
 
-def _worth(law, outer, slope, rho, level, odds, owner, slack):
-    """Agreeing odds of every reading under every proposal (proposals, n), and the odds that it is no number (n,)."""
-    n = len(slack)
-    match = np.abs(_radii(law, outer, slope, level) - rho[None, :]) < slack[owner.astype(int)]
-    worth, read = np.zeros((len(outer), n)), np.zeros(n)
-    for k in range(n):
+def _agreement(law, outer, slope, options, slack):
+    """Log odds of all readings under every proposal (proposals,)."""
+    rho, level, odds, owner = options
+    owner = owner.astype(int)
+    match = np.abs(_radii(law, outer, slope, level) - rho[None, :]) < slack[owner]
+    total = np.zeros(len(outer))
+    for k in range(len(slack)):
         mine = owner == k
-        worth[:, k] = (match[:, mine] * odds[mine]).sum(axis=1)
-        read[k] = odds[mine].sum()
-    return np.minimum(worth, 1.0), np.maximum(0.0, 1 - read)
+        agreed = np.minimum((match[:, mine] * odds[mine]).sum(axis=1), 1.0)
+        total += np.log(agreed + UNREAD * max(0.0, 1 - odds[mine].sum()) + FLOOR)
+    return total
 
 
 def _habit(law, outer, slope, ring_rho, tolerance):
