@@ -142,6 +142,26 @@ def settle_grid(picture, grid):
     return _from_radii(settled, rho, uncertain)
 
 
+def place_labels(labels, grid, corrected):
+    """Move the `Labels` that were read with one grid to a corrected one; a ring label keeps its ring.
+
+    Reading them anew is surer but takes a second: this is for showing at once what a correction does.
+    """
+    return replace(labels, found=tuple(_place_label(label, grid, corrected) for label in labels.found))
+
+
+def _place_label(label, grid, corrected):
+    rho, plane_deg = (float(value) for value in corrected.to_plane(label.x_px, label.y_px))
+    ring_rho = label.ring_rho
+    if np.isfinite(ring_rho):
+        k = int(np.argmin(np.abs(grid.ring_rho - ring_rho)))
+        if len(grid.ring_rho) == len(corrected.ring_rho) and abs(grid.ring_rho[k] - ring_rho) < 1e-6:
+            ring_rho = float(corrected.ring_rho[k])
+        else:
+            ring_rho = float(corrected.to_plane(*grid.to_picture(ring_rho, label.plane_deg))[0])
+    return replace(label, rho=rho, plane_deg=plane_deg, ring_rho=ring_rho)
+
+
 def _check_order(radii, outer_px):
     if radii[-1] * outer_px < LEAST_APART_PX or np.any(-np.diff(radii) * outer_px < LEAST_APART_PX):
         raise UsageError(

@@ -125,14 +125,18 @@ def read_charts(picture, *, settings):
     return tuple(readings)
 
 
-def read_chart(picture, box, *, settings, kept=None):
+def read_chart(picture, box, *, settings, kept=None, labels=None):
     """Read the chart at one `Box`; raises as `read_charts` does.
 
     kept : `Kept` stages of earlier readings of the same picture, taken again where a change does not touch them
+    labels : `Labels` to use where they are needed, in place of reading them
     """
     kept = Kept() if kept is None else kept
     grid = settings.grid or kept.result(find_grid, picture, box)
-    labels = kept.result(read_labels, picture, box, grid) if _needs_labels(settings) else Labels()
+    if not _needs_labels(settings):
+        labels = Labels()
+    elif labels is None:
+        labels = kept.result(read_labels, picture, box, grid)
     scale = settings.scale or scale_stage.make_scale(grid, settings=settings, labels=labels)
     bearing = settings.bearing or bearing_stage.make_bearing(grid, settings=settings, labels=labels)
     found = kept.result(_all_traces, picture, grid, settings.inks, settings.covers, settings.pins, kept=kept)

@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 
 from digitise._sheet import cut_sheet
-from digitise.correct import grid_by_hand, settle_grid
+from digitise.correct import grid_by_hand, place_labels, settle_grid
 from digitise.exceptions import DigitiseError, NotReadError, PictureError, UsageError
 from digitise.find import Box, box_around, find_charts
 from digitise.grid import find_grid
@@ -23,7 +23,16 @@ from digitise.settings import Settings
 
 from .state import Chart, Seen, State
 
-__all__ = ["NeedsPictureError", "Saved", "complete", "open_source", "place_grid", "save_charts", "settle"]
+__all__ = [
+    "NeedsPictureError",
+    "Saved",
+    "complete",
+    "open_source",
+    "place_grid",
+    "quick",
+    "save_charts",
+    "settle",
+]
 
 RECORD_END = ".json"
 
@@ -63,6 +72,29 @@ def complete(state):
     for k in sorted(range(len(charts)), key=lambda k: k != state.at):
         if not charts[k].done:
             charts[k] = _read(state, charts[k])
+    return replace(state, charts=tuple(charts))
+
+
+def quick(state):
+    """Read quickly the chart worked on, when its grid was corrected and labels are needed.
+
+    None where nothing is gained, or where the quick reading fails: then the whole one tells.
+    """
+    chart = state.chart
+    if chart is None or chart.done or chart.settings.grid is None:
+        return None
+    earlier = chart.earlier
+    if earlier is None or not earlier.labels.found:
+        return None
+    labels = place_labels(earlier.labels, earlier.grid, chart.settings.grid)
+    try:
+        reading = read_chart(
+            state.picture, chart.box, settings=chart.settings, kept=state.kept, labels=labels
+        )
+    except DigitiseError:
+        return None
+    charts = list(state.charts)
+    charts[state.at] = replace(chart, quick=_numbered(reading, chart.settings))
     return replace(state, charts=tuple(charts))
 
 
@@ -149,11 +181,16 @@ def _read(state, chart):
     picture, kept, settings = state.picture, state.kept, chart.settings
     try:
         reading = read_chart(picture, chart.box, settings=settings, kept=kept)
-        if settings.chart is not None:
-            reading = replace(reading, number=settings.chart[0], n_charts=settings.chart[1])
-        return replace(chart, reading=reading, seen=_look(state, reading.grid), earlier=None)
+        reading = _numbered(reading, settings)
+        return replace(chart, reading=reading, seen=_look(state, reading.grid), quick=None, earlier=None)
     except DigitiseError as fault:
-        return replace(chart, fault=fault, seen=_look_anyway(state, chart), earlier=None)
+        return replace(chart, fault=fault, seen=_look_anyway(state, chart), quick=None, earlier=None)
+
+
+def _numbered(reading, settings):
+    if settings.chart is None:
+        return reading
+    return replace(reading, number=settings.chart[0], n_charts=settings.chart[1])
 
 
 def _look_anyway(state, chart):
@@ -184,7 +221,9 @@ def _open_record(path, picture_path):
     beside = Path(path).parent / name
     if picture_path is None:
         if not name or not beside.is_file():
-            raise NeedsPictureError(f"its picture {name} is not beside it", remedy="show where it is", source=path)
+            raise NeedsPictureError(
+                f"its picture {name} is not beside it", remedy="show where it is", source=path
+            )
         picture_path = beside
     told = _told(record, path)
     picture = open_picture(picture_path, page=told.page)

@@ -101,7 +101,7 @@ class TableView(ttk.Frame):
     def refresh(self):
         """Show the rows of the trace."""
         trace = (
-            self.session.shown_trace if self.session.chart is not None and self.session.chart.done else None
+            self.session.shown_trace if self.session.chart is not None and self.session.chart.fresh else None
         )
         if trace is self._shown:
             return
@@ -159,7 +159,7 @@ class FiguresView(ttk.Frame):
     def refresh(self):
         """Show the figures, worked out when they come into sight."""
         chart = self.session.chart
-        trace = self.session.shown_trace if chart is not None and chart.done else None
+        trace = self.session.shown_trace if chart is not None and chart.fresh else None
         if trace is self._shown:
             return
         self._shown = trace

@@ -50,7 +50,7 @@ def overlay_shapes(session, place, *, draft=None, scale_px=1.0):
     chart = session.chart
     if chart is not None:
         grid = draft.grid if draft is not None and draft.grid is not None else chart.grid
-        stale = not chart.done or grid is not chart.grid
+        stale = not chart.fresh or grid is not chart.grid
         if grid is not None:
             shapes += _grid(session, grid, place, stale, scale_px)
         if session.reading is not None and grid is chart.grid:
@@ -67,7 +67,7 @@ def overlay_shapes(session, place, *, draft=None, scale_px=1.0):
 
 def redraw_shapes(session, place, *, scale_px=1.0):
     """The reading drawn anew, without the picture; `place` as for `overlay_shapes`."""
-    reading, stale = session.reading, not session.chart.done
+    reading, stale = session.reading, not session.chart.fresh
     shapes = list(_grid(session, reading.grid, place, stale, scale_px, zero=False))
     for bearing in range(0, 360, 30):
         plane = float(reading.bearing.to_plane(np.array([float(bearing)]))[0])
@@ -81,7 +81,7 @@ def redraw_shapes(session, place, *, scale_px=1.0):
 def pointed_shapes(session, place):
     """The row being pointed at, as a list of none or one `Shape`."""
     trace, row = session.shown_trace, session.row
-    if trace is None or row is None or not session.chart.done or row >= len(trace.table.angle_deg):
+    if trace is None or row is None or not session.chart.fresh or row >= len(trace.table.angle_deg):
         return []
     x, y = trace_places(session.reading, trace)
     points = _points(place, x[row : row + 1], y[row : row + 1])

@@ -125,7 +125,7 @@ class RedrawView(ttk.Frame):
             (max(self.canvas.winfo_height(), 2), max(self.canvas.winfo_width(), 2), 3), np.uint8
         )
         pixels[:] = PAPER
-        if self.session.chart.done:
+        if self.session.chart.fresh:
             for trace, colour in zip(reading.traces, itertools.cycle(self.pen.trace_colours), strict=False):
                 mask = Mask(pixels)
                 mask.quads(self._band(reading, trace))

@@ -30,7 +30,9 @@ class Chart:
     settings : what the user told; box : find.Box, its place
     reading : as read with these settings, or None
     fault : DigitiseError that stopped the reading, or None
-    seen : what was found on it; earlier : the latest reading with other settings, shown faded meanwhile
+    seen : what was found on it
+    quick : a reading with these settings that takes over labels, shown until `reading` is there
+    earlier : the latest reading with other settings, shown faded until either is there
     """
 
     settings: Settings
@@ -38,6 +40,7 @@ class Chart:
     reading: object = None
     fault: object = None
     seen: Seen = Seen()
+    quick: object = None
     earlier: object = None
 
     @property
@@ -57,11 +60,21 @@ class Chart:
     @property
     def shown(self):
         """The reading to draw: the one with these settings, or while that is awaited the one before."""
-        return self.reading if self.done else self.earlier
+        return self.reading if self.done else self.quick or self.earlier
+
+    @property
+    def fresh(self):
+        """Whether what is shown goes with the settings."""
+        return self.done or self.quick is not None
 
     def told(self, settings):
         """The chart with other settings, its reading awaited."""
-        return Chart(settings=settings, box=self.box, seen=self.seen, earlier=self.reading or self.earlier)
+        return Chart(
+            settings=settings,
+            box=self.box,
+            seen=self.seen,
+            earlier=self.reading or self.quick or self.earlier,
+        )
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)

@@ -170,6 +170,7 @@ class Window:
         now = self.session.now
         if self.session.open and not now.done and self._asked != now.serial:
             self._asked = now.serial
+            self.worker.ask("quick", flow.quick, now)
             self.worker.ask("read", flow.complete, now)
         self._show_all()
         if self.session.open and not now.done:
@@ -269,7 +270,7 @@ class Window:
             self.place.configure(text="")
             return
         words = f"x {x_px:.1f}  y {y_px:.1f} px"
-        if reading is not None and self.session.chart.done:
+        if reading is not None and self.session.chart.fresh:
             rho, plane = (float(value) for value in reading.grid.to_plane(x_px, y_px))
             bearing = float(reading.bearing.from_plane(plane))
             level = float(reading.scale.level(rho))
@@ -332,6 +333,9 @@ class Window:
                 self.say(said(answer.error), "alert")
             elif self.session.take(answer.value):
                 self.changed()
+        elif answer.name == "quick":
+            if answer.value is not None and not self.session.now.done and self.session.take(answer.value):
+                self._show_all()
         elif not answer.late or answer.name == "save":
             {
                 "open": self.actions.opened,

@@ -12,9 +12,11 @@ import numpy as np
 import pytest
 from PIL import Image
 
+from digitise import correct
 from digitise.cli import main
 from digitise.exceptions import NotReadError, PictureError, UsageError
 from digitise.kept import Kept
+from digitise.labels import Label, Labels
 from digitise.picture import open_picture
 from digitise.record import read_record
 from digitise.review import REASONS, reason
@@ -455,6 +457,36 @@ def test_a_placed_grid_is_found_more_exactly(session, hand):
 
     assert found.ring_rho == pytest.approx(RING_RHO, abs=0.002)
     assert found.outer_px == pytest.approx(OUTER_PX, abs=0.1)
+
+
+def test_a_corrected_grid_is_read_quickly_with_the_labels_taken_over(session):
+    """Where labels give the levels, they are moved to the corrected grid first, and read anew afterwards."""
+    before = session.reading
+    levels = ((1.0, 0), (0.5, -20), (0.25, -30))
+    labels = Labels(found=tuple(ring_label(before.grid, rho, level) for rho, level in levels))
+    told = replace(session.settings, outer_db=None, centre_db=None)
+    chart = replace(session.chart, settings=told, reading=replace(before, labels=labels, settings=told))
+    session.start(replace(session.now, charts=(chart,)))
+    session.correct_grid(correct.move_ring(before.grid, 0, 1.02), "correct the grid")
+
+    quick = flow.quick(session.now)
+    session.take(quick)
+
+    assert session.chart.fresh
+    assert not session.now.done
+    assert session.reading.scale.source == "labels"
+    assert session.reading.scale.level(np.array([1.0, 0.5 / 1.02])) == pytest.approx([0, -20], abs=0.8)
+    session.undo()
+    assert flow.quick(session.now) is None
+
+
+def ring_label(grid, rho, level_db):
+    """A ring's level as the reader of labels would give it, printed at the right."""
+    x, y = grid.to_picture(rho, 80.0)
+    return Label(
+        text=f"{level_db}", value=float(level_db), unit="dB", x_px=float(x), y_px=float(y), w_px=20.0, h_px=10.0,
+        rho=rho, plane_deg=80.0, confidence=0.99, role="ring", readings=((float(level_db), 0.99),), ring_rho=rho,
+    )  # fmt: skip
 
 
 # --- the hand
