@@ -3,6 +3,7 @@
 import numpy as np
 
 from ._laws import LOG_DB, fit_law, fit_laws
+from ._level_match import match_levels
 from ._marks import MIN_RING_U_PX, Anchors, anchors_from_marks, anchors_from_ring_levels
 from .exceptions import UsageError
 from .review import reason
@@ -20,7 +21,11 @@ def scale_from_told(grid, *, settings, labels=None):
     unit = unit_of(labels)
     law = settings.law
     if settings.ring_levels:
-        return _from_ring_levels(grid, anchors_from_ring_levels(grid, settings.ring_levels), law, unit)
+        anchors = None
+        if len(settings.ring_levels) != len(grid.ring_rho) and law != "rings":
+            anchors = match_levels(grid, settings.ring_levels, law)
+        anchors = anchors_from_ring_levels(grid, settings.ring_levels) if anchors is None else anchors
+        return _from_ring_levels(grid, anchors, law, unit)
     if settings.marks:
         if len(settings.marks) > 1 or law in LOG_DB:
             return _from_marks(grid, settings.marks, law, unit)

@@ -197,6 +197,18 @@ def test_ring_levels_must_match_the_rings_found():
         make_scale(grid, settings=Settings(ring_levels=(0.0, -3.0, -10.0, -30.0), law="even"))
 
 
+@pytest.mark.parametrize("law", ["even", "field", "log-periodic"])
+@pytest.mark.parametrize("missing", [1, 3, 4])
+def test_ring_levels_reach_past_a_ring_that_was_not_found(law, missing):
+    """Five levels, four rings found: the law says which ring is missing, or the user is asked."""
+    levels = np.array([0.0, -3, -6, -10, -15])
+    rings = 1 + levels / 20 if law == "even" else law_rho(law, levels)
+    scale = make_scale(plane_grid(np.delete(rings, missing)), settings=Settings(ring_levels=tuple(levels), law=law))
+
+    assert scale.law == law
+    np.testing.assert_allclose(scale.level(rings), levels, atol=1e-6)
+
+
 def test_what_is_lacking_is_named():
     """Without labels the refusal names what to give; a centre above the rim or under a logarithmic law is refused."""
     grid = plane_grid(EVEN_40)
