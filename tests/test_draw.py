@@ -7,23 +7,44 @@ import numpy as np
 import pytest
 from PIL import Image
 
-from tests.draw import RECIPES, RENDERERS, Chart, Page, Stroke, Trace, paint, random_page, rho_of, spoil, truth_of, write_case
-from tests.draw import patterns
+from tests.draw import (
+    RECIPES,
+    RENDERERS,
+    Chart,
+    Page,
+    Stroke,
+    Trace,
+    paint,
+    patterns,
+    random_page,
+    rho_of,
+    spoil,
+    truth_of,
+    write_case,
+)
 from tests.draw.spec import N_TRUE, STEP_TRUE, drawn_curve, level_of
 from tests.draw.strokes import cut_dashes
 from tests.draw.truth import map_points
 
 DEG = np.arange(N_TRUE) * STEP_TRUE
-BARE = {"ring_db": (), "spoke_deg": 0, "ring_labels": None, "rim_labels": None, "rim": Stroke(colour="#ffffff")}
+BARE = {
+    "ring_db": (),
+    "spoke_deg": 0,
+    "ring_labels": None,
+    "rim_labels": None,
+    "rim": Stroke(colour="#ffffff"),
+}
 MEAN_PX = 0.03  # a renderer may not be off centre by more: a fifth of the best reading's error
 SPREAD_PX = {"pillow": 0.08, "plain": 0.45, "matplotlib": 0.06, "opencv": 0.08, "opencv-fine": 0.06}
 SPOILED_MEAN_PX = 0.06
 
 
 def egg(**chart):
-    """A page with one smooth black curve and nothing else."""
+    """Make a page with one smooth black curve and nothing else."""
     trace = Trace(db=-10 + 6 * np.cos(np.radians(DEG - 40)), ink="#000000", width=3.0)
-    return Page(charts=(Chart(traces=(trace,), centre_x=300.3, centre_y=280.7, outer_px=240.4, **{**BARE, **chart}),))
+    return Page(
+        charts=(Chart(traces=(trace,), centre_x=300.3, centre_y=280.7, outer_px=240.4, **{**BARE, **chart}),)
+    )
 
 
 def centroids(rgb, page, homography=None):
@@ -76,11 +97,17 @@ def test_truth_of_a_moved_chart(recipe):
     rho, _ = drawn_curve(chart, chart.traces[0])
     x, y = map_points(spoiled.homography, *chart.point(rho, DEG))
     t = np.radians(chart.page_deg(DEG) + truth["rotation_deg"])
-    np.testing.assert_allclose(truth["centre_px"][0] + truth["outer_radius_px"][0] * rho * np.sin(t), x, atol=0.01)
-    np.testing.assert_allclose(truth["centre_px"][1] - truth["outer_radius_px"][1] * rho * np.cos(t), y, atol=0.01)
+    np.testing.assert_allclose(
+        truth["centre_px"][0] + truth["outer_radius_px"][0] * rho * np.sin(t), x, atol=0.01
+    )
+    np.testing.assert_allclose(
+        truth["centre_px"][1] - truth["outer_radius_px"][1] * rho * np.cos(t), y, atol=0.01
+    )
 
 
-@pytest.mark.parametrize(("zero", "turn", "x", "y"), [("top", "cw", 200, 100), ("top", "ccw", 0, 100), ("right", "ccw", 100, 0)])
+@pytest.mark.parametrize(
+    ("zero", "turn", "x", "y"), [("top", "cw", 200, 100), ("top", "ccw", 0, 100), ("right", "ccw", 100, 0)]
+)
 def test_bearing_90_lies_where_the_chart_prints_it(zero, turn, x, y):
     """Three layouts by hand, centre (100, 100), outer radius 100: picture y grows downward."""
     chart = Chart(traces=(), centre_x=100, centre_y=100, outer_px=100, zero=zero, turn=turn)
@@ -92,7 +119,7 @@ def test_bearing_90_lies_where_the_chart_prints_it(zero, turn, x, y):
     ("law", "rho"), [("even", 0.75), ("field", 0.3162), ("power", 0.1), ("log-periodic", 0.5584)]
 )
 def test_radius_of_minus_10_db(law, rho):
-    """Radius of -10 dB on a 40 dB chart by each law: computed table of the project's reference sheet, section 3."""
+    """Radius of -10 dB on a 40 dB chart by each law: values computed by hand from the laws' definitions."""
     got = rho_of(law, -10.0, 0.0, -40.0)
 
     assert got == pytest.approx(rho, abs=5e-5)
@@ -177,7 +204,9 @@ def test_patterns_peak_at_nought():
 
 def test_random_pages_repeat_by_seed_and_differ_between_seeds():
     """A seed fixes every pixel; another gives another chart."""
-    first, again, other = (paint(random_page(np.random.default_rng(s), outer_px=120), renderer="opencv") for s in (1, 1, 2))
+    first, again, other = (
+        paint(random_page(np.random.default_rng(s), outer_px=120), renderer="opencv") for s in (1, 1, 2)
+    )
 
     assert np.array_equal(first, again)
     assert first.shape != other.shape or not np.array_equal(first, other)
@@ -193,7 +222,17 @@ def test_a_written_case_is_the_practice_layout(tmp_path):
     truth = json.loads((tmp_path / "pair-1.truth.json").read_text())
     assert truth["chart"] == path.name
     assert len(truth["traces"][0]["db"]) == N_TRUE
-    assert {"centre_px", "outer_radius_px", "ring_db", "outer_db", "centre_db", "law", "zero", "turn", "crop"} <= set(truth)
+    assert {
+        "centre_px",
+        "outer_radius_px",
+        "ring_db",
+        "outer_db",
+        "centre_db",
+        "law",
+        "zero",
+        "turn",
+        "crop",
+    } <= set(truth)
     with Image.open(path) as image:
         assert np.array_equal(np.asarray(image.convert("RGB")), rgb)
 

@@ -1,4 +1,4 @@
-"""What must hold whatever is drawn: turn, mirror, size, added level, repetition, and writing and reading back."""
+"""What must hold whatever is drawn: turn, mirror, size, added level, repetition, write and read back."""
 
 from dataclasses import replace
 
@@ -22,7 +22,7 @@ SAME_SHARE = 0.95  # and this share of rows by no more than their two intervals 
 
 
 def lobed(outer_px=210.0):
-    """A page with one lop-sided pattern, so that a turn or a mirror cannot go unseen."""
+    """Make a page with one lop-sided pattern, so that a turn or a mirror cannot go unseen."""
     rng = np.random.default_rng(14)
     trace = Trace(db=patterns.measured(DEG, rng, order=5, front=2.0) - 1.5, ink=INK, width=outer_px / 100)
     grid = Stroke(colour="#b0b8c0", width=max(1.0, outer_px / 250))
@@ -38,7 +38,7 @@ def read(folder, rgb, settings, name="chart"):
 
 
 def agree(one, other, rows=slice(None)):
-    """True when two tables' levels agree: closely in the median, and within their intervals nearly everywhere."""
+    """Tell whether two tables agree: closely in the median, and within their intervals nearly everywhere."""
     apart = np.abs(one.chart_db - other.chart_db[rows])
     limit = one.error95_db + other.error95_db[rows]
     known = np.isfinite(apart)
@@ -56,7 +56,7 @@ def drawn(tmp_path_factory):
 
 @pytest.mark.parametrize("quarters", [1, 2, 3])
 def test_a_turned_picture_rolls_the_table(tmp_path, drawn, quarters):
-    """A picture turned clockwise by quarters, its 0 told at the top as before: every bearing grows by 90 degrees."""
+    """A picture turned clockwise, its 0 told at the top as before: each quarter adds 90 degrees."""
     _, rgb, settings, table = drawn
 
     turned = read(tmp_path, np.ascontiguousarray(np.rot90(rgb, -quarters)), settings)

@@ -1,1 +1,4 @@
-"""Benchmarks: accuracy, coverage and speed by class, beside a short script. Run `python -m tests.bench --help`."""
+"""Benchmarks: accuracy, coverage and speed by class, beside a short script.
+
+Run `python -m tests.bench --help`.
+"""

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import numpy as np
 
-from tests.draw import Page, paint, random_page, spoil, write_case
+from tests.draw import Page, paint, random_page, spoil, truth_of, write_case
 
 RENDERERS = ("matplotlib", "pillow", "opencv-fine", "opencv")
 # how: (spoiling recipe or None, what is fixed on the page)
@@ -36,17 +36,20 @@ class Case:
 
 
 def make_case(folder, group, number, *, seed=SEED, **more):
-    """Paint, spoil and write the `number`-th chart of a group; the seed follows from both."""
+    """Paint, spoil and write the `number`-th chart of a group with its truth; the seed follows from both.
+
+    more : what else is fixed on the page, as in `random_page`
+    """
     recipe, fixed = GROUPS[group]
     rng = np.random.default_rng([seed, list(GROUPS).index(group), number])
     renderer = RENDERERS[number % len(RENDERERS)]
     page = random_page(rng, **{**fixed, **more})
-    rgb, suffix, options = paint(page, renderer=renderer), "png", {}
-    inks = tuple(trace.ink for trace in page.charts[0].traces)
+    rgb, spoiled, suffix, options = paint(page, renderer=renderer), None, "png", {}
     if recipe:
         spoiled = spoil(rgb, recipe, rng)
         rgb, suffix, options = spoiled.rgb, spoiled.suffix, spoiled.save_options()
-        inks = tuple(spoiled.ink(ink) for ink in inks)
+    truth = truth_of(page, spoiled=spoiled, renderer=renderer)
+    inks = tuple(trace["ink"] for trace in truth["traces"])
     name = f"{group}-{number:03d}"
-    path = write_case(folder, name, rgb, (), suffix=suffix, **options)
+    path = write_case(folder, name, rgb, (truth,), suffix=suffix, **options)
     return Case(name=name, group=group, path=path, page=page, inks=inks)

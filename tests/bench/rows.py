@@ -1,8 +1,9 @@
 """Judge a table row by row against a true curve, and say which class a row belongs to.
 
-Classes, each row in the first that fits: `bridged` (the reader says so), `crossing` (another trace within a few px),
-`null` (about a deep minimum), `flank` (the line runs more along the radius than across it) and `flat`.
-Only rows whose true level lies inside the chart count: above its centre by 2 % of the span, below its rim + 2 %.
+Classes, each row in the first that fits: `bridged` (the reader says so), `crossing` (another trace within a
+few px), `null` (about a deep minimum), `flank` (the line runs more along the radius than across it) and
+`flat`. Only rows whose true level lies inside the chart count: above its centre by 2 % of the span, below its
+rim + 2 %.
 """
 
 from dataclasses import dataclass
@@ -20,7 +21,10 @@ CROSSING_PX = 4.0  # between line centres, beyond half of both widths
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Rows:
-    """Rows of one table inside the chart: error_db, claimed (error95_db) and kind, each (n,); n_wanted rows were due."""
+    """Rows of one table inside the chart.
+
+    error_db, claimed_db (the table's error95_db), kind : each (n,) ; n_wanted : rows that were due
+    """
 
     error_db: np.ndarray
     claimed_db: np.ndarray
@@ -57,7 +61,7 @@ def row_kinds(chart, k, rho, db):
 
 
 def _near_nulls(db):
-    """Rows within NULL_REACH_DEG of a minimum that lies NULL_DEPTH_DB below the highest level on either side."""
+    """Rows within NULL_REACH_DEG of a minimum that lies NULL_DEPTH_DB below the level on either side."""
     level = np.where(np.isfinite(db), db, 0.0)
     lowest = level <= np.minimum(np.roll(level, 1), np.roll(level, -1))
     near = np.zeros(N_TRUE, bool)

@@ -1,10 +1,11 @@
 """What a short script gets: a Hough circle, a colour mask and a column mean, nothing else.
 
-usage: python tests/bench/short_script.py PICTURE --outer DB --centre DB --zero top --turn cw --ink '#rrggbb' --out CSV
+usage: python tests/bench/short_script.py PICTURE --outer DB --centre DB --zero top --turn cw --ink '#rrggbb'
+--out CSV
 
-It is meant to be a fair one: the picture is brought to a workable size for the Hough transform, the largest of the
-good circles is the rim, the mask is a distance in RGB, and the mean is taken over the outermost run of ink in each
-column of the unwrapped picture. Law even only.
+It is meant to be a fair one: the picture is brought to a workable size for the Hough transform, the largest
+of the good circles is the rim, the mask is a distance in RGB, and the mean is taken over the outermost run of
+ink in each column of the unwrapped picture. Law even only.
 """
 
 import argparse

@@ -1,4 +1,7 @@
-"""Time whole processes: start to files written, on one core, against picture size and beside the short script."""
+"""Time whole processes on one core, start to files written, by picture size, beside the short script.
+
+Processor time stands beside wall time, since other work on the machine lengthens only the latter.
+"""
 
 import os
 import subprocess
@@ -17,8 +20,8 @@ HERE = Path(__file__).parent
 
 
 def measure_speed(folder, *, megapixels=MEGAPIXELS):
-    """Lines of text: seconds, share of imports, peak memory and the short script's seconds by picture size."""
-    lines = ["megapixels   seconds  imports  peak MB | short s  ratio"]
+    """Lines of text: seconds, share of imports, peak memory and the short script's time by picture size."""
+    lines = ["megapixels   wall s    cpu s  imports  peak MB | short: cpu s  ratio"]
     times = []
     for size in megapixels:
         page, path = _chart(folder, size)
@@ -34,20 +37,21 @@ def measure_speed(folder, *, megapixels=MEGAPIXELS):
             "--out",
             str(Path(folder) / "short.csv"),
         ]
-        seconds, peak = _best(own)
-        beside, _ = _best(short)
+        wall, seconds, peak = _best(own)
+        _, beside, _ = _best(short)
         times.append(seconds)
         millions = page.width * page.height / 1e6
         lines.append(
-            f"{millions:10.2f} {seconds:9.2f} {_import_share(own):8.0%} {peak:8.0f} | {beside:7.2f} {seconds / beside:6.2f}"
+            f"{millions:10.2f} {wall:8.2f} {seconds:8.2f} {_import_share(own):8.0%} {peak:8.0f}"
+            f" | {beside:12.2f} {seconds / beside:6.2f}"
         )
     slope = np.polyfit(np.log(megapixels[-2:]), np.log(times[-2:]), 1)[0]
-    lines.append(f"growth between the two largest: seconds ~ megapixels^{slope:.2f}")
+    lines.append(f"growth between the two largest: cpu seconds ~ megapixels^{slope:.2f}")
     return lines
 
 
 def _chart(folder, size):
-    """A plain one-trace chart that fills a picture of `size` megapixels."""
+    """Write a plain one-trace chart that fills a picture of `size` megapixels."""
     rng = np.random.default_rng(5)
     side = np.sqrt(size * 1e6)
     fixed = {"law": "even", "n_traces": 1, "dashes": ("solid",), "paper": "white", "families": ("measured",)}
@@ -57,9 +61,9 @@ def _chart(folder, size):
 
 
 def _best(command):
-    """Least wall time of a few runs, s, and the largest resident memory, MB."""
-    results = [_run(command) for _ in range(REPEATS)]
-    return min(r[0] for r in results), max(r[1] for r in results)
+    """Least wall and processor time of a few runs, s, and the largest resident memory, MB."""
+    wall, cpu, memory = zip(*[_run(command) for _ in range(REPEATS)], strict=True)
+    return min(wall), min(cpu), max(memory)
 
 
 def _run(command):
@@ -73,7 +77,7 @@ def _run(command):
     process.returncode = os.waitstatus_to_exitcode(status)
     if process.returncode != 0:
         raise RuntimeError(f"exit {process.returncode} of {' '.join(command)}: {said.strip()}")
-    return time.perf_counter() - start, usage.ru_maxrss / 1024
+    return time.perf_counter() - start, usage.ru_utime + usage.ru_stime, usage.ru_maxrss / 1024
 
 
 def _import_share(command):

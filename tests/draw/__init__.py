@@ -1,4 +1,4 @@
-"""Paint polar pattern charts from known patterns, with several renderers, and spoil them as copies are spoiled.
+"""Paint polar charts from known patterns, with several renderers, and spoil them as copies are spoiled.
 
     page = Page(charts=(Chart(traces=(Trace(patterns.cardioid(angles)),)),))
     rgb = paint(page, renderer="matplotlib")

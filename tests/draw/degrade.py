@@ -12,7 +12,11 @@ from .fonts import rgb_of
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Spoiled:
-    """A spoiled picture: rgb (h, w, 3) uint8, homography (3, 3) from the painted picture, file suffix, and how."""
+    """A spoiled picture.
+
+    rgb : (h, w, 3) uint8 ; homography : (3, 3) from the painted picture ; suffix, quality : of the file
+    inks : "kept", "black" or "grey"
+    """
 
     rgb: np.ndarray
     homography: np.ndarray
@@ -22,7 +26,7 @@ class Spoiled:
     inks: str = "kept"
 
     def ink(self, colour):
-        """The colour that an ink has become: black in a fax, its luma in a grey copy."""
+        """Name the colour that an ink has become: black in a fax, its luma in a grey copy."""
         if self.inks == "black":
             return "#000000"
         if self.inks == "grey":
@@ -41,7 +45,7 @@ def spoil(rgb, recipe, rng):
 
 
 def _paper(rgb):
-    """The picture's border colour."""
+    """Take the colour along the picture's top and bottom edge."""
     return tuple(int(v) for v in np.median(np.vstack([rgb[0], rgb[-1]]), axis=0))
 
 
@@ -54,7 +58,7 @@ def _scaled(rgb, fx, fy, how):
 
 
 def _turned(rgb, deg):
-    """Turned clockwise about the middle, the sheet grown to hold it."""
+    """Turn clockwise about the middle, on a sheet grown to hold it."""
     h, w = rgb.shape[:2]
     t = np.radians(deg)
     c, s = np.cos(t), np.sin(t)
@@ -64,7 +68,12 @@ def _turned(rgb, deg):
         [[c, -s, new[0] - c * mid[0] + s * mid[1]], [s, c, new[1] - s * mid[0] - c * mid[1]], [0, 0, 1.0]]
     )
     turned = cv2.warpAffine(
-        rgb, matrix[:2], (grow_w, grow_h), flags=cv2.INTER_CUBIC, borderMode=cv2.BORDER_CONSTANT, borderValue=_paper(rgb)
+        rgb,
+        matrix[:2],
+        (grow_w, grow_h),
+        flags=cv2.INTER_CUBIC,
+        borderMode=cv2.BORDER_CONSTANT,
+        borderValue=_paper(rgb),
     )
     return turned, matrix
 
@@ -76,18 +85,24 @@ def _through_jpeg(rgb, quality, subsampling=2):
 
 
 def _small(rgb, rng, recipe):
-    shrunk, matrix = _scaled(rgb, *2 * [rng.uniform(0.4, 0.75)], rng.choice((cv2.INTER_AREA, cv2.INTER_CUBIC)))
+    shrunk, matrix = _scaled(
+        rgb, *2 * [rng.uniform(0.4, 0.75)], rng.choice((cv2.INTER_AREA, cv2.INTER_CUBIC))
+    )
     return Spoiled(rgb=shrunk, homography=matrix, recipe=recipe)
 
 
 def _jpeg(rgb, rng, recipe):
-    return Spoiled(rgb=rgb, homography=np.eye(3), recipe=recipe, suffix="jpg", quality=int(rng.integers(40, 91)))
+    return Spoiled(
+        rgb=rgb, homography=np.eye(3), recipe=recipe, suffix="jpg", quality=int(rng.integers(40, 91))
+    )
 
 
 def _small_jpeg(rgb, rng, recipe):
     shrunk, matrix = _scaled(rgb, *2 * [rng.uniform(0.45, 0.8)], cv2.INTER_AREA)
     once = _through_jpeg(shrunk, int(rng.integers(50, 91)))
-    return Spoiled(rgb=once, homography=matrix, recipe=recipe, suffix="jpg", quality=int(rng.integers(50, 91)))
+    return Spoiled(
+        rgb=once, homography=matrix, recipe=recipe, suffix="jpg", quality=int(rng.integers(50, 91))
+    )
 
 
 def _rotate(rgb, rng, recipe):
@@ -107,13 +122,17 @@ def _scan(rgb, rng, recipe):
     h, w = soft.shape[:2]
     along = rng.uniform(0, 2 * np.pi)
     y, x = np.mgrid[0:h, 0:w].astype(np.float32)
-    shade = 1 - rng.uniform(0.03, 0.12) * (0.5 + 0.5 * (np.cos(along) * (2 * x / w - 1) + np.sin(along) * (2 * y / h - 1)))
+    shade = 1 - rng.uniform(0.03, 0.12) * (
+        0.5 + 0.5 * (np.cos(along) * (2 * x / w - 1) + np.sin(along) * (2 * y / h - 1))
+    )
     tint = np.array([1.0, rng.uniform(0.97, 1.0), rng.uniform(0.93, 1.0)])
     grain = cv2.GaussianBlur(rng.normal(size=(h, w, 1)).astype(np.float32), (0, 0), 0.6)[..., None]
     noisy = soft * shade[..., None] * tint + rng.uniform(2, 6) * grain / 0.47
     noisy += rng.normal(scale=1.5, size=soft.shape)
     copy = np.clip(np.rint(noisy), 0, 255).astype(np.uint8)
-    return Spoiled(rgb=copy, homography=matrix, recipe=recipe, suffix="jpg", quality=int(rng.integers(60, 91)))
+    return Spoiled(
+        rgb=copy, homography=matrix, recipe=recipe, suffix="jpg", quality=int(rng.integers(60, 91))
+    )
 
 
 def _fax(rgb, rng, recipe):
@@ -128,11 +147,13 @@ def _fax(rgb, rng, recipe):
 
 
 def _blur(rgb, rng, recipe):
-    return Spoiled(rgb=cv2.GaussianBlur(rgb, (0, 0), rng.uniform(0.7, 1.6)), homography=np.eye(3), recipe=recipe)
+    return Spoiled(
+        rgb=cv2.GaussianBlur(rgb, (0, 0), rng.uniform(0.7, 1.6)), homography=np.eye(3), recipe=recipe
+    )
 
 
 def _palette(rgb, rng, recipe):
-    n = int(rng.choice((8, 16, 32, 64)))
+    n = int(rng.choice((16, 32, 64, 128)))
     dither = Image.Dither.FLOYDSTEINBERG if rng.random() < 0.3 else Image.Dither.NONE
     palette = Image.fromarray(rgb).quantize(n, method=Image.Quantize.MEDIANCUT)
     few = Image.fromarray(rgb).quantize(palette=palette, dither=dither).convert("RGB")

@@ -23,5 +23,5 @@ def font_file(family):
 
 
 def rgb_of(colour):
-    """ "#rrggbb" -> (r, g, b) 0..255."""
+    """Turn "#rrggbb" into (r, g, b), 0 to 255."""
     return tuple(int(colour[k : k + 2], 16) for k in (1, 3, 5))

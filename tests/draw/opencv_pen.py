@@ -1,4 +1,4 @@
-"""Paint a page with OpenCV's line drawing: sub-pixel ends by fixed-point shift, whole widths, stroke letters."""
+"""Paint a page with OpenCV's line drawing: sub-pixel ends by fixed-point shift, whole widths."""
 
 from functools import lru_cache
 
@@ -20,7 +20,7 @@ def paint(page):
 
 
 def paint_fine(page):
-    """The same drawn three times larger and averaged over areas."""
+    """Draw the same three times larger and average over areas."""
     big = _paint(page, FINE)
     return cv2.resize(big, (page.width, page.height), interpolation=cv2.INTER_AREA)
 
@@ -34,10 +34,14 @@ def _paint(page, factor):
         elif isinstance(op, Area):
             over = sheet.copy()
             cv2.fillPoly(over, [_fixed(op.points, factor)], rgb_of(op.colour), cv2.LINE_AA, SHIFT)
-            sheet[:] = over if op.opacity >= 1 else cv2.addWeighted(over, op.opacity, sheet, 1 - op.opacity, 0)
+            sheet[:] = (
+                over if op.opacity >= 1 else cv2.addWeighted(over, op.opacity, sheet, 1 - op.opacity, 0)
+            )
         else:
             width = max(1, round(op.width * factor))
-            cv2.polylines(sheet, [_fixed(op.points, factor)], op.closed, rgb_of(op.colour), width, cv2.LINE_AA, SHIFT)
+            cv2.polylines(
+                sheet, [_fixed(op.points, factor)], op.closed, rgb_of(op.colour), width, cv2.LINE_AA, SHIFT
+            )
     return sheet
 
 
@@ -63,14 +67,18 @@ def _write(sheet, op, factor):
     if op.box:
         box = np.zeros((2 * half + 1, 2 * half + 1), np.uint8)
         pad = 2 * factor
-        box[int(half + top - pad) : int(half + bottom + pad) + 1, int(half + left - pad) : int(half + right + pad) + 1] = 255
+        box[
+            int(half + top - pad) : int(half + bottom + pad) + 1,
+            int(half + left - pad) : int(half + right + pad) + 1,
+        ] = 255
         layers.append((box, op.box))
     layers.append((np.asarray(mask), op.colour))
+    about = cv2.getRotationMatrix2D((half, half), -op.turn_deg, 1.0)
     for cover, colour in layers:
-        if op.turn_deg:
-            about = cv2.getRotationMatrix2D((half, half), -op.turn_deg, 1.0)
-            cover = cv2.warpAffine(cover, about, cover.shape[::-1], flags=cv2.INTER_LINEAR)
-        _blend(sheet, cover, x0 - half, y0 - half, rgb_of(colour))
+        turned = (
+            cv2.warpAffine(cover, about, cover.shape[::-1], flags=cv2.INTER_LINEAR) if op.turn_deg else cover
+        )
+        _blend(sheet, turned, x0 - half, y0 - half, rgb_of(colour))
 
 
 def _blend(sheet, cover, x0, y0, colour):

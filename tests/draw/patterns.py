@@ -1,8 +1,8 @@
-"""Radiation patterns with a known formula: bearing off the main direction, degrees -> level below the peak, dB.
+"""Radiation patterns with a known formula: degrees off the main direction -> level below the peak, dB.
 
-Every function takes an array of any shape and returns one of the same shape, at most 0 dB, at least `DEEP_DB`.
-Names and formulas as in the antenna handbooks; check values are in REFERENCES.md section 2 of the project's notes
-and in tests/reference.
+Every function takes an array of any shape and returns one of the same shape, at most 0 dB, at least
+`DEEP_DB`. Names and formulas as in the antenna handbooks; check values are in REFERENCES.md section 2 of the
+project's notes and in tests/reference.
 """
 
 import numpy as np
@@ -48,7 +48,7 @@ def sector(deg, *, half_power_deg=65.0, front_to_back_db=30.0):
 
 
 def linear_array(deg, *, n=8, spacing_wl=0.5, phase_deg=0.0):
-    """Uniform linear array across the main direction: sin(N psi/2) / (N sin(psi/2)), psi = 2 pi d sin t + beta."""
+    """Uniform linear array: sin(N psi/2) / (N sin(psi/2)), psi = 2 pi d sin t + beta."""
     half = np.pi * spacing_wl * np.sin(np.radians(np.asarray(deg, float))) + np.radians(phase_deg) / 2
     below = np.sin(half)
     flat = np.abs(below) < 1e-9
@@ -83,7 +83,7 @@ def omni(deg, rng, *, ripple_db=2.0):
 
 
 def measured(deg, rng, *, order=8, front=1.5):
-    """As a range measures one: a seeded complex Fourier series over a broad beam, with deep nulls where it crosses 0."""
+    """As a range measures one: a seeded complex Fourier series over a broad beam, with deep nulls."""
     t = np.radians(np.asarray(deg, float))
     field = front * (0.5 + 0.5 * np.cos(t)) ** 2 * np.exp(1j * rng.uniform(0, 6))
     for k in range(1, order + 1):

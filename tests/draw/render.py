@@ -1,4 +1,4 @@
-"""Choose a renderer: they differ in anti-aliasing, line joints, caps, snapping and letters, as real programs do."""
+"""Choose a renderer: they differ in anti-aliasing, joints, caps, snapping and letters, as programs do."""
 
 from . import matplotlib_pen, opencv_pen, pillow_pen
 
@@ -12,7 +12,7 @@ RENDERERS = {
 
 
 def paint(page, *, renderer="pillow"):
-    """A page as RGB (height, width, 3) uint8; `renderer` is one of `RENDERERS`.
+    """Paint a page as RGB (height, width, 3) uint8; `renderer` is one of `RENDERERS`.
 
     pillow : drawn several times larger and averaged down ; plain : no anti-aliasing, whole pixels
     matplotlib : its Agg renderer, exact area coverage, straight lines snapped to pixels

@@ -26,7 +26,8 @@ class Trace:
     """One curve: `db` (1440,) levels at every quarter degree of bearing, NaN where it is not drawn.
 
     dash : "solid", "dashed", "dotted", "dashdot" or "fill" (the area inside tinted, its outline drawn)
-    fill : opacity of the tint ; step_deg : the curve is drawn by straight chords between samples this far apart
+    fill : opacity of the tint ; step_deg : the curve is drawn by straight chords between samples this far
+    apart
     dash_scale : length of the dash pattern in line widths' multiples (1 = the usual)
     """
 
@@ -65,8 +66,10 @@ class Printed:
 class Chart:
     """One polar chart.
 
-    ring_db : levels of the drawn rings, outermost first; the rim is drawn at outer_db whether or not it is in here
-    spoke_deg : step of the spokes in bearing, 0 for none ; hub : spokes begin at this share of the outer radius
+    ring_db : levels of the drawn rings, outermost first; the rim is drawn at outer_db whether or not it is in
+    here
+    spoke_deg : step of the spokes in bearing, 0 for none ; hub : spokes begin at this share of the outer
+    radius
     disc : tint inside the rim, or None ; half : only the half about page-top is drawn
     labels_over : the ring labels are painted over the traces instead of under them
     clip : "centre" (levels below the centre are drawn at the centre) or "gap" (left out)
@@ -143,7 +146,7 @@ class Line:
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Page:
-    """A picture: size px, paper colour, charts, and furniture painted after them; `crops` one box a chart or ()."""
+    """A picture: size px, paper colour, charts, furniture painted after them; crops: a box a chart or ()."""
 
     charts: tuple
     width: int = 640
@@ -155,7 +158,7 @@ class Page:
 
 
 def rho_of(law, level_db, outer_db, centre_db):
-    """Radius share of a level: even in dB, in field 10^(x/20), in power 10^(x/10), or 0.89^(-x/2) (log-periodic)."""
+    """Radius share of a level x dB down: even, field 10^(x/20), power 10^(x/10), log-periodic 0.89^(-x/2)."""
     x = np.asarray(level_db, float) - outer_db
     if law == "even":
         return 1 + x / (outer_db - centre_db)
@@ -172,10 +175,10 @@ def level_of(law, rho, outer_db, centre_db):
 
 
 def drawn_curve(chart, trace):
-    """The curve as it is drawn: rho (1440,) at every quarter degree, NaN where left out, and the true levels (1440,).
+    """Work out the curve as it is drawn: rho (1440,), NaN where left out, and the true levels (1440,).
 
-    With a coarse `step_deg` the pen goes straight between samples, so the truth between them lies on the chord:
-    r = r1 r2 sin(b) / (r1 sin(t) + r2 sin(b - t)) for a chord over the angle b, t from its first end.
+    With a coarse `step_deg` the pen goes straight between samples, so the truth between them lies on the
+    chord: r = r1 r2 sin(b) / (r1 sin(t) + r2 sin(b - t)) for a chord over the angle b, t from its first end.
     """
     db = np.asarray(trace.db, float)
     rho = rho_of(chart.law, db, chart.outer_db, chart.centre_db)
@@ -190,7 +193,10 @@ def drawn_curve(chart, trace):
         db = np.where(part == 0, np.asarray(trace.db, float), db)
     if chart.half:
         off = (chart.page_deg(np.arange(N_TRUE) * STEP_TRUE) + 180) % 360 - 180
-        rho, db = np.where(np.abs(off) > 90 + 1e-9, np.nan, rho), np.where(np.abs(off) > 90 + 1e-9, np.nan, db)
+        rho, db = (
+            np.where(np.abs(off) > 90 + 1e-9, np.nan, rho),
+            np.where(np.abs(off) > 90 + 1e-9, np.nan, db),
+        )
     if chart.clip == "gap":
         rho = np.where(rho < 0, np.nan, rho)
     return np.maximum(rho, 0.0), db

@@ -47,9 +47,17 @@ def strokes_of(page):
     for item in page.furniture:
         if isinstance(item, Panel):
             corners = np.array(
-                [(item.x, item.y), (item.x + item.w, item.y), (item.x + item.w, item.y + item.h), (item.x, item.y + item.h)]
+                [
+                    (item.x, item.y),
+                    (item.x + item.w, item.y),
+                    (item.x + item.w, item.y + item.h),
+                    (item.x, item.y + item.h),
+                ]
             )
-            ops += [Area(points=corners, colour=item.fill), Pen(points=corners, colour=item.edge, width=1.0, closed=True)]
+            ops += [
+                Area(points=corners, colour=item.fill),
+                Pen(points=corners, colour=item.edge, width=1.0, closed=True),
+            ]
         elif isinstance(item, Text):
             ops.append(item)
         else:
@@ -63,11 +71,13 @@ def pen_lines(points, stroke, *, closed=False):
         return [Pen(points=points, colour=stroke.colour, width=stroke.width, closed=closed)]
     if closed:
         points = np.vstack([points, points[:1]])
-    return [Pen(points=part, colour=stroke.colour, width=stroke.width) for part in cut_dashes(points, stroke.dash)]
+    return [
+        Pen(points=part, colour=stroke.colour, width=stroke.width) for part in cut_dashes(points, stroke.dash)
+    ]
 
 
 def cut_dashes(points, dash):
-    """The drawn parts of a line (n, 2) under a dash pattern (on, off, ...) px, as a list of (m, 2)."""
+    """Cut a line (n, 2) by a dash pattern (on, off, ...) px into its drawn parts, a list of (m, 2)."""
     step = np.hypot(*np.diff(points, axis=0).T)
     keep = np.r_[True, step > 1e-9]
     points, s = points[keep], np.r_[0, np.cumsum(step[step > 1e-9])]
@@ -79,13 +89,15 @@ def cut_dashes(points, dash):
         if k % 2 == 0:
             inner = (s > at) & (s < end)
             along = np.r_[at, s[inner], end]
-            parts.append(np.column_stack([np.interp(along, s, points[:, 0]), np.interp(along, s, points[:, 1])]))
+            parts.append(
+                np.column_stack([np.interp(along, s, points[:, 0]), np.interp(along, s, points[:, 1])])
+            )
         at, k = end, k + 1
     return parts
 
 
 def _circle(chart, rho, stroke):
-    """A ring; half charts get the half about page-top."""
+    """Draw a ring; half charts get the half about page-top."""
     t = np.arange(N_CIRCLE) * 2 * np.pi / N_CIRCLE
     if chart.half:
         t = np.linspace(-np.pi / 2, np.pi / 2, N_CIRCLE // 2 + 1)
@@ -97,7 +109,11 @@ def _circle(chart, rho, stroke):
 def _grid(chart):
     ops = []
     if chart.disc:
-        t = np.linspace(-np.pi / 2, np.pi / 2, 721) if chart.half else np.arange(N_CIRCLE) * 2 * np.pi / N_CIRCLE
+        t = (
+            np.linspace(-np.pi / 2, np.pi / 2, 721)
+            if chart.half
+            else np.arange(N_CIRCLE) * 2 * np.pi / N_CIRCLE
+        )
         points = [chart.centre_x + chart.outer_px * np.sin(t), chart.centre_y - chart.outer_px * np.cos(t)]
         ops.append(Area(points=np.column_stack(points), colour=chart.disc))
     if chart.spoke_deg:
@@ -112,7 +128,12 @@ def _grid(chart):
             ops += _circle(chart, rho, chart.ring)
     ops += _circle(chart, 1.0, chart.rim)
     if chart.half:
-        base = np.array([[chart.centre_x - chart.outer_px, chart.centre_y], [chart.centre_x + chart.outer_px, chart.centre_y]])
+        base = np.array(
+            [
+                [chart.centre_x - chart.outer_px, chart.centre_y],
+                [chart.centre_x + chart.outer_px, chart.centre_y],
+            ]
+        )
         ops += pen_lines(base, chart.rim)
     return ops
 
@@ -134,7 +155,7 @@ def _trace(chart, trace):
     start = int(np.flatnonzero(~np.isfinite(rho))[0])  # begin the round in a gap, so that no run wraps
     points, seen = np.roll(points, -start, axis=0), np.roll(np.isfinite(rho), -start)
     edges = np.flatnonzero(np.diff(np.r_[False, seen, False].astype(int)))
-    for first, last in zip(edges[::2], edges[1::2]):
+    for first, last in zip(edges[::2], edges[1::2], strict=True):
         if last - first > 1:
             ops += pen_lines(points[first:last], stroke)
     return ops
@@ -145,8 +166,7 @@ def _ring_labels(chart):
     if say is None:
         return []
     ops = []
-    levels = list(chart.ring_db) if chart.ring_db and chart.ring_db[0] == chart.outer_db else list(chart.ring_db)
-    for db in levels:
+    for db in chart.ring_db:
         r = float(rho_of(chart.law, db, chart.outer_db, chart.centre_db)) * chart.outer_px
         if r < 0.9 * say.size:
             continue

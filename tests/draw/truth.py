@@ -1,4 +1,4 @@
-"""What is true of a painted page, in the layout of the practice set's truth files, and writing a case to a folder."""
+"""What is true of a painted page, in the layout of the practice set, and writing a case to a folder."""
 
 import json
 from pathlib import Path
@@ -13,10 +13,11 @@ CLEAR_DB = -200.0
 
 
 def truth_of(page, k=0, *, spoiled=None, renderer=""):
-    """Truth of the k-th chart of a page as a dict ready for JSON.
+    """Tell the truth of the k-th chart of a page as a dict ready for JSON.
 
-    centre_px, outer_radius_px (x, y), rotation_deg : the printed circle is the unit circle turned by rotation_deg
-    (clockwise) and then stretched to the two radii; under a perspective these hold at the chart's centre only
+    centre_px, outer_radius_px (x, y), rotation_deg : the printed circle is the unit circle turned by
+    rotation_deg (clockwise) and then stretched to the two radii; under a perspective these hold at the
+    chart's centre only
     homography : (3, 3) picture as painted -> picture as spoiled, or absent
     """
     chart = page.charts[k]
@@ -90,7 +91,9 @@ def _trace(chart, trace, spoiled):
     db = np.where(np.isfinite(db) & (db > CLEAR_DB), db, ABSENT_DB)
     ink = trace.ink if spoiled is None else spoiled.ink(trace.ink)
     dash = "solid" if trace.dash == "fill" else trace.dash
-    scale = 1.0 if spoiled is None else float(np.mean(_through(spoiled.homography, chart)[1])) / chart.outer_px
+    scale = (
+        1.0 if spoiled is None else float(np.mean(_through(spoiled.homography, chart)[1])) / chart.outer_px
+    )
     return {
         "label": trace.label,
         "ink": ink,

@@ -1,7 +1,8 @@
 """Values from handbooks and standards that a drawn and read chart must give back.
 
-`source` names the published origin. Titles and clause numbers are from memory, where nothing else is said; every
-number was also worked out anew, by root finding or maximising on the formula, in tests/test_reference.py.
+`source` names the published origin. Titles and clause numbers are from memory, where nothing else is said;
+every number was also worked out anew, by root finding or maximising on the formula, in
+tests/test_reference.py.
 """
 
 from dataclasses import dataclass
@@ -41,7 +42,7 @@ CARDIOID_WIDTH = Reference(
 )
 SECTOR_WIDTH = Reference(name="sector cut at -3.00 dB", value=65.0, unit="deg", digits=0.005, source=TR_38901)
 
-# level below the peak, dB, of a half-wave dipole at 10, 20 ... 80 degrees off broadside (formula of BALANIS_WIRE)
+# level, dB, of a half-wave dipole at 10, 20 ... 80 degrees off broadside (formula of BALANIS_WIRE)
 DIPOLE_LEVELS = {
     10: -0.194,
     20: -0.779,
