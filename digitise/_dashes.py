@@ -39,6 +39,13 @@ class Pieces:
     width_px: float
     middles: np.ndarray
 
+    @property
+    def style(self):
+        """"solid", "dashed" or "dotted"."""
+        if not self.dashed:
+            return "solid"
+        return "dotted" if self.length_px < DOTTED * self.width_px else "dashed"
+
 
 def find_pieces(cover, hidden, sheet, level, *, text_like):
     """Sort the loose pieces of ink on a coverage map.
@@ -87,7 +94,7 @@ def _alike(loose, extent, area, middle, sheet, text_like):
 def bridge_dashes(cover, pieces, level):
     """Coverage-like map, (h, w) float32, high on dashes and in the gaps between them."""
     length, width = pieces.length_px, pieces.width_px
-    if length < DOTTED * width:
+    if pieces.style == "dotted":
         return _joined_dots(cover.shape, pieces)
     reduction = 1 if width < THIN_PX else 2
     small = np.clip(cover / level, 0, 1)

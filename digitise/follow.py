@@ -41,6 +41,7 @@ class Trace:
     state : (n,) str, one of table.STATES
     clear : (n,) bool, the line stands alone there: its whole profile was seen
     support : share of the path, away from the centre, on ink or on a bridged gap of dashes
+    dash : "solid", "dashed" or "dotted", by the pieces of ink that were bridged
     width_px : drawn line width, sheet px; sheet_outer_px : sheet px per unit rho
     """
 
@@ -53,6 +54,7 @@ class Trace:
     state: np.ndarray
     clear: np.ndarray
     support: float
+    dash: str
     width_px: float
     sheet_outer_px: float
 
@@ -93,7 +95,7 @@ def follow_trace(layer, sheet, frame, *, fill=0.0, pins=(), solid=False):
     enter, leave = cheapest_path(cost, paper, closed=frame.whole)
     if np.mean(np.maximum(enter, leave) < floor_rows) > 0.98:
         return None
-    return _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink)
+    return _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink, "solid" if solid else pieces.style)
 
 
 def _line_peak(layer, sheet):
@@ -146,7 +148,7 @@ def _costs(ink, hidden, depth, floor_rows):
     return cost, paper
 
 
-def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink):
+def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink, dash):
     columns, rows = _walk(enter, leave)
     away = rows > max(2 * floor_rows, HUB_RHO * frame.outer_rows)
     support = float(ink[columns[away], rows[away]].mean()) if away.any() else 0.0
@@ -162,7 +164,7 @@ def _trace_from_path(enter, leave, frame, layer, sheet, floor_rows, fill, ink):
     # Unwrap the angle near the path's own, so that a crossing of 0 degrees does not jump.
     bearing = plane + ((np.degrees(np.arctan2(u, -v)) - plane + 180) % 360 - 180)
     at_centre = np.maximum(enter, leave) < floor_rows
-    return _resample(course, rho, bearing, at_centre, floor_rows / frame.reduction, frame, sheet, support)
+    return _resample(course, rho, bearing, at_centre, floor_rows / frame.reduction, frame, sheet, support, dash)
 
 
 def _walk(enter, leave):
@@ -186,7 +188,7 @@ def _evenly(x, y, plane):
     return tuple(np.interp(at, length[keep], values[keep]) for values in (xs, ys, plane))
 
 
-def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet, support):
+def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet, support, dash):
     """Level curve on an even angle grid, from the samples in order along the path."""
     step = 1.0 / SAMPLES_PER_DEG
     angles = frame.angles
@@ -214,6 +216,6 @@ def _resample(course, rho, bearing, at_centre, floor_px, frame, sheet, support):
     slant = 1 / np.sqrt(1 + (slope * 180 / np.pi / np.maximum(curve, 0.02)) ** 2)
     return Trace(
         plane_deg=grid_deg, rho=curve, u_px=at(course.u_px), u_bridge_px=bridge, slope=slope, radial_share=slant,
-        state=state, clear=kind < 0.5, support=support,
+        state=state, clear=kind < 0.5, support=support, dash=dash,
         width_px=course.width_px / sheet.reduction, sheet_outer_px=sheet.outer_px,
     )  # fmt: skip

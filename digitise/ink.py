@@ -72,7 +72,8 @@ def find_inks(sheet):
         near = along > np.cos(np.radians(APART_DEG)) * strength
         if near.sum() < 8:
             continue
-        full = float(np.percentile(strength[near], 92))
+        # Blurred lines reach their colour only where they crowd or cross.
+        full = float(np.percentile(strength[near], 98))
         length = float(near.sum())
         neutral = _is_neutral(direction, sheet.paper_rgb)
         inks.append(Ink(rgb=sheet.paper_rgb + direction * full, length_px=length, neutral=neutral))

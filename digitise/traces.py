@@ -15,17 +15,26 @@ from ._grid_cover import remove_grid
 from .exceptions import NotReadError
 from .follow import HUB_RHO, Trace, follow_trace
 from .ink import find_inks, separate_ink
+from .kept import Kept
 
 __all__ = ["FoundTrace", "find_traces"]
 
 MOST_PER_INK = 4
 LEAST_LENGTH = 0.5  # outer radii: ink along a path that is worth returning in doubt
+FAINT_COLOUR = 55.0  # colour levels from the paper; fainter inks are halos of JPEG and paper stains
+STRONG_COLOUR = 110.0  # colour levels from the paper; the colour noise of JPEG is paler
 LEAST_STRETCH = 0.45  # outer radii: ink along the longest well-inked stretch of a trace
 LEAST_ON_INK = 0.18  # share of ink in a window of a dotted line
 SOLID_ON_INK = 0.85  # a path with a larger share on ink is drawn solid
 SOLID_SHARE = 0.72  # share of a solid line's visible path on ink; crossings with the grid take some
 SOLID_SUPPORT = 0.45  # share of a solid line's path on ink that is not dashes
+LONG_STRETCH = 1.2
+WHOLE_SUPPORT = 0.75
+ALONG_PX = 1.5
+MOST_ON_GRID = 0.6  # share of a trace that may lie along drawn rings and spokes
 DASHED_SUPPORT = 0.5  # share of a dashed line's path on ink or bridged gaps
+PIN_REACH_PX = 4.0  # picture px: how roughly a pin is set
+PIN_APART_DEG = 12.0  # inks nearer in direction than this are one where a pin is concerned
 TOLD_REACH_DEG = 30.0  # a told colour may be this far in direction from the ink on the picture (JPEG, scans)
 
 
@@ -46,16 +55,25 @@ class FoundTrace:
     doubt: float
 
 
-def find_traces(sheet, grid, *, settings):
-    """Find and follow all traces; raises `NotReadError` when there is none or a told ink is not on the chart."""
+def find_traces(sheet, grid, *, settings, kept=None):
+    """Find and follow all traces; raises `NotReadError` when there is none or a told ink is not on the chart.
+
+    kept : `Kept` results of the same picture; an ink that a change does not touch is not followed again
+    """
+    kept = Kept() if kept is None else kept
     inks = find_inks(sheet)
-    palette = [ink.rgb for ink in inks]
+    palette = tuple(tuple(ink.rgb) for ink in inks)
     frame = make_frame(sheet, grid)
+
+    def traces_of(rgb, name, told):
+        pins = tuple(pin for pin in settings.pins if _concerns(pin, rgb, palette, sheet))
+        asked = (grid, tuple(rgb), palette, settings.covers, pins, name, told)
+        return kept.result(_traces_of_ink, *asked, sheet=sheet, frame=frame, kept=kept)
+
     found = []
     if settings.inks:
         for told in settings.inks:
-            rgb = _parse(told)
-            traces = _traces_of_ink(rgb, palette, sheet, grid, frame, settings, told, told=True)
+            traces = traces_of(_parse(told), told, True)
             if not traces:
                 there = ", ".join(ink.hex for ink in inks[:6]) or "none"
                 raise NotReadError(
@@ -65,10 +83,14 @@ def find_traces(sheet, grid, *, settings):
             found += traces
         return tuple(found)
     for ink in inks:
-        if ink.length_px < 0.25 * sheet.outer_px:
+        strength = np.linalg.norm(ink.rgb - sheet.paper_rgb)
+        if ink.length_px < 0.25 * sheet.outer_px or strength < FAINT_COLOUR:
             continue
-        found += _traces_of_ink(ink.rgb, palette, sheet, grid, frame, settings, ink.hex, told=False)
-    found = _without_doubles(found)
+        # A strong colour of its own is somebody's trace: what cannot be followed surely is returned in doubt.
+        strong = not ink.neutral and strength > STRONG_COLOUR
+        told = strong and ink.length_px > LEAST_LENGTH * sheet.outer_px
+        found += traces_of(ink.rgb, ink.hex, told)
+    found = _without_doubles(found, {ink.hex: (ink.neutral, -ink.length_px) for ink in inks})
     if not found:
         raise NotReadError("no trace was found on the chart", stage="ink", remedy="name its colour with --ink '#rrggbb'")
     return tuple(sorted(found, key=lambda f: -f.length))
@@ -78,16 +100,36 @@ def _parse(told):
     return np.array([int(told[k : k + 2], 16) for k in (1, 3, 5)], float)
 
 
-def _traces_of_ink(rgb, palette, sheet, grid, frame, settings, name, *, told):
-    if np.linalg.norm(rgb - sheet.paper_rgb) < 20:
+def _concerns(pin, rgb, palette, sheet):
+    """Whether a pin is for this ink: the ink is there, or no ink is and any may be hidden."""
+    x, y = (round(float(value)) for value in sheet.from_picture(*pin))
+    reach = max(2, round(PIN_REACH_PX * sheet.reduction))
+    near = np.s_[max(0, y - reach) : max(0, y + reach + 1), max(0, x - reach) : max(0, x + reach + 1)]
+    inked = sheet.strength[near] > FAINT_COLOUR
+    vectors = sheet.contrast[near][inked]
+    if not len(vectors):
+        return True
+    inks = [np.asarray(ink) - sheet.paper_rgb for ink in (rgb, *palette)]
+    inks = np.array([ink / max(np.linalg.norm(ink), 1e-9) for ink in inks])
+    nearest = np.argmax(vectors @ inks.T, axis=1)
+    own = inks @ inks[0] > np.cos(np.radians(PIN_APART_DEG))  # a told ink is also among those found, about
+    return bool(own[nearest].any())
+
+
+def _ink_layer(grid, rgb, palette, *, sheet):
+    return remove_grid(separate_ink(sheet, np.array(rgb), [np.array(ink) for ink in palette]), sheet, grid)
+
+
+def _traces_of_ink(grid, rgb, palette, covers, pins, name, told, *, sheet, frame, kept):
+    if np.linalg.norm(np.array(rgb) - sheet.paper_rgb) < 20:
         return []
-    layer = remove_grid(separate_ink(sheet, rgb, palette), sheet, grid)
-    layer = _with_covers(layer, sheet, settings.covers)
+    layer = kept.result(_ink_layer, grid, rgb, palette, large=True, sheet=sheet)
+    layer = _with_covers(layer, sheet, covers)
     fill = _fill_cover(layer, sheet)
-    pins = tuple(grid.to_plane(np.float64(x), np.float64(y)) for x, y in settings.pins)
+    pins = tuple(grid.to_plane(np.float64(x), np.float64(y)) for x, y in pins)
     found = []
     for _ in range(MOST_PER_INK):
-        item = _next_trace(layer, sheet, grid, frame, fill, pins, name, insist=told and not found)
+        item = _next_trace(layer, sheet, grid, frame, fill, pins, name, insist=told and not found, first=not found)
         if item is None:
             break
         found.append(item)
@@ -106,9 +148,10 @@ def _ink_left(layer, sheet, trace):
     return float(left.sum()) / max(trace.width_px * sheet.reduction, 1.0) / sheet.outer_px
 
 
-def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist):
+def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist, first):
     """The next trace of an ink, a solid one first; None when what is left is no trace.
 
+    first : no trace of this ink was found before
     insist : the user named this ink, so the best path is returned even in doubt, as long as it has ink of its own
     """
     best = None
@@ -120,9 +163,13 @@ def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist):
         inked = evidence.share > SOLID_SHARE and trace.support > SOLID_SUPPORT if solid else trace.support > DASHED_SUPPORT
         sure = evidence.stretch > LEAST_STRETCH and inked
         item = FoundTrace(
-            ink=name, dash=evidence.dash, filled=fill > 0, trace=trace, length=evidence.length, doubt=1 - (evidence.share if solid else trace.support)
-        )
-        if sure and not _is_ring(trace, grid):
+            ink=name, dash="solid" if evidence.share > SOLID_ON_INK else trace.dash, filled=fill > 0, trace=trace,
+            length=evidence.length, doubt=1 - (evidence.share if solid else trace.support),
+        )  # fmt: skip
+        if trace.dash == "dotted" and (layer.neutral or not first):
+            # Leftovers of a grid and of text look like dots: a dotted trace in their ink must be long and whole.
+            sure = sure and evidence.stretch > LONG_STRETCH and trace.support > WHOLE_SUPPORT
+        if sure and not _is_ring(trace, grid) and _share_on_grid(trace, sheet, grid) < MOST_ON_GRID:
             return replace(item, doubt=0.0)
         if evidence.length > LEAST_LENGTH and (best is None or item.doubt < best.doubt):
             best = item
@@ -166,7 +213,6 @@ class _Evidence:
     share: float
     length: float
     stretch: float
-    dash: str
 
 
 def _evidence(trace, layer, sheet, fill):
@@ -178,13 +224,8 @@ def _evidence(trace, layer, sheet, fill):
     u, v = sheet.to_plane(x[:, 0], y[:, 0])
     away = np.hypot(u, v) > max(HUB_RHO, 2.5 * trace.width_px * sheet.reduction / sheet.outer_px)
     share = float(np.mean(on[known & away])) if (known & away).sum() > 10 else 0.0
-    runs = np.diff(np.flatnonzero(np.diff(np.concatenate([[0], (on | ~known).astype(int), [0]]))))[::2]
-    if share > SOLID_ON_INK or not runs.size:
-        dash = "solid"
-    else:
-        dash = "dotted" if np.median(runs) < 2.2 * max(trace.width_px * sheet.reduction, 1) else "dashed"
     return _Evidence(
-        share=share, length=float(on.sum()) / sheet.outer_px, dash=dash,
+        share=share, length=float(on.sum()) / sheet.outer_px,
         stretch=_stretch(on & away & clear, known & away, sheet.outer_px),
     )  # fmt: skip
 
@@ -230,6 +271,19 @@ def _is_ring(trace, grid):
     return np.mean(np.abs(rho - middle) < tolerance) > 0.9 and np.min(np.abs(grid.ring_rho - middle)) < tolerance
 
 
+def _share_on_grid(trace, sheet, grid):
+    """Share of the path that lies along drawn rings or spokes."""
+    x, y, _ = _course(trace, sheet)
+    u, v = sheet.to_plane(x[:, 0], y[:, 0])
+    radius = np.hypot(u, v) * sheet.outer_px
+    on = np.min(np.abs(radius[:, None] - grid.ring_rho * sheet.outer_px), axis=1) < ALONG_PX
+    if len(grid.spoke_deg):
+        turn = np.degrees(np.arctan2(u, -v))[:, None] - grid.spoke_deg
+        across = np.abs(radius[:, None] * np.sin(np.radians(turn)))
+        on |= np.min(np.where(np.cos(np.radians(turn)) > 0, across, np.inf), axis=1) < ALONG_PX
+    return float(on.mean())
+
+
 def _erase(layer, trace, sheet):
     """Hide the ink of a followed trace."""
     x, y, _ = _course(trace, sheet)
@@ -244,15 +298,21 @@ def _erase(layer, trace, sheet):
     return replace(layer, cover=cover, hidden=np.where(hit, 1, layer.hidden).astype(np.float32), body=body)
 
 
-def _without_doubles(found):
-    """Drop a trace that runs along a longer one: the blurred edge of one ink seen as another."""
+def _without_doubles(found, rank):
+    """Drop a trace that runs along one of an ink of better rank: the blurred edge of one ink seen as another.
+
+    rank : ink -> (neutral, -length): lightness alone shows a coloured line in grey too, so a colour goes first
+    """
     kept = []
-    for item in sorted(found, key=lambda f: -f.length):
-        for other in kept:
-            if other.ink != item.ink and len(other.trace.rho) == len(item.trace.rho):
-                gap = np.abs(other.trace.rho - item.trace.rho) * item.trace.sheet_outer_px
-                if np.nanmedian(gap) < max(2.0, item.trace.width_px):
-                    break
-        else:
+    for item in sorted(found, key=lambda f: (f.doubt > 0, rank[f.ink])):
+        if not any(other.ink != item.ink and _same_line(other.trace, item.trace) for other in kept):
             kept.append(item)
     return kept
+
+
+def _same_line(one, two):
+    if len(one.rho) != len(two.rho):
+        return False
+    drawn = ~(np.isin(one.state, ("floor", "missing")) & np.isin(two.state, ("floor", "missing")))
+    gap = np.abs(one.rho - two.rho)[drawn] * two.sheet_outer_px
+    return gap.size == 0 or np.nanmedian(gap) < max(2.0, two.width_px)
