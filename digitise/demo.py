@@ -15,6 +15,7 @@ import numpy as np
 __all__ = ["Curve", "Sample", "Score", "samples", "score_reading"]
 
 WITHOUT_VALUE = ("missing", "floor")
+LEAST_RHO, MOST_RHO = 0.02, 1.02  # radii, in outer radii, where a level of the known curve is on the chart
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -47,10 +48,10 @@ class Sample:
 
 @dataclass(frozen=True, kw_only=True)
 class Score:
-    """How a table compares with its known curve, over the rows with a value above the chart's centre.
+    """How a table compares with its known curve, where the curve is on the chart (above its centre).
 
     median_db, p95_db : of the absolute difference; inside : share of rows within their own 95 % error
-    rows : share of the drawn bearings that have a value
+    rows : share of these bearings that have a value
     """
 
     median_db: float
@@ -75,20 +76,19 @@ def samples():
 
 def score_reading(readings, curve):
     """The best `Score` among the traces of the curve's chart; None when none of them can be compared."""
-    scores = [
-        _score(trace.table, curve) for item in readings if item.number == curve.chart for trace in item.traces
-    ]
+    charts = [item for item in readings if item.number == curve.chart]
+    scores = [_score(trace.table, item.scale, curve) for item in charts for trace in item.traces]
     return min((score for score in scores if score), key=lambda score: score.median_db, default=None)
 
 
-def _score(table, curve):
-    row = np.searchsorted(table.angle_deg, curve.angle_deg)
-    row = np.minimum(row, len(table.angle_deg) - 1)
-    read = ~np.isin(table.state[row], WITHOUT_VALUE) & (np.abs(table.angle_deg[row] - curve.angle_deg) < 1e-6)
+def _score(table, scale, curve):
+    row = np.minimum(np.searchsorted(table.angle_deg, curve.angle_deg), len(table.angle_deg) - 1)
+    rho = scale.rho(curve.chart_db)
+    drawn = (rho > LEAST_RHO) & (rho <= MOST_RHO) & (np.abs(table.angle_deg[row] - curve.angle_deg) < 1e-6)
+    read = drawn & ~np.isin(table.state[row], WITHOUT_VALUE)
     if not read.any():
         return None
     off = np.abs(table.chart_db[row] - curve.chart_db)[read]
-    drawn = read | (table.state[row] != "floor")
     return Score(
         median_db=float(np.median(off)),
         p95_db=float(np.percentile(off, 95)),

@@ -59,16 +59,25 @@ def test_the_nearest_trace_of_the_right_chart_counts():
     assert score_reading((empty,), curve_of()) is None
 
 
-def test_missing_rows_lower_the_share_and_floor_rows_do_not():
-    """Every fourth row missing: three quarters have a value; rows at the floor are not asked for."""
+def test_rows_without_a_value_lower_the_share():
+    """Every fourth row missing: three quarters have a value; a floor row on the chart counts too."""
     state = np.where(np.arange(360) % 4 == 0, "missing", "seen").astype("U8")
-    assert score_reading((hand_reading(table=hand_table(state=state)),), curve_of()).rows == pytest.approx(
-        0.75
-    )
+    some = score_reading((hand_reading(table=hand_table(state=state)),), curve_of())
     state[1::4] = "floor"
-    assert score_reading((hand_reading(table=hand_table(state=state)),), curve_of()).rows == pytest.approx(
-        2 / 3
-    )
+    fewer = score_reading((hand_reading(table=hand_table(state=state)),), curve_of())
+
+    assert some.rows == pytest.approx(0.75, abs=0.01)
+    assert fewer.rows == pytest.approx(0.5, abs=0.01)
+
+
+def test_what_lies_below_the_centre_is_not_asked_for():
+    """A known curve that falls out of the chart, where no reading can follow: it is judged on the rest."""
+    curve = curve_of()
+    level = np.where(np.arange(360) < 90, -75.0, curve.chart_db)
+
+    score = score_reading((hand_reading(),), replace(curve, chart_db=level))
+
+    assert (score.median_db, score.p95_db, score.rows) == (0, 0, 1)
 
 
 def test_the_command_reads_samples_and_leaves_files(tmp_path, monkeypatch, capsys):
