@@ -24,6 +24,7 @@ SIGHTS = (
     ),
 )
 
+APART_WEIGHT = 0.55  # two traces side by side must differ more than a trace from what lies under it
 SIGHT_WEIGHTS = np.array([0.5, 0.25, 0.25])
 TO_CONES = np.array(
     [
@@ -90,11 +91,11 @@ def distinct_colours(present, paper, n):
     nearest = np.array(
         [_distance(lab, _oklab(present, sight)) for lab, sight in zip(seen, SIGHTS, strict=True)]
     )
-    picked = []
+    apart, picked = np.full_like(nearest, np.inf), []
     for _ in range(n):
-        best = int(np.argmax(SIGHT_WEIGHTS @ nearest))
+        best = int(np.argmax(np.minimum(SIGHT_WEIGHTS @ nearest, APART_WEIGHT * (SIGHT_WEIGHTS @ apart))))
         picked.append(tuple(int(round(value)) for value in candidates[best]))
-        nearest = np.minimum(nearest, [_distance(lab, lab[best : best + 1]) for lab in seen])
+        apart = np.minimum(apart, [_distance(lab, lab[best : best + 1]) for lab in seen])
     return picked
 
 

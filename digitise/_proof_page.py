@@ -132,7 +132,7 @@ class Page:
         last = None
         for rho in grid.ring_rho:
             if last is None or (last - rho) * grid.outer_px >= 0.085 * grid.outer_px:
-                put(rho, along, f"{float(scale.level(np.array([rho]))[0]):.3g}", 14)
+                put(rho, along, f"{round(float(scale.level(np.array([rho]))[0]), 1) + 0.0:g}", 14)
                 last = rho
 
     def _quiet_spoke(self):
@@ -305,7 +305,8 @@ def _row_words(node):
         return "no row has a value"
     rows = ", ".join(f"{count} {state}" for state, count in node["rows"].items() if count)
     error = f"median error {node['median_error95_db']:.2g} dB"
-    return f"peak {round(node['peak_db'], 2) + 0.0:.2f} dB at {node['peak_deg']:g}\u00b0;  {error};  rows: {rows}"
+    peak = f"peak {round(node['peak_db'], 2) + 0.0:.2f} dB at {node['peak_deg']:g}\u00b0"
+    return f"{peak};  {error};  rows: {rows}"
 
 
 def _figure_cells(node):
