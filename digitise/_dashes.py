@@ -101,6 +101,9 @@ def bridge_dashes(cover, pieces, level):
     if reduction > 1:
         small = cv2.resize(small, None, fx=1 / reduction, fy=1 / reduction, interpolation=cv2.INTER_AREA)
     small = (np.clip(small * 1.5, 0, 1) * 255).astype(np.uint8)
+    if width < THIN_PX:
+        # A line of a pixel or two steps off any straight element: give the element room.
+        small = cv2.dilate(small, np.ones((3, 3), np.uint8))
     keep = max(3, round(max(0.6 * length, min(1.7 * width, 0.85 * length)) / reduction))
     reach = max(3, round((1.25 * length + width) / reduction))
     out = np.zeros_like(small)

@@ -166,6 +166,8 @@ def _next_trace(layer, sheet, grid, frame, fill, pins, name, *, insist, first):
             ink=name, dash="solid" if evidence.share > SOLID_ON_INK else trace.dash, filled=fill > 0, trace=trace,
             length=evidence.length, doubt=1 - (evidence.share if solid else trace.support),
         )  # fmt: skip
+        if solid and not first:
+            sure = sure and evidence.stretch > LONG_STRETCH
         if trace.dash == "dotted" and (layer.neutral or not first):
             # Leftovers of a grid and of text look like dots: a dotted trace in their ink must be long and whole.
             sure = sure and evidence.stretch > LONG_STRETCH and trace.support > WHOLE_SUPPORT
