@@ -26,8 +26,8 @@ NARROW = 4.5  # median claim over median error; 2.9 for a normal error
 
 TURNED = pytest.mark.xfail(
     strict=True,
-    reason="on a chart with few spokes or none the straight sides of lobes are taken for spokes, which turns the "
-    "bearings by a degree and more with no reason to look (clean-001, fax-000, fax-001)",
+    reason="on a chart with few spokes or none the straight sides of lobes are taken for spokes, which "
+    "turns the bearings by a degree and more with no reason to look (clean-001, fax-000, fax-001)",
 )
 WIDE = pytest.mark.xfail(strict=True, reason="claims are about twice as wide as the errors ask for")
 
