@@ -47,7 +47,7 @@ class ChartView(ttk.Frame):
         self.overlay_on = True
         self._image = self._waiting = self._pan = None
         self._sight = Sight(self)
-        self._editor = LevelEditor(self)
+        self.editor = LevelEditor(self)
         self._fitted, self._coloured = None, None
         bind = self.canvas.bind
         bind("<Configure>", lambda event: self._resized(event.width, event.height))
@@ -192,7 +192,7 @@ class ChartView(ttk.Frame):
 
     def _press(self, event):
         self.canvas.focus_set()
-        self._editor.close()
+        self.editor.close()
         if not self.session.open:
             return
         self.by_key = False
@@ -233,10 +233,10 @@ class ChartView(ttk.Frame):
             draft, self.hand.placed = self.hand.placed, None
             self.window.grid_drawn(draft)
         if self.hand.asks is not None:
-            self._editor.ask(*self.hand.asks)
+            self.editor.ask(*self.hand.asks)
         elif self.hand.asks_mark is not None:
             mark = self.session.settings.marks[self.hand.asks_mark]
-            self._editor.ask(mark.x_px, mark.y_px, self.hand.asks_mark)
+            self.editor.ask(mark.x_px, mark.y_px, self.hand.asks_mark)
         self.window.changed()
 
     def _choose_chart(self, x, y):
@@ -321,11 +321,11 @@ class ChartView(ttk.Frame):
 
     def ask_level(self, x_px, y_px):
         """Ask for the level of the ring at a place."""
-        self._editor.ask(x_px, y_px)
+        self.editor.ask(x_px, y_px)
 
     def tool_changed(self):
         """Another tool was taken in hand."""
-        self._editor.close()
+        self.editor.close()
         self.canvas.configure(cursor=self._cursor())
         self.window.say(TOOLS[self.hand.tool][1] if self.session.open else "", "plain")
         self.refresh()

@@ -169,6 +169,14 @@ class Fields(ttk.Frame):
         """Give the keyboard to the first field."""
         self.fields["outer"].widget.focus_set()
 
+    def take_back(self, widget):
+        """Take back what is being typed in a field and not yet told; False when there is nothing."""
+        for field in self.fields.values():
+            if field.widget is widget and (field.changed or field.own_fault):
+                field.refresh(force=True)
+                return True
+        return False
+
     def leave(self):
         """Take in what is still being typed."""
         for field in self.fields.values():

@@ -23,6 +23,7 @@ TOOLS = {  # name -> (title, what it does)
     "grid": ("Grid", "drag the centre or a ring; Shift on the outermost stretches it"),
     "crop": ("Crop", "drag over the part to read"),
 }
+CLICK_SHARE = 0.25  # of the reach: a pointer that moves less between press and release has clicked
 LEAST_BOX_PX = 4.0
 LEAST_RADIUS_PX = 20.0
 
@@ -150,7 +151,7 @@ class Hand:
 
     def _dragged(self, start=None):
         start = start or self._from
-        return np.hypot(self._at[0] - start[0], self._at[1] - start[1]) > 0.6 * self._reach
+        return np.hypot(self._at[0] - start[0], self._at[1] - start[1]) > CLICK_SHARE * self._reach
 
     def _box_done(self, draft):
         if draft is None or draft.box is None or min(draft.box[2:]) < LEAST_BOX_PX:

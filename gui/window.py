@@ -18,6 +18,7 @@ from .place_menu import open_place_menu
 from .redraw_view import RedrawView, row_at
 from .samples import sample_pictures
 from .session import Session
+from .sweeper import Sweeper
 from .theme import COLOURS, Look
 from .welcome import Welcome
 from .words import said
@@ -45,10 +46,12 @@ class Window:
     def __init__(self, root, *, session=None, percent=None):
         self.root = root
         self.session = session or Session()
+        self.sweeper = Sweeper()
         self.worker = Worker()
         self.hand = Hand(self.session)
         self.actions = Actions(self)
         self.colours = COLOURS
+        self.closed = False
         self._polling = None
         self._asked = None
         self.look = Look(root, percent)
@@ -144,8 +147,10 @@ class Window:
         kind = widget.winfo_class() if isinstance(widget, tk.Misc) else ""
         if isinstance(widget, tk.Misc) and widget.winfo_toplevel() is not self.root:
             return None
-        if kind in TYPING and (item.plain or item.name in ("paste", "undo", "redo")):
+        if kind in TYPING and (item.plain or item.name == "paste"):
             return None
+        if item.name == "undo" and self.fields.take_back(widget):
+            return "break"
         getattr(self.actions, item.name)()
         return "break"
 
@@ -322,9 +327,15 @@ class Window:
     # --- the worker
 
     def _poll(self):
-        for answer in self.worker.answers():
-            self._take(answer)
-        self._polling = self.root.after(POLL_MS, self._poll)
+        try:
+            for answer in self.worker.answers():
+                self._take(answer)
+                if self.closed:
+                    return
+            self.sweeper.sweep()
+        finally:  # an error in one answer must not end the listening
+            if not self.closed:
+                self._polling = self.root.after(POLL_MS, self._poll)
 
     def _take(self, answer):
         if answer.name == "read":
@@ -346,7 +357,9 @@ class Window:
 
     def close(self):
         """End the worker and the window."""
+        self.closed = True
         if self._polling is not None:
             self.root.after_cancel(self._polling)
         self.worker.close()
         self.root.destroy()
+        self.sweeper.stop()

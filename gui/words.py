@@ -37,7 +37,8 @@ def said(error):
     if isinstance(error, DigitiseError):
         head = f"{_short(error.source)}: " if error.source else ""
         text = f"{error.cause}; {error.remedy}" if error.remedy else error.cause
-        return head + _plain(text)
+        text = OPTION.sub(lambda found: _title(found[1]), text)
+        return head + text if head else text[:1].upper() + text[1:]
     if isinstance(error, MemoryError):
         return "not enough memory; crop or scale the picture down first"
     cause = " ".join(str(error).split())[:120]
@@ -55,11 +56,6 @@ def fault_field(error):
     if error.stage == "scale" and "mark" in error.cause:
         return "mark"
     return STAGE_FIELDS.get(error.stage, "")
-
-
-def _plain(text):
-    text = OPTION.sub(lambda found: _title(found[1]), text)
-    return text[:1].upper() + text[1:]
 
 
 def _title(option):

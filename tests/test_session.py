@@ -484,8 +484,9 @@ def ring_label(grid, rho, level_db):
     """A ring's level as the reader of labels would give it, printed at the right."""
     x, y = grid.to_picture(rho, 80.0)
     return Label(
-        text=f"{level_db}", value=float(level_db), unit="dB", x_px=float(x), y_px=float(y), w_px=20.0, h_px=10.0,
-        rho=rho, plane_deg=80.0, confidence=0.99, role="ring", readings=((float(level_db), 0.99),), ring_rho=rho,
+        text=f"{level_db}", value=float(level_db), unit="dB", x_px=float(x), y_px=float(y), w_px=20.0,
+        h_px=10.0, rho=rho, plane_deg=80.0, confidence=0.99, role="ring", ring_rho=rho,
+        readings=((float(level_db), 0.99),),
     )  # fmt: skip
 
 
