@@ -21,6 +21,8 @@ __all__ = ["FoundTrace", "find_traces"]
 
 MOST_PER_INK = 4
 LEAST_LENGTH = 0.5  # outer radii: ink along a path that is worth returning in doubt
+FILL_BLEND = (0.08, 0.85)  # share of the fill's ink in a grid line seen through it
+BLEND_MISFIT = 22.0  # colour levels
 FAINT_COLOUR = 55.0  # colour levels from the paper; fainter inks are halos of JPEG and paper stains
 STRONG_COLOUR = 110.0  # colour levels from the paper; the colour noise of JPEG is paler
 LEAST_STRETCH = 0.45  # outer radii: ink along the longest well-inked stretch of a trace
@@ -90,6 +92,7 @@ def find_traces(sheet, grid, *, settings, kept=None):
         strong = not ink.neutral and strength > STRONG_COLOUR
         told = strong and ink.length_px > LEAST_LENGTH * sheet.outer_px
         found += traces_of(ink.rgb, ink.hex, told)
+    found = [item for item in found if not _seen_through(item, found, sheet.paper_rgb)]
     found = _without_doubles(found, {ink.hex: (ink.neutral, -ink.length_px) for ink in inks})
     if not found:
         raise NotReadError("no trace was found on the chart", stage="ink", remedy="name its colour with --ink '#rrggbb'")
@@ -298,6 +301,20 @@ def _erase(layer, trace, sheet):
     hit = mask > 0
     cover, body = (np.where(hit, 0, part).astype(np.float32) for part in (layer.cover, layer.body))
     return replace(layer, cover=cover, hidden=np.where(hit, 1, layer.hidden).astype(np.float32), body=body)
+
+
+def _seen_through(item, found, paper_rgb):
+    """Whether an ink is only the grid seen through a filled trace: a blend of that trace's ink and grey."""
+    own = _parse(item.ink) - paper_rgb
+    for other in found:
+        if other.filled and other.ink != item.ink:
+            fill = _parse(other.ink) - paper_rgb
+            parts = np.stack([fill, np.full(3, -1.0 if paper_rgb.mean() > 127 else 1.0)], axis=1)
+            share = np.linalg.lstsq(parts, own, rcond=None)[0]
+            blend = FILL_BLEND[0] < share[0] < FILL_BLEND[1] and share[1] > 0
+            if blend and np.linalg.norm(parts @ share - own) < BLEND_MISFIT:
+                return True
+    return False
 
 
 def _without_doubles(found, rank):
