@@ -152,7 +152,7 @@ def read_chart(picture, box, *, settings, kept=None, labels=None):
 def _all_traces(picture, grid, inks, covers, pins, *, kept):
     """The traces, by the settings that they hang on and no others."""
     sheet = kept.result(cut_sheet, picture, grid, large=True)
-    return find_traces(sheet, grid, settings=Settings(inks=inks, covers=covers, pins=pins))
+    return find_traces(sheet, grid, settings=Settings(inks=inks, covers=covers, pins=pins), kept=kept)
 
 
 def _needs_labels(settings):

@@ -25,7 +25,7 @@ PLACE_PT = (
     0.004  # standard uncertainty of a drawn point on paper: rounding to 0.01 over the root of 12, and more
 )
 NEAR_CENTRE_RHO = 0.25
-BRIDGE_SHARE = 0.05  # of a bridged jump's length, as the standard uncertainty of what lies between
+BRIDGE_SHARE = 0.1  # of a bridged jump's length, as the standard uncertainty of what lies between
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -147,6 +147,7 @@ def followed(trace, grid, *, covers=()):
         state=state,
         clear=state == "seen",
         support=1.0,
+        dash=trace.dash,
         width_px=trace.width_px,
         sheet_outer_px=outer_px,
     )
