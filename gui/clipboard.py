@@ -7,23 +7,30 @@ text everywhere.
 
 import io
 import os
+import shutil
 import tempfile
 import time
 import tkinter as tk
 
 from .file_names import paths_from_text
 
-__all__ = ["pasted_source"]
+__all__ = ["drop_pasted", "pasted_source"]
 
-KINDS = ("image/png", "image/jpeg", "image/bmp", "image/tiff")
+KINDS = {  # kind asked for -> how its bytes begin; some programs answer any question with what they have
+    "image/png": (b"\x89PNG\r\n\x1a\n",),
+    "image/jpeg": (b"\xff\xd8\xff",),
+    "image/bmp": (b"BM",),
+    "image/tiff": (b"II*\0", b"MM\0*"),
+}
+_folders = []
 
 
 def pasted_source(widget):
     """(path, whether it is a passing file of a copied picture), or None when the clipboard holds neither."""
     if widget.tk.call("tk", "windowingsystem") == "x11":
-        for kind in KINDS:
+        for kind, beginnings in KINDS.items():
             data = _bytes(widget, kind)
-            if data:
+            if data.startswith(beginnings):
                 return _passing_file(data, "." + kind.split("/")[1]), True
     else:
         grabbed = _grabbed()
@@ -37,6 +44,12 @@ def pasted_source(widget):
         if paths:
             return paths[0], False
     return None
+
+
+def drop_pasted():
+    """Delete the passing files of pasted pictures, when the window ends."""
+    while _folders:
+        shutil.rmtree(_folders.pop(), ignore_errors=True)
 
 
 def _bytes(widget, kind):
@@ -68,6 +81,7 @@ def _grabbed():
 def _passing_file(data, ending):
     """A file in a folder of its own, named by the time, that holds a pasted picture until it is saved."""
     folder = tempfile.mkdtemp(prefix="digitise-")
+    _folders.append(folder)
     path = os.path.join(folder, time.strftime("pasted-%Y%m%d-%H%M%S") + ending)
     with open(path, "wb") as file:
         file.write(data)

@@ -153,6 +153,8 @@ class Fields(ttk.Frame):
     def _show_fault(self, fault):
         place = fault_field(fault) if fault is not None else ""
         words = said(fault) if fault is not None else ""
+        if place == "outer" and not self.session.settings.marks:
+            words += "; or mark two rings with the tool Mark"
         if place in self.fields and not self.fields[place].own_fault:
             self.fields[place].say(words)
         for name, part in self.lists.items():

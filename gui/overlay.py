@@ -18,6 +18,7 @@ __all__ = ["Shape", "overlay_shapes", "pointed_shapes", "redraw_shapes"]
 
 MARKER_APART_PX = 12.0
 RING_POINTS = 181
+TURN_SHOWN_DEG = 14.0  # length of the arrow that shows where 0 degrees is and which way angles grow
 LABEL_APART_PX = 30.0  # between two ring levels along a spoke
 
 
@@ -25,7 +26,7 @@ LABEL_APART_PX = 30.0  # between two ring levels along a spoke
 class Shape:
     """One thing to draw.
 
-    kind : "line", "circle", "triangle", "cross", "diamond", "drop", "box", "tag", "words" or "plus"
+    kind : "line", "arrow", "circle", "triangle", "cross", "diamond", "drop", "box", "tag", "words" or "plus"
     style : what it stands for, which the view turns into colour, width and dash
     points : (n, 2) screen px; text : of a tag or beside a marker; k : which trace; held : it is what the keys
     move
@@ -138,14 +139,11 @@ def _grid(session, grid, place, stale, scale_px, *, zero=True):
             )
             last = point
     if zero:
-        at = reading.bearing.to_plane(np.zeros(1))
-        turn = "\u21bb" if reading.bearing.turn == "cw" else "\u21ba"
-        yield Shape(
-            kind="tag",
-            style="zero",
-            points=_on_grid(grid, place, np.array([1.0]), at),
-            text=f"0\u00b0 {turn}",
-        )
+        start = float(reading.bearing.to_plane(np.zeros(1))[0])
+        along = np.linspace(0, TURN_SHOWN_DEG if reading.bearing.turn == "cw" else -TURN_SHOWN_DEG, 9)
+        tick = _on_grid(grid, place, np.array([1.0, 1.1]), start)
+        yield Shape(kind="line", style="zero", points=tick)
+        yield Shape(kind="arrow", style="zero", points=_on_grid(grid, place, 1.05, start + along))
 
 
 def _quiet_angle(reading):

@@ -16,6 +16,7 @@ LINES = {
     "grid-stale-outer": (1.6, (3, 3)),
     "grid-stale-ring": (1.0, (3, 3)),
     "grid-stale-spoke": (1.0, (1, 6)),
+    "zero": (2.2, None),
     "trace-seen": (1.4, None),
     "trace-bridged": (1.2, (4, 3)),
     "trace-seen-stale": (1.4, (2, 3)),
@@ -28,11 +29,11 @@ MARKED_PX = 7.0
 class Pen:
     """Draws shapes in the colours of one reading.
 
-    canvas : tk.Canvas; look : theme.Look
+    canvas : tk.Canvas; look : theme.Look; stronger : factor of the traces' widths
     """
 
-    def __init__(self, canvas, look):
-        self.canvas, self.look = canvas, look
+    def __init__(self, canvas, look, *, stronger=1.0):
+        self.canvas, self.look, self.stronger = canvas, look, stronger
         self.grid_colour, self.trace_colours = "#2f6fb0", ["#b3005e"]
 
     def use(self, grid_colour, trace_colours):
@@ -59,6 +60,8 @@ class Pen:
         if len(points) < 2:
             return
         width, dash = LINES[shape.style]
+        if shape.style.startswith("trace"):
+            width *= self.stronger
         if shape.held:
             width, dash = width + 1.2, None
         colour = MARK if shape.held else self.colour(shape)
@@ -73,6 +76,12 @@ class Pen:
             capstyle="round" if not dash else "butt",
             joinstyle="round",
         )
+
+    def _arrow(self, shape):
+        unit, points = self.look.unit, np.round(shape.points, 2).ravel().tolist()
+        head = (9 * unit, 11 * unit, 4.5 * unit)
+        options = {"fill": self.colour(shape), "width": 2.2 * unit, "tags": self.tag, "smooth": True}
+        self.canvas.create_line(*points, arrow="last", arrowshape=head, **options)
 
     def _round(self, x, y, radius, **options):
         self.canvas.create_oval(x - radius, y - radius, x + radius, y + radius, tags=self.tag, **options)

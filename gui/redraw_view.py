@@ -56,7 +56,7 @@ class RedrawView(ttk.Frame):
             cell.grid(row=1, column=column, sticky="w", padx=(0, px(8)))
             self.readout.columnconfigure(column, weight=1)
             self.cells[name] = cell
-        self.pen = Pen(self.canvas, self.look)
+        self.pen = Pen(self.canvas, self.look, stronger=1.5)
         self._image = self._waiting = None
         self._buttons = ()
         self.canvas.bind("<Configure>", lambda _: self.refresh())

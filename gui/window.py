@@ -8,6 +8,7 @@ import numpy as np
 from . import flow
 from .actions import Actions
 from .chart_view import ChartView
+from .clipboard import drop_pasted
 from .drop import take_drops
 from .fields import Fields
 from .hand import TOOLS, Hand
@@ -28,7 +29,7 @@ __all__ = ["Window"]
 
 POLL_MS = 15
 ABOVE_PX = 64  # design px that a desktop's title bar and our menu take of the screen's height
-TYPING = ("Entry", "TEntry", "TCombobox", "Text", "Spinbox", "TSpinbox")
+TYPING = ("Entry", "TEntry", "TCombobox")
 MARKS = {
     "plain": ("", "TLabel"),
     "busy": ("\u22ef ", "TLabel"),
@@ -62,7 +63,7 @@ class Window:
         width, height = root.winfo_screenwidth(), root.winfo_screenheight()
         height -= self.look.px(ABOVE_PX)
         root.geometry(f"{min(self.look.px(1320), width)}x{min(self.look.px(860), height)}+0+0")
-        root.minsize(min(self.look.px(620), width), min(self.look.px(420), height))
+        root.minsize(min(self.look.px(620), width), min(self.look.px(340), height))
         self._poll()
 
     # --- building
@@ -137,9 +138,12 @@ class Window:
         self.root.configure(menu=menu)
 
     def _bind_keys(self):
+        aqua = self.root.tk.call("tk", "windowingsystem") == "aqua"
+        mac = "<Command-" if aqua else "<Control-"
         for item in COMMANDS:
             for key in item.keys:
-                self.root.bind_all(key, lambda event, item=item: self._key(event, item))
+                for sequence in {key, key.replace("<Control-", mac)}:
+                    self.root.bind_all(sequence, lambda event, item=item: self._key(event, item))
 
     def _key(self, event, item):
         """Do a command, unless text is being typed there that wants the key."""
@@ -363,3 +367,4 @@ class Window:
         self.worker.close()
         self.root.destroy()
         self.sweeper.stop()
+        drop_pasted()

@@ -55,8 +55,8 @@ def open_screen():
 def take_picture(root, name):
     """Keep a picture of the window and its menu for a person to look at; returns it."""
     root.update()
-    left, top = root.winfo_rootx(), root.winfo_rooty()
-    box = (left, min(top, root.winfo_y()), left + root.winfo_width(), top + root.winfo_height())
+    left, top = root.winfo_x(), root.winfo_y()  # a menu lies above the root's own top
+    box = (left, top, root.winfo_rootx() + root.winfo_width(), root.winfo_rooty() + root.winfo_height())
     picture = ImageGrab.grab(xdisplay=os.environ["DISPLAY"]).crop(box)
     PICTURES.mkdir(exist_ok=True)
     picture.save(PICTURES / f"{name}.png")
