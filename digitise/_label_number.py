@@ -105,7 +105,7 @@ def _gather(texts, whole):
         key = value, {"°": "deg", None: ""}.get(unit, unit)
         total[key] = min(1.0, total.get(key, 0.0) + odds)
     ranked = sorted(total.items(), key=lambda item: -item[1])
-    return [NumberOdds(value=value, unit=unit, odds=odds) for (value, unit), odds in ranked]
+    return [NumberOdds(value=value, unit=unit, odds=float(odds)) for (value, unit), odds in ranked]
 
 
 def plain_text(log_odds, characters):

@@ -14,6 +14,8 @@ from ._label_sheet import Line
 __all__ = ["Ray", "find_rays"]
 
 NUMBER_ODDS = 0.3  # a line proposes a ray only when it may well be a number
+LONE_RHO = 1.03  # a single number further out is no ring label
+FEW, UNREAD = 1.2, 0.2  # odds of numbers in all, below which unread marks propose rows too, at this weight
 INSIDE_RHO = 1.16
 MAX_RAYS = 3
 APART_DEG = 7.0
@@ -73,10 +75,14 @@ def find_rays(grid, seen, *, rim=()):
     grid : Grid in sheet px; seen : list of Seen; rim : indices of those that are bearings
     """
     inside = [k for k, item in enumerate(seen) if item.rho < INSIDE_RHO and k not in rim]
-    marks = [k for k in inside if seen[k].level_odds > NUMBER_ODDS]
+    odds = {k: seen[k].level_odds for k in inside}
+    if sum(share for k, share in odds.items() if share > NUMBER_ODDS and seen[k].rho < LONE_RHO) < FEW:
+        # letters that are turned do not read as yet
+        odds.update({k: max(odds[k], UNREAD) for k in inside if _may_be_label(grid, seen[k])})
+    marks = [k for k in inside if odds[k] > (NUMBER_ODDS if odds[k] != UNREAD else 0.0)]
     points = {k: _plane_point(grid, seen[k].line, 0) for k in inside}
     proposals = [(points[i], points[j]) for n, i in enumerate(marks) for j in marks[n + 1 :]]
-    proposals += [(points[k], np.zeros(2)) for k in marks]
+    proposals += [(points[k], np.zeros(2)) for k in marks if seen[k].rho < LONE_RHO]
     rows = [_gather(grid, seen, marks, points, a, b) for a, b in proposals]
     long = [k for k in inside if seen[k].line.length > LONG * seen[k].line.height]
     rows += [_from_long(grid, seen[k].line, k) for k in long]
@@ -88,6 +94,12 @@ def find_rays(grid, seen, *, rim=()):
         if len(best) == MAX_RAYS:
             break
     return tuple(best)
+
+
+def _may_be_label(grid, item):
+    """Whether an unread line is as compact as a label and stands at a ring."""
+    off = np.abs(grid.ring_rho - item.rho).min()
+    return item.line.length < 3.0 * item.line.height and item.rho < 1.0 and off < 0.2 * _gap(grid)
 
 
 def _plane_point(grid, line, anchor):
@@ -152,7 +164,7 @@ def _anchored(grid, seen, on, along, across, turn_deg):
     _, anchor, shift, side = best
     heights, lengths = [seen[k].line.height for k in on], [seen[k].line.length for k in on]
     tall = [h for h, w in zip(heights, lengths) if w > 1.5 * h] or heights
-    score = sum(seen[k].level_odds for k in on)
+    score = sum(max(seen[k].level_odds, UNREAD) for k in on)
     return Ray(
         along=along, across=across, side=side, shift=float(shift), anchor=anchor, turn_deg=turn_deg,
         height=float(np.median(tall)), length=float(max(*lengths, 2.0 * np.median(tall))),

@@ -20,16 +20,20 @@ __all__ = ["RingText", "read_ring_texts"]
 OFF_RING = 0.36  # of the gap to the next ring, that a label may lie off the ring it names
 OFF_ROW = 1.0  # heights
 LONE_ODDS, LONE_OFF = 0.6, 0.5  # of a label that stands at no known ring: odds at least, heights off its place at most
-CROP_PAD = 0.6  # heights of paper left at the end of a crop
-MINUS_PAD = 0.8  # and before its beginning
-CROP_TALL = 1.1  # height of a crop over a detected line's
+CROP_PAD = 0.4  # heights of paper left at the end of a crop
+MINUS_PAD = 0.65  # and before its beginning
+CROP_TALL = 0.95  # height of a crop over a detected line's
 MIN_RHO = 0.03
 MAX_RINGS = 24
 FEW_RINGS = 5
 READ_WELL = 0.75  # mean odds of the crops of a row that is the right way up
 LONG_OVER_TALL = 2.0  # length of a short label over its height
 SURE_SUPPORT, SURE_MARGIN = 3, 3.0  # of a vote that ends the search
-WEIGHTS = {"detected": 2.0, "filled": 1.0, "plain": 0.7, "strip": 1.5}  # of the looks at one label
+WEIGHTS = {"detected": 2.0, "filled": 1.2, "plain": 0.4, "strip": 1.5}  # of the looks at one label
+
+
+BLIND = 0.25  # weight of a look that sees no number at all
+STROKES, NOISE = (1.0, 7.0, 11.0), 0.6  # numbers that a passing line looks like, and what a crop's word on them counts
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -186,13 +190,17 @@ def _texts(grid, looks):
 
 
 def _pooled(looks):
-    """Mean odds of the numbers over the looks at one label, best first."""
-    whole = sum(WEIGHTS[kind] for kind in looks)
+    """Mean odds of the numbers over the looks at one label, best first.
+
+    A look that sees no number says little about which number it is, so it weighs by its own odds of seeing one.
+    """
+    weight = {kind: WEIGHTS[kind] * (BLIND + look.level_odds) for kind, look in looks.items()}
     total = {}
     for kind, look in looks.items():
         for number in look.levels[:6]:
             key = number.value, number.unit
-            total[key] = total.get(key, 0.0) + WEIGHTS[kind] * float(number.odds) / whole
+            noise = NOISE if abs(number.value) in STROKES and kind != "detected" else 1.0
+            total[key] = total.get(key, 0.0) + noise * weight[kind] * float(number.odds) / sum(weight.values())
     ranked = sorted(total.items(), key=lambda item: -item[1])
     return tuple(NumberOdds(value=value, unit=unit, odds=odds) for (value, unit), odds in ranked[:6] if odds > 0.01)
 

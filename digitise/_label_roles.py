@@ -19,15 +19,15 @@ CAPTION_WIDE = 1.1  # outer radii from the centre line
 def role_of_text(sheet, seen):
     """ "legend", "caption" or "other" for a `Seen` that is neither a ring nor a rim label."""
     line, grid = seen.line, sheet.grid
-    if sum(character.isalnum() for character in seen.text) < 2:
+    letters = sum(character.isalpha() and character.isascii() for character in seen.text)
+    if letters < 2 or sum(character.isalnum() for character in seen.text) < 3 or seen.number_odds > 0.3:
         return "other"
     if _has_sample(sheet.plain, line, -1) or _has_sample(sheet.plain, line, 1):
         return "legend"
     inside = seen.rho < 1.0
     level = abs(line.turn_deg) < 20
     off_x, off_y = abs(line.x - grid.centre_x) / grid.outer_px, abs(line.y - grid.centre_y) / grid.outer_px
-    letters = sum(character.isalpha() for character in seen.text)
-    if level and not inside and letters >= 2 and off_y > 0.9 and off_x < CAPTION_WIDE:
+    if level and not inside and off_y > 0.9 and off_x < CAPTION_WIDE:
         return "caption"
     return "other"
 

@@ -19,7 +19,7 @@ __all__ = ["scale_from_labels"]
 ENOUGH = 3  # labels that agree, with which habits of the trade are not needed
 SURE_MARGIN = 3.0  # log odds by which the next scale must be behind, with ENOUGH labels
 PAIR_MARGIN = 3.5  # and with two
-LEAST_MARGIN = 1.0  # below, the labels say too little to go on
+ALONE_MARGIN = 3.0  # and with one label, to go on at all
 ON_STEP_PX = 0.5  # a drawn ring this near to a whole step of the scale is taken to stand on it
 TOLD_ODDS = 1.0
 
@@ -33,7 +33,7 @@ def scale_from_labels(grid, *, settings, labels):
         laws = ("even",)
     vote = vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px, laws=laws) if readings else None
     n_read = sum(1 for item in readings if item.options[0][1] >= 0.5 and item.ring not in told)
-    if vote is None or not n_read or not vote.support or (len(vote.support) < 2 and vote.margin < LEAST_MARGIN):
+    if vote is None or not n_read or not vote.support or (len(vote.support) < 2 and vote.margin < ALONE_MARGIN):
         raise _refusal(settings, labels, n_read)
     anchors = _anchors(grid, vote, told)
     fit = fit_law(vote.law, anchors.rho, anchors.rho_u, anchors.level_db)

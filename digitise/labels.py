@@ -17,6 +17,7 @@ RIM_ODDS = 0.2
 RIM_LEAST = 3  # bearings that must agree before they are taken out of the search for ring labels
 RIM_TURN_DEG = 60.0  # bearings are printed level or nearly so
 KEPT_READINGS = 5
+TEXT_ODDS = 0.4  # mean odds of the characters of a line that is worth keeping
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -86,7 +87,9 @@ def read_labels(picture, box, grid):
     found = [_ring_label(sheet, text) for text in texts]
     used = {id(text.seen) for text in texts}
     for k, item in enumerate(seen):
-        if id(item) not in used and not any(_overlap(item.line, text.seen.line) for text in texts):
+        if not item.text.strip() or id(item) in used or any(_overlap(item.line, text.seen.line) for text in texts):
+            continue
+        if k in rim or item.text_odds > TEXT_ODDS:
             found.append(_rim_label(sheet, item, rim[k]) if k in rim else _text_label(sheet, item))
     return Labels(found=tuple(found), engine=engine_name(), ring_safe=safe)
 
