@@ -11,6 +11,7 @@ import cv2
 import numpy as np
 
 from ._ring_fit import homography_of, parameters_of
+from ._robust import median, scatter
 from ._unwrap import outer_radius, unwrap
 
 __all__ = ["RingProfile", "centre_profile", "drawn_arc", "ring_profile"]
@@ -64,6 +65,13 @@ class RingProfile:
         rho = self.rho[at] + np.clip(0.5 * (left - right) / bend, -0.5, 0.5) * step
         keep = ~_lobes(rho / step * STEP_PX, level[at])
         return rho[keep], score[at][keep], level[at][keep]
+
+    def wander(self, rho, score, blocks=slice(None)):
+        """Robust scatter of a line's place among the sectors that hold it, px."""
+        c, reach = round(rho / self.rho[1]), round(4.0 / STEP_PX)
+        part = np.sign(score) * self.answer[blocks][:, max(c - reach, 0) : c + reach + 1]
+        held = part.max(axis=1) > 0.5 * self.floor
+        return scatter(place := part[held].argmax(axis=1), median(place)) * STEP_PX if held.any() else np.inf
 
 
 def ring_profile(image, homography, *, reach=1.25, inner_px=5.0, spoke_deg=(), spoke_width_px=1.5):

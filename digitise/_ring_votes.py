@@ -13,7 +13,7 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-__all__ = ["Edges", "Hub", "centre_candidates", "find_edges", "fit_hub", "ring_shares", "spoke_count"]
+__all__ = ["Edges", "Hub", "centre_candidates", "find_edges", "fit_hub", "ring_shares"]
 
 WORK_PIXELS = 0.6e6  # size of the reduced picture that votes
 FLOOR_LEVELS = 1.0  # weakest gradient that votes, grey levels per px: a pale ring, smoothed, on clean paper
@@ -21,7 +21,8 @@ NOISE_FACTOR = 4.0  # and this many times the noise of the gradient
 MAX_VOTERS = 40_000
 N_DIRECTIONS = 90
 VOTE_CAP = 4.0  # one direction cannot count for more than this many standard deviations
-HUB_POINTS = 10_000  # edge pixels that refine a centre
+ROUNDS = 4  # at each tolerance
+HUB_POINTS = 8_000  # edge pixels that refine a centre
 RHO_BIN_PX = 2.0
 CENTRE_STEP_PX = 4.0  # spacing of the candidate centres on the reduced picture
 N_SECTORS = 72  # of a circle, each drawn or not
@@ -32,16 +33,17 @@ RING_MISS = 0.09  # radians between gradient and radius of a ring pixel
 class Edges:
     """Edge pixels of a (reduced) picture.
 
-    x, y : (n,) float32, px of the reduced picture; gx, gy : (n,) unit gradient; shape : of the reduced picture
-    zoom : reduced px per picture px
+    image : the reduced picture, float32 grey; zoom : reduced px per picture px
+    x, y : (n,) float32, px of the reduced picture; gx, gy : (n,) unit gradient
     """
+
+    image: np.ndarray
+    zoom: float
 
     x: np.ndarray
     y: np.ndarray
     gx: np.ndarray
     gy: np.ndarray
-    shape: tuple
-    zoom: float
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -60,10 +62,15 @@ class Hub:
         """M (dx, dy)."""
         return (1 + self.a) * dx + self.b * dy, self.b * dx + (1 - self.a) * dy
 
-    def radius(self, dx, dy):
-        """Elliptical radius of offsets from the centre, px."""
-        mx, my = self.metric(dx, dy)
-        return np.sqrt(np.maximum(dx * mx + dy * my, 0))
+    def homography(self, outer):
+        """Chart plane -> px of the reduced picture, for an outer (elliptical) radius; None when the stretch is wild."""
+        values, vectors = np.linalg.eigh([[1 + self.a, self.b], [self.b, 1 - self.a]])
+        if values.min() < 0.3:
+            return None
+        h = np.eye(3)
+        h[:2, :2] = outer * vectors @ np.diag(values**-0.5) @ vectors.T
+        h[:2, 2] = self.x, self.y
+        return h
 
 
 def find_edges(gray, *, work_pixels=WORK_PIXELS):
@@ -74,10 +81,11 @@ def find_edges(gray, *, work_pixels=WORK_PIXELS):
     if zoom < 1:
         small = cv2.resize(small, (max(8, round(w * zoom)), max(8, round(h * zoom))), interpolation=cv2.INTER_AREA)
     zoom = small.shape[1] / w
+    image = small
     small = cv2.GaussianBlur(small, (0, 0), 1.0)
     gx = cv2.Scharr(small, cv2.CV_32F, 1, 0, scale=1 / 32)
     gy = cv2.Scharr(small, cv2.CV_32F, 0, 1, scale=1 / 32)
-    size = cv2.magnitude(gx, gy)
+    size = np.sqrt(gx * gx + gy * gy)  # cv2.magnitude's last bit hangs on where in memory the array lies
     noise = float(np.median(size[::3, ::3])) / 1.177  # the median of a Rayleigh distribution is 1.177 sigma
     y, x = np.nonzero(size > max(FLOOR_LEVELS, NOISE_FACTOR * noise))
     if len(x) > MAX_VOTERS:
@@ -85,12 +93,12 @@ def find_edges(gray, *, work_pixels=WORK_PIXELS):
         y, x = y[keep], x[keep]
     norm = size[y, x]
     return Edges(
+        image=image,
+        zoom=zoom,
         x=x.astype(np.float32),
         y=y.astype(np.float32),
         gx=gx[y, x] / norm,
         gy=gy[y, x] / norm,
-        shape=small.shape,
-        zoom=zoom,
     )
 
 
@@ -98,7 +106,7 @@ def centre_candidates(edges, *, n_max=8):
     """Points that many gradients point through: list of (x, y, votes), strongest first, px of the reduced picture."""
     if len(edges.x) < 50:
         return []
-    h, w = edges.shape
+    h, w = edges.image.shape
     total = sum(_line_votes(edges, gx, gy) for gx, gy in ((edges.gx, edges.gy), (-edges.gy, edges.gx)))
     xs, ys = np.arange(total.shape[1]) * CENTRE_STEP_PX, np.arange(total.shape[0]) * CENTRE_STEP_PX
     total = cv2.GaussianBlur(total, (0, 0), 1.0)
@@ -113,7 +121,7 @@ def _line_votes(edges, dx, dy):
 
     Along the gradient they are the radii of rings; square to it they are the spokes themselves.
     """
-    h, w = edges.shape
+    h, w = edges.image.shape
     reach = float(np.hypot(h, w))
     n_rho = int(2 * reach / RHO_BIN_PX) + 8
     angle = np.arctan2(dy, dx) % np.pi
@@ -143,7 +151,11 @@ def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=(0.15, 0.10,
     """
     step = max(1, len(edges.x) // HUB_POINTS)
     at_x, at_y, at_gx, at_gy = edges.x[::step], edges.y[::step], edges.gx[::step], edges.gy[::step]
-    for tolerance in tolerances:
+    done = None
+    # Pixels of no ring add to the normal matrix but not to the pull, so one step covers only part of the way.
+    for tolerance in np.repeat(tolerances, ROUNDS):
+        if tolerance == done:
+            continue
         dx, dy = at_x - x, at_y - y
         r = np.hypot(dx, dy)
         near = r > 4
@@ -184,6 +196,8 @@ def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=(0.15, 0.10,
         normal[3, 3] += scale / 0.08**2
         step = np.linalg.solve(normal, -(jac * weight[:, None]).T @ error - np.array([0, 0, a, b]) * scale / 0.08**2)
         x, y, a, b = x + step[0], y + step[1], float(a + step[2]), float(b + step[3])
+        if np.abs(step[:2]).max() < 0.05 and np.abs(step[2:]).max() < 3e-4:
+            done = tolerance
         if not (abs(a) < 0.3 and abs(b) < 0.3 and np.isfinite(x) and np.isfinite(y)):
             return None
     return Hub(x=float(x), y=float(y), a=a, b=b)
@@ -210,19 +224,3 @@ def ring_shares(edges, hub):
     wrapped = np.concatenate([drawn, drawn[:, : N_SECTORS // 2]], axis=1).cumsum(axis=1)
     half = (wrapped[:, N_SECTORS // 2 :] - wrapped[:, : -(N_SECTORS // 2)]).max(axis=1) / (N_SECTORS / 2)
     return drawn.mean(axis=1), half
-
-
-def spoke_count(edges, hub, outer):
-    """Number of directions, out of 180, in which a line runs most of the way from the hub to the rim."""
-    dx, dy = edges.x - hub.x, edges.y - hub.y
-    r = np.hypot(dx, dy)
-    near = (r > 0.2 * outer) & (r < 0.97 * outer)
-    dx, dy, r = dx[near], dy[near], r[near]
-    square = np.abs(edges.gx[near] * dx + edges.gy[near] * dy) / r
-    ok = square < RING_MISS
-    direction = (np.degrees(np.arctan2(dy, dx)[ok]) % 360 / 2).astype(np.int64) % 180
-    part = np.minimum(((r[ok] / outer - 0.2) / 0.77 * 12).astype(np.int64), 11)
-    count = np.bincount(direction * 12 + part, minlength=180 * 12).reshape(180, 12)
-    drawn = (count + np.roll(count, 1, axis=0)) > 0
-    full = drawn.mean(axis=1) > 0.8
-    return int(np.sum(full & ~np.roll(full, 1)))

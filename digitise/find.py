@@ -10,7 +10,9 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
-from ._ring_votes import centre_candidates, find_edges, fit_hub, ring_shares, spoke_count
+from ._ring_profile import centre_profile, drawn_arc, ring_profile
+from ._ring_votes import centre_candidates, find_edges, fit_hub, ring_shares
+from ._spokes import find_spokes
 
 __all__ = ["Box", "box_around", "find_charts"]
 
@@ -18,9 +20,14 @@ MIN_OUTER_PX = 40.0  # smallest chart looked for, picture px
 MIN_OUTER_WORK_PX = 22.0  # and on the reduced picture
 RIM_SHARE = 0.68  # of the rim's circumference that must be drawn; rim labels alone reach 0.6
 HALF_SHARE = 0.9  # of the better half circle, for half charts
-RING_SHARE = 0.55
-MIN_EVIDENCE = 1.9  # rings (sum of shares) and spokes together
-SURE_EVIDENCE = 4.0
+MIN_LINE_SCORE = 0.45  # mean vote of the sectors for a ring
+MIN_RINGS = 0.7  # sum of the scores: one ring at least
+MIN_EVIDENCE = 1.45  # rings and spokes together
+SPOKE_WORTH, MAX_SPOKES = 0.1, 12  # a spoke counts as a tenth of a ring
+MIN_RING_WORK_PX = 6.0
+MAX_WANDER_PX = 1.0  # scatter of a ring's sectors, px of the reduced picture
+EDGE_PX = 7.0  # the edge of an area looks like a dark and a light line this near each other
+SURE_EVIDENCE = 2.5  # nothing else is looked for inside such a chart
 MARGIN = 1.30  # the region reaches this many outer radii from the centre, to hold the rim labels
 
 
@@ -88,44 +95,56 @@ def _judge(edges, x, y):
     if hub is None:
         return None
     for _ in range(2):
-        rims = _rings(edges, hub)
-        if not rims:
+        rim = _rim(edges, hub)
+        if rim is None:
             return None
-        outer, share, evidence = rims
-        refined = fit_hub(edges, hub.x, hub.y, reach_px=1.06 * outer, a=hub.a, b=hub.b, tolerances=(0.06, 0.04, 0.03))
-        if refined is None:
+        outer, share = rim
+        hub = fit_hub(edges, hub.x, hub.y, reach_px=1.06 * outer, a=hub.a, b=hub.b, tolerances=(0.06, 0.04, 0.03))
+        if hub is None:
             return None
-        hub = refined
-    evidence += min(spoke_count(edges, hub, outer), 8) * 0.5
-    if outer < max(MIN_OUTER_WORK_PX, MIN_OUTER_PX * edges.zoom) or evidence < MIN_EVIDENCE:
+    if outer < max(MIN_OUTER_WORK_PX, MIN_OUTER_PX * edges.zoom):
         return None
-    return {"x": hub.x, "y": hub.y, "outer": outer, "share": share, "evidence": evidence}
+    plane = hub.homography(outer)
+    return None if plane is None else _prove(edges, plane, outer, share)
 
 
-def _rings(edges, hub):
-    """The rim's radius and share, and the sum of shares of all rings; None without a rim."""
+def _rim(edges, hub):
+    """Radius and drawn share of the outermost circle about a hub; None when there is none."""
     share, half = ring_shares(edges, hub)
     usual = float(np.median(share[10:])) if len(share) > 20 else 0.0
     is_rim = (share > RIM_SHARE) | ((half > HALF_SHARE) & (share > 0.45))
-    is_rim &= share > usual + 0.3
-    rows = np.flatnonzero(is_rim)
+    rows = np.flatnonzero(is_rim & (share > usual + 0.3))
     if not len(rows):
         return None
-    last = rows[-1]
-    first = last
+    last = first = int(rows[-1])
     while first - 1 in rows[-40:] and share[first - 1] >= 0.9 * share[last]:
         first -= 1
-    outer = 0.5 * (first + last)
-    strong = (share[: last + 1] > max(RING_SHARE, usual + 0.25)) | is_rim[: last + 1]
-    runs = np.flatnonzero(strong & ~np.r_[False, strong[:-1]])
-    evidence = 0.0
-    for start in runs:
-        stop = start
-        while stop + 1 < len(strong) and strong[stop + 1]:
-            stop += 1
-        if start > 6:
-            evidence += float(share[start : stop + 1].max())
-    return outer, float(share[last]), evidence
+    return 0.5 * (first + last), float(share[last])
+
+
+def _prove(edges, plane, outer, share):
+    """Count the lines about a centre that are drawn all the way; None when they make no chart.
+
+    A circle alone is a logo, a pie or a plate; the edge of a disc is no line. A chart has more rings than one, or
+    an even comb of spokes.
+    """
+    plane = centre_profile(edges.image, plane, rounds=3)
+    profile = ring_profile(edges.image, plane, reach=1.06)
+    blocks, arc = drawn_arc(profile)
+    rho, score, level = profile.peaks(MIN_LINE_SCORE, blocks)
+    radius = rho * outer
+    rings = 0.0
+    for k in range(len(rho)):
+        beside = (np.abs(radius - radius[k]) < EDGE_PX) & (score * score[k] < 0)
+        is_edge = np.any(beside & (np.abs(level) > 0.5 * abs(level[k])))
+        if radius[k] > MIN_RING_WORK_PX and not is_edge and profile.wander(rho[k], score[k], blocks) < MAX_WANDER_PX:
+            rings += abs(score[k])
+    spokes = find_spokes(edges.image, plane, arc_deg=arc)
+    evidence = rings + min(len(spokes.deg), MAX_SPOKES) * SPOKE_WORTH
+    if rings < MIN_RINGS or evidence < MIN_EVIDENCE:
+        return None
+    x, y = plane[:2, 2]
+    return {"x": x, "y": y, "outer": outer, "share": share, "evidence": evidence}
 
 
 def _without_overlap(found):

@@ -168,12 +168,9 @@ def _first_plane(gray8, box):
     hub = fit_hub(edges, x, y, reach_px=1.08 * outer, tolerances=(0.08, 0.06, 0.04, 0.03))
     if hub is None:
         return None
-    values, vectors = np.linalg.eigh([[1 + hub.a, hub.b], [hub.b, 1 - hub.a]])
-    if values.min() <= 0.3:
+    h = hub.homography(outer)
+    if h is None:
         return None
-    h = np.eye(3)
-    h[:2, :2] = outer * vectors @ np.diag(values**-0.5) @ vectors.T
-    h[:2, 2] = hub.x, hub.y
     h = np.linalg.inv(to_small) @ h
     return h / h[2, 2]
 
