@@ -34,13 +34,13 @@ class Actions:
         if path:
             self.open_path(path)
 
-    def open_path(self, path, *, page=None, picture_path=None, pasted=False):
-        """Open a picture or a record by its name, unless work would be lost."""
-        self._unless_unsaved("Open", lambda: self._open(path, page, picture_path, pasted))
+    def open_path(self, path, **options):
+        """Open a picture or a record, unless work would be lost; options as `flow.open_source` has."""
+        self._unless_unsaved("Open", lambda: self._open(path, **options))
 
-    def _open(self, path, page=None, picture_path=None, pasted=False):
+    def _open(self, path, **options):
         self.window.say(f"Opening {os.path.basename(path)}\u2026", "busy")
-        self.window.worker.ask("open", jobs.open_source, path, page, picture_path, pasted)
+        self.window.worker.ask("open", jobs.open_source, path, options)
 
     def opened(self, answer):
         """Take up what was opened, or say why it was not."""

@@ -50,9 +50,10 @@ class Saved:
     left_out: tuple = ()
 
 
-def open_source(path, *, page=None, picture_path=None, pasted=False):
+def open_source(path, *, page=None, crop=None, picture_path=None, pasted=False):
     """Open a picture or a record and read it; a complete `State`.
 
+    page, crop : as in `Settings`; pasted : the file is a passing one
     picture_path : the picture that goes with a record, when it is not beside it
     Raises `PictureError`, or `NeedsPictureError` for a record whose picture is elsewhere.
     """
@@ -60,7 +61,7 @@ def open_source(path, *, page=None, picture_path=None, pasted=False):
     if path.lower().endswith(RECORD_END):
         return _open_record(path, picture_path)
     picture = open_picture(path, page=page)
-    template = Settings(page=page)
+    template = Settings(page=page, crop=crop)
     return complete(State(picture=picture, kept=Kept(), template=template, source=path, pasted=pasted))
 
 

@@ -9,9 +9,9 @@ __all__ = ["look_at_pages", "look_for_lines", "open_source", "save"]
 MOST_PAGES = 24  # thumbnails at a time
 
 
-def open_source(path, page, picture_path, pasted):
+def open_source(path, options):
     """A picture or record opened and read."""
-    return flow.open_source(path, page=page, picture_path=picture_path, pasted=pasted)
+    return flow.open_source(path, **options)
 
 
 def save(state, folder, then):
