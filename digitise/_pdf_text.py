@@ -7,6 +7,7 @@ layer of a scanned page that was read by a machine) is left out: it is somebody 
 
 import ctypes
 import math
+import re
 import unicodedata
 from dataclasses import dataclass, replace
 
@@ -22,11 +23,20 @@ SPACE_EM = 0.75  # and words closer than this one phrase
 OFF_LINE_EM = 0.25
 INVISIBLE = 3  # text rendering mode, ISO 32000-1, table 106
 MINUS = "\u2212"
+SIGNS = "+-" + MINUS
+TIGHT_EM = 0.08  # letters of one number stand closer, also where they are set one by one
+OTHER_SIZE = 1.15
+NEXT_PLACES = 3  # of the page's letters, spaces counted
+NUMBER_BEFORE = re.compile(rf"[{re.escape(SIGNS)}]?\d+([.,]\d+)?(dB[id]?|\u00b0|deg)?", re.IGNORECASE)
 
 
 @dataclass(frozen=True, kw_only=True)
 class _Letter:
-    """A letter: sign, box along (s) and across (t) its line, turn, size, and if a space is before it."""
+    """A letter.
+
+    sign; s0, s1, t0, t1 : its box along and across its line; base, turn : of the line; size : of the font
+    spaced : a space is set before it; item, place : its text object, and which letter of the page it is
+    """
 
     sign: str
     s0: float
@@ -37,6 +47,8 @@ class _Letter:
     turn: float
     size: float
     spaced: bool = False
+    item: int = 0
+    place: int = 0
 
 
 def collect_texts(page, view):
@@ -88,7 +100,9 @@ def _letters(raw, text_page, view):
         turn = round(math.degrees(turn), 2)
         corners = np.array([[a, b] for a in numbers[:2] for b in numbers[2:4]])
         size = raw.FPDFText_GetFontSize(text_page, k) * scale
-        yield replace(_letter(sign, corners, numbers[4:], turn, size, m, view), spaced=spaced)
+        yield replace(
+            _letter(sign, corners, numbers[4:], turn, size, m, view), spaced=spaced, item=key, place=k
+        )
         spaced = False
 
 
@@ -133,7 +147,7 @@ def _phrases(letters):
             group = []
             for letter in row:
                 gap = (letter.s0 - group[-1][0].s1) / max(letter.size, 1e-6) if group else 0.0
-                if group and (gap > SPACE_EM or (_is_spaced(letter, gap) and _both_numbers(group, letter))):
+                if group and (gap > SPACE_EM or _begins_another(group, letter, gap)):
                     groups.append(group)
                     group = []
                 group.append((letter, gap if group else 0.0))
@@ -146,9 +160,19 @@ def _is_spaced(letter, gap):
     return gap > JOIN_EM or (letter.spaced and gap > 0)
 
 
-def _both_numbers(group, letter):
-    """Two numbers with a space between are two labels, not one."""
-    return group[-1][0].sign.isdigit() and (letter.sign.isdigit() or letter.sign in "+-" + MINUS)
+def _begins_another(group, letter, gap):
+    """Whether a letter begins a label of its own: numbers printed close to each other are several labels."""
+    last = group[-1][0]
+    apart = letter.item != last.item
+    if apart and not 1 / OTHER_SIZE < letter.size / max(last.size, 1e-6) < OTHER_SIZE:
+        return True
+    if not (letter.sign.isdigit() or letter.sign in SIGNS):
+        return False
+    before = "".join(item.sign for item, _ in group)
+    if not NUMBER_BEFORE.fullmatch(before):
+        return False
+    follows = 0 < letter.place - last.place <= NEXT_PLACES
+    return _is_spaced(letter, gap) or not before[-1].isdigit() or (apart and (gap > TIGHT_EM or not follows))
 
 
 def _phrase(group):

@@ -6,10 +6,13 @@ import numpy as np
 
 from .frozen import lock_arrays
 
-__all__ = ["Crossings", "at_bearings"]
+__all__ = ["CROWDED_RHO", "Crossings", "at_bearings"]
 
 BRIDGE_RHO = 0.12  # the longest jump of the pen that is bridged, outer radii
+BRIDGE_STEPS = 8
+STRAY_COSINE = 0.5
 CENTRE_RHO = 0.003  # a line that comes so near has reached the chart's centre
+CROWDED_RHO = 0.03  # so near the centre lines of all bearings meet
 TOUCH_RHO = 3e-5  # a ray that passes an end so near meets it: a hundredth of a px at a radius of 400
 MAX_TOUCH_DEG = 0.01
 SHARPEST = 1.0  # radians between two chords of a curve: a sharper turn is a corner (a null's tip)
@@ -47,7 +50,7 @@ def at_bearings(rho, plane_deg, wanted_deg, *, vertex=None, bridged=True):
     rho, plane_deg : (m,) the line's points in order, NaN where the pen was up
     wanted_deg : (n,) plane angles of the rays
     vertex : (m,) bool, points that the drawing names itself, for the sag; None takes none
-    bridged : go straight over short jumps of the pen, also from the last point to the first
+    bridged : go smoothly over short jumps of the pen, also from the last point to the first
 
     Returns
     -------
@@ -69,8 +72,10 @@ def at_bearings(rho, plane_deg, wanted_deg, *, vertex=None, bridged=True):
     ok = reach >= -1e-9
     ray, segment, share, reach = ray[ok], segment[ok], share[ok], np.maximum(reach[ok], 0.0)
 
-    # Drawn before bridged, then outermost: the last of each ray in this order.
-    order = np.lexsort((reach, jump[segment] == 0, ray))
+    # Drawn before bridged, then outermost: the last of each ray in this order. But a line through the centre crosses
+    # every ray there, also those whose own stretch lies in a gap.
+    rank = 2 * (reach > CROWDED_RHO) + (jump[segment] == 0)
+    order = np.lexsort((reach, rank, ray))
     ray, segment, share, reach = ray[order], segment[order], share[order], reach[order]
     last = np.flatnonzero(np.diff(ray, append=-1) != 0)
     n = len(wanted)
@@ -95,18 +100,40 @@ def _segments(rho, plane_deg, vertex, bridged):
         empty = np.zeros((0, 2))
         return empty, empty, np.zeros(0), np.zeros(0)
     first, second = known[:-1], known[1:]
+    if bridged and len(known) > 2 and np.hypot(*(points[known[0]] - points[known[-1]])) > 1e-9:
+        first, second = np.append(first, known[-1]), np.append(second, known[0])  # round to the beginning
+    up = second != first + 1
     start, end = points[first], points[second]
-    up = second - first > 1
-    length = np.hypot(*(end - start).T)
-    jump = np.where(up, length, 0.0)
-    keep = ~up | (bridged & (length <= BRIDGE_RHO))
     sag = np.zeros(len(start)) if vertex is None else _sag(start, end, vertex[first] & vertex[second] & ~up)
-    start, end, jump, sag = start[keep], end[keep], jump[keep], sag[keep]
-    gap = float(np.hypot(*(points[known[0]] - points[known[-1]])))
-    if bridged and 1e-9 < gap <= BRIDGE_RHO and len(known) > 2:
-        start, end = np.vstack([start, points[known[-1]]]), np.vstack([end, points[known[0]]])
-        jump, sag = np.append(jump, gap), np.append(sag, 0.0)
-    return start, end, jump, sag
+    jumps = np.flatnonzero(up & (np.hypot(*(end - start).T) <= BRIDGE_RHO)) if bridged else []
+    starts, ends, sags, lengths = [start[~up]], [end[~up]], [sag[~up]], [np.zeros(int((~up).sum()))]
+    for k in jumps:
+        course = _bridge(points, first[k], second[k])
+        starts.append(course[:-1])
+        ends.append(course[1:])
+        sags.append(np.zeros(len(course) - 1))
+        lengths.append(np.full(len(course) - 1, np.hypot(*(end[k] - start[k]))))
+    return np.concatenate(starts), np.concatenate(ends), np.concatenate(lengths), np.concatenate(sags)
+
+
+def _bridge(points, a, b):
+    """(k, 2) a way from one point to another that leaves and arrives as the line does (cubic Hermite)."""
+    gap = points[b] - points[a]
+    length = np.hypot(*gap)
+    tangents = []
+    for here, beside, sign in ((a, a - 1, 1.0), (b, b + 1, -1.0)):
+        own = sign * (points[here] - points[beside]) if 0 <= beside < len(points) else gap
+        size = np.hypot(*own)
+        # A line that turns away from the gap ends there: its direction says nothing about the other side.
+        follows = np.isfinite(size) and size > 0 and own @ gap > STRAY_COSINE * size * length
+        tangents.append(own / size * length if follows else gap)
+    t = np.linspace(0, 1, BRIDGE_STEPS + 1)[:, None]
+    return (
+        (1 + 2 * t) * (1 - t) ** 2 * points[a]
+        + t * (1 - t) ** 2 * tangents[0]
+        + t * t * (3 - 2 * t) * points[b]
+        + t * t * (t - 1) * tangents[1]
+    )
 
 
 def _sag(start, end, chord):

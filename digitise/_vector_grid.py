@@ -120,7 +120,11 @@ def _drawn_grid(page, pieces, hub, shape):
     spread = np.full(8, u_px / np.sqrt(n))
     spread[6:] = 1e-9  # a drawn page has no perspective
     drawn = [_drawn(page, pieces, chosen, cover) for _, chosen, cover in rings]
-    ruled = [*(chosen for _, chosen, _ in rings), *(spoke.pieces for spoke in spokes), hub.grounds]
+    ruled = [
+        *(chosen for _, chosen, _ in rings),
+        *(spoke.pieces for spoke in spokes),
+        hub.grounds,
+    ]
     lines = {(int(pieces.path[k]), int(pieces.run[k])) for chosen in ruled for k in chosen}
     start, end = hub.arc_deg
     arc = (0.0, 360.0) if end - start > 359 else ((start - skew) % 360, (start - skew) % 360 + end - start)

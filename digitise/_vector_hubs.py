@@ -5,7 +5,7 @@ by arcs and by lines that cross in one point, and each is then judged by all lin
 it or point at it.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -17,9 +17,11 @@ MIN_OUTER_PT = 18.0
 MIN_SWEEP_DEG = 60.0
 MIN_RING_SHARE = 0.03  # of the outermost radius: smaller circles mark the centre
 BINS = 720  # of half a degree, for how much of a ring is drawn
-GAP_DEG = 7.0  # the longest gap of a dotted or dashed ring
+GAP_DEG, MAX_GAP_DEG = 7.0, 25.0  # the longest gap of a dotted or dashed ring
+GAP_RHO = 0.06  # the same as a length, outer radii
 RING_COVER = 0.9  # of the chart's arc, gaps of dashes closed
 MIN_ARC_DEG = 80.0
+LEAST_SWEEP_DEG = 20.0  # of line in one look, for a ring: dots of a fifth of the arc
 SPOKE_SHARE = 0.25  # of the outermost radius that a spoke's strokes must cover
 SPOKE_DEG = 0.2
 MAX_LINES = 160
@@ -76,25 +78,71 @@ def find_hubs(page, pieces):
     """The charts' `Hub`s on a `VectorPage` cut into `Pieces`, strongest first, clear of each other."""
     styles = [style_of(path) for path in page.paths]
     discs = np.array([path.stroke is None for path in page.paths])[pieces.path]
-    judged = [_judge(pieces, styles, discs, x, y) for x, y in _proposals(pieces)]
     kept = []
-    for hub in sorted((hub for hub in judged if hub is not None), key=lambda item: -item.evidence):
+    for x, y in _ranked(pieces, _proposals(pieces)):
+        if any(np.hypot(x - hub.x, y - hub.y) < 0.8 * hub.outer for hub in kept):
+            continue
+        hub = _judge(pieces, styles, discs, x, y)
+        if hub is None:
+            continue
+        hub = _judge(pieces, styles, discs, *_centred(pieces, styles, hub)) or hub
         if all(
             np.hypot(hub.x - other.x, hub.y - other.y) > 0.8 * max(other.outer, hub.outer) for other in kept
         ):
-            kept.append(_judge(pieces, styles, discs, *_centred(pieces, hub)) or hub)
-    return kept
+            kept.append(hub)
+    return sorted(kept, key=lambda hub: -hub.evidence)
 
 
-def _centred(pieces, hub):
-    """A hub's x, y by least squares over its spokes and rings of any radius (Gauss-Newton)."""
+def _ranked(pieces, points):
+    """Points in the order of how much line runs round them or at them."""
+    worth = []
+    for x, y in points:
+        view = _View(pieces, x, y)
+        worth.append(float(pieces.length[view.round].sum() + pieces.length[view.radial].sum()))
+    return [points[k] for k in np.argsort(-np.array(worth), kind="stable")]
+
+
+class _View:
+    """All lines as seen from a point: which run round it, at what radius, and which point at it."""
+
+    def __init__(self, pieces, x, y):
+        first, last = pieces.start, pieces.start + pieces.count - 1
+        self.arm = pieces.xy - (x, y)
+        self.rho = np.hypot(*self.arm.T)
+        high = pieces.each(np.maximum, np.where(pieces.vertex, self.rho, -np.inf))
+        low = pieces.each(np.minimum, np.where(pieces.vertex, self.rho, np.inf))
+        self.radius = 0.5 * (low + high)
+        steady = high - low <= 2 * pieces.slack(self.radius)
+        whole = pieces.each(np.minimum, self.rho) >= 0.98 * self.radius
+        fine = (self.radius > 0.5 * pieces.unit) & (pieces.longest <= LONGEST_CHORD * self.radius)
+        self.round = steady & whole & fine
+        along = self.arm[last] - self.arm[first]
+        span = np.maximum(np.hypot(*along.T), 1e-12)
+        miss = np.abs(self.arm[first, 0] * along[:, 1] - self.arm[first, 1] * along[:, 0]) / span
+        self.near, self.far = (ufunc(self.rho[first], self.rho[last]) for ufunc in (np.minimum, np.maximum))
+        # What a short dash's ends are rounded by turns it, so that it may miss the hub by more than a long line.
+        self.radial = pieces.straight & (miss <= 0.1 * pieces.unit * (1 + self.near / span))
+
+
+def _centred(pieces, styles, hub):
+    """A hub's x, y by least squares over its rings, of any radius, and spokes (Gauss-Newton), robustly weighted."""
     x, y = hub.x, hub.y
     rings = []
     for ring in hub.rings:
-        points = np.concatenate([pieces.points(k)[pieces.vertex_of(k)] for k in ring.pieces])
+        own = [k for k in ring.pieces if styles[pieces.path[k]] == ring.style]
+        points = np.concatenate([pieces.points(k)[pieces.vertex_of(k)] for k in own])
         rings.append(points[:: max(1, len(points) // POINTS_A_RING)])
-    for _ in range(3):
-        rows, misses = [], []
+    lines = [k for spoke in hub.spokes for k in spoke.pieces]
+    ends = np.array([pieces.points(k)[[0, -1]] for k in lines]).reshape(-1, 2, 2)
+    along = ends[:, 1] - ends[:, 0]
+    length = np.hypot(*along.T)
+    normal = np.stack([-along[:, 1], along[:, 0]], axis=1) / np.maximum(length, 1e-12)[:, None]
+    for _ in range(4):
+        rows, misses, trust = (
+            [normal],
+            [np.einsum("ij,ij->i", normal, ends[:, 0] - (x, y))],
+            [length / hub.outer],
+        )
         for points in rings:
             arm = points - (x, y)
             rho = np.hypot(*arm.T)
@@ -102,14 +150,12 @@ def _centred(pieces, hub):
             # With the ring's own radius solved for, what is left are deviations from its mean.
             rows.append(unit - unit.mean(axis=0))
             misses.append(rho - rho.mean())
-        for spoke in hub.spokes:
-            for k in spoke.pieces:
-                first, last = pieces.points(k)[[0, -1]]
-                along = (last - first) / np.hypot(*(last - first))
-                normal = np.array([-along[1], along[0]])
-                rows.append(normal[None])
-                misses.append(np.array([normal @ (first - (x, y))]))
-        step = np.linalg.lstsq(np.concatenate(rows), np.concatenate(misses), rcond=None)[0]
+            trust.append(np.ones(len(rho)))
+        rows, misses, trust = np.concatenate(rows), np.concatenate(misses), np.concatenate(trust)
+        # Lines of a trace that happen to point at the hub must not pull it.
+        scale = 2.0 * float(np.median(np.abs(misses))) + 1e-4 * pieces.unit
+        weight = trust * np.minimum(1.0, scale / np.maximum(np.abs(misses), 1e-12))
+        step = np.linalg.lstsq(rows * weight[:, None], misses * weight, rcond=None)[0]
         x, y = x + float(step[0]), y + float(step[1])
     return x, y
 
@@ -188,19 +234,14 @@ def _crossings(pieces):
 
 def _judge(pieces, styles, discs, x, y):
     """The `Hub` at a point; None when no chart is there."""
-    arm = pieces.xy - (x, y)
-    rho = np.hypot(*arm.T)
-    deg = np.degrees(np.arctan2(arm[:, 0], -arm[:, 1])) % 360
-    high = pieces.each(np.maximum, np.where(pieces.vertex, rho, -np.inf))
-    low = pieces.each(np.minimum, np.where(pieces.vertex, rho, np.inf))
-    radius = 0.5 * (low + high)
-    round_it = (high - low <= 2 * pieces.slack(radius)) & (pieces.each(np.minimum, rho) >= 0.98 * radius)
-    round_it &= (radius > 0.5 * pieces.unit) & (pieces.longest <= LONGEST_CHORD * radius)
-    rings = _rings(pieces, styles, np.flatnonzero(round_it & ~discs), radius, deg, False)
+    view = _View(pieces, x, y)
+    deg = np.degrees(np.arctan2(view.arm[:, 0], -view.arm[:, 1])) % 360
+    rings = _rings(pieces, styles, np.flatnonzero(view.round & ~discs), view.radius, deg, disc=False)
+    most = max((ring.radius for ring in rings), default=0.0)
     rings += [
-        disc
-        for disc in _rings(pieces, styles, np.flatnonzero(round_it & discs), radius, deg, True)
-        if not rings or disc.radius > 1.015 * max(ring.radius for ring in rings)
+        ring
+        for ring in _rings(pieces, styles, np.flatnonzero(view.round & discs), view.radius, deg, disc=True)
+        if ring.radius > 1.015 * most
     ]
     rings.sort(key=lambda ring: -ring.radius)
     arc, rings = _chart_arc(rings)
@@ -208,39 +249,65 @@ def _judge(pieces, styles, discs, x, y):
         return None
     outer = rings[0].radius
     rings = tuple(ring for ring in rings if ring.radius >= MIN_RING_SHARE * outer)
-    spokes = _spokes(pieces, styles, arm, rho, outer)
+    spokes = _spokes(pieces, styles, view, outer)
     if len(rings) < 2 and len(spokes) < 3:
         return None
     evidence = sum(float(ring.cover.mean()) for ring in rings) + 0.25 * min(len(spokes), 12)
-    grounds = np.flatnonzero(round_it & discs & (radius > 0.985 * outer))
+    grounds = np.flatnonzero(view.round & discs & (view.radius > 0.985 * outer))
     return Hub(x=x, y=y, rings=rings, spokes=spokes, arc_deg=arc, evidence=evidence, grounds=grounds)
 
 
-def _rings(pieces, styles, chosen, radius, deg, disc):
-    """Group round lines by radius."""
-    chosen = chosen[np.argsort(radius[chosen], kind="stable")]
-    if not len(chosen):
-        return []
-    apart = np.diff(radius[chosen]) > 2 * pieces.slack(radius[chosen[1:]])
+def _rings(pieces, styles, chosen, radius, deg, *, disc):
+    """Round lines grouped by what they are drawn with and by radius, those of one radius then together."""
+    groups = {}
+    for k in chosen:
+        groups.setdefault(styles[pieces.path[k]], []).append(k)
+    parts = []  # radius, swept degrees, cover, pieces, style
+    for style, members in groups.items():
+        members = np.array(members)
+        swept = np.degrees(pieces.length[members] / radius[members])
+        for own in _crowded(radius[members], swept, pieces):
+            cover = np.zeros(BINS, bool)
+            for k in members[own]:
+                _cover(cover, deg[pieces.start[k] : pieces.start[k] + pieces.count[k]])
+            at = _weighted_median(radius[members[own]], swept[own])
+            parts.append((at, float(swept[own].sum()), cover, members[own], style))
     rings = []
-    for group in np.split(chosen, np.flatnonzero(apart) + 1):
-        cover = np.zeros(BINS, bool)
-        weight = {}
-        for k in group:
-            at = slice(pieces.start[k], pieces.start[k] + pieces.count[k])
-            swept = _cover(cover, deg[at])
-            style = styles[pieces.path[k]]
-            weight[style] = weight.get(style, 0.0) + swept
-        rings.append(
-            Ring(
-                radius=float(np.median(radius[group])),
-                cover=cover,
-                pieces=group,
-                disc=disc,
-                style=max(weight, key=weight.get),
-            )
-        )
+    for at, _, cover, own, style in sorted(parts, key=lambda part: -part[1]):
+        for k, ring in enumerate(rings):
+            if abs(ring.radius - at) <= 2 * pieces.slack(at):
+                rings[k] = replace(ring, cover=ring.cover | cover, pieces=np.concatenate([ring.pieces, own]))
+                break
+        else:
+            rings.append(Ring(radius=at, cover=cover, pieces=own, style=style, disc=disc))
     return rings
+
+
+def _crowded(radius, swept, pieces):
+    """Index arrays of the narrow ranges of radius that hold most line, until too little is left for a ring.
+
+    A window of fixed width, since dashes of a trace that nears a ring would join any chain of neighbours.
+    """
+    order = np.argsort(radius, kind="stable")
+    left = np.ones(len(order), bool)
+    found = []
+    while left.any():
+        live = order[left]
+        at, total = radius[live], np.concatenate([[0.0], np.cumsum(swept[live])])
+        stop = np.searchsorted(at, at + 2 * pieces.slack(at), side="right")
+        held = total[stop] - total[:-1]
+        best = int(held.argmax())
+        if held[best] < LEAST_SWEEP_DEG:
+            break
+        found.append(live[best : stop[best]])
+        left[np.flatnonzero(left)[best : stop[best]]] = False
+    return found
+
+
+def _weighted_median(values, weights):
+    order = np.argsort(values)
+    share = np.cumsum(weights[order])
+    return float(values[order[np.searchsorted(share, 0.5 * share[-1])]])
 
 
 def _cover(cover, deg):
@@ -252,9 +319,10 @@ def _cover(cover, deg):
     return high - low
 
 
-def _closed(cover):
-    """Cover with the gaps between dashes closed."""
-    reach = int(GAP_DEG / 2 * BINS / 360)
+def _closed(cover, radius_share):
+    """Cover with the gaps between dashes closed, at a radius as a share of the outermost."""
+    gap_deg = np.clip(np.degrees(GAP_RHO / radius_share), GAP_DEG, MAX_GAP_DEG)
+    reach = int(gap_deg / 2 * BINS / 360)
     wide = np.zeros_like(cover)
     for shift in range(-reach, reach + 1):
         wide |= np.roll(cover, shift)
@@ -266,7 +334,7 @@ def _closed(cover):
 
 def _chart_arc(rings):
     """((start, end) degrees, rings that are drawn all along it); end - start is 360 for a whole chart."""
-    covers = [_closed(ring.cover) for ring in rings]
+    covers = [_closed(ring.cover, ring.radius / rings[0].radius) for ring in rings]
     for first, cover in enumerate(covers):
         if cover.mean() > 0.97:
             arc, part = (0.0, 360.0), np.ones(BINS, bool)
@@ -297,19 +365,11 @@ def _longest(cover):
     return (int(edges[2 * k]) + offset) % BINS, int(lengths[k])
 
 
-def _spokes(pieces, styles, arm, rho, outer):
+def _spokes(pieces, styles, view, outer):
     """Group straight lines that point at the hub by their bearing."""
     first, last = pieces.start, pieces.start + pieces.count - 1
-    along = arm[last] - arm[first]
-    span = np.maximum(np.hypot(*along.T), 1e-12)
-    miss = np.abs(arm[first, 0] * along[:, 1] - arm[first, 1] * along[:, 0]) / span
-    # What a short dash's ends are rounded by turns it, so that it may miss the hub by more than a long line.
-    near = np.minimum(rho[first], rho[last])
-    radial = (
-        pieces.straight
-        & (miss <= 0.1 * pieces.unit * (1 + near / span))
-        & (np.maximum(rho[first], rho[last]) <= 1.3 * outer)
-    )
+    arm, rho, near = view.arm, view.rho, view.near
+    radial = view.radial & (view.far <= 1.3 * outer)
     ends = []  # (bearing, from, to, piece)
     for k in np.flatnonzero(radial):
         a, b = arm[first[k]], arm[last[k]]
@@ -327,18 +387,23 @@ def _spokes(pieces, styles, arm, rho, outer):
         groups[0] = np.concatenate([groups.pop(), groups[0]])
     spokes = []
     for group in groups:
-        inside = [(max(ends[g][1], 0.0), min(ends[g][2], outer), ends[g][3], ends[g][0]) for g in group]
-        length = np.array([max(b - a, 0.0) for a, b, _, _ in inside])
-        if length.sum() < SPOKE_SHARE * outer:
+        length = np.array([max(min(ends[g][2], outer) - ends[g][1], 0.0) for g in group])
+        own = [styles[pieces.path[ends[g][3]]] for g in group]
+        by_style = {}
+        for style, part in zip(own, length, strict=True):
+            by_style[style] = by_style.get(style, 0.0) + part
+        style = max(by_style, key=by_style.get)
+        if by_style[style] < SPOKE_SHARE * outer:
             continue
-        turn = np.array([(item[3] - inside[0][3] + 180) % 360 - 180 for item in inside])
+        chosen = [g for g, name in zip(group, own, strict=True) if name == style]
+        turn = np.array([(ends[g][0] - ends[chosen[0]][0] + 180) % 360 - 180 for g in chosen])
         # A line's direction from the hub is as sure as its far end is far.
-        weight = np.maximum(np.array([item[1] for item in inside]), 1e-9) ** 2
+        weight = np.array([max(ends[g][2], 1e-9) ** 2 for g in chosen])
         spokes.append(
             Spoke(
-                deg=float((inside[0][3] + np.average(turn, weights=weight)) % 360),
-                pieces=np.unique([item[2] for item in inside]),
-                style=styles[pieces.path[inside[int(length.argmax())][2]]],
+                deg=float((ends[chosen[0]][0] + np.average(turn, weights=weight)) % 360),
+                pieces=np.unique([ends[g][3] for g in chosen]),
+                style=style,
             )
         )
     return tuple(sorted(spokes, key=lambda spoke: spoke.deg))

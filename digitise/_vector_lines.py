@@ -157,19 +157,30 @@ def _cut(points, vertex, clip, slack):
 
 def _joined(group, outer_px):
     """Chains of one look with what continues what made one."""
-    if len(group) == 1:
-        return group
-    open_ones = [chain for chain in group if not chain.closed]
-    done = [chain for chain in group if chain.closed]
-    touching = _link(open_ones[:MAX_STROKES], TOUCH_PX)
-    short = [
-        chain for chain in touching if _length(chain.points) < DASH_LENGTH * outer_px and not chain.closed
-    ]
-    rest = [chain for chain in touching if not any(chain is item for item in short)]
-    if len(short) >= 3 and not group[0].look.filled:
+    long = DASH_LENGTH * outer_px
+    # A short closed line may be a dash that goes into the centre and out again.
+    done = [chain for chain in group if chain.closed and _length(chain.points) >= long]
+    rest = [chain for chain in group if not chain.closed or _length(chain.points) < long]
+    lines = _link(_in_order(rest, TOUCH_PX), TOUCH_PX)
+    done += [chain for chain in lines if _length(chain.points) >= long]
+    dashes = [chain for chain in lines if _length(chain.points) < long]
+    if len(dashes) >= 3 and not group[0].look.filled:
         gap = max(DASH_GAP * outer_px, 6 * group[0].look.width)
-        short = _link(short, gap)
-    return done + rest + short
+        joined = _in_order(dashes, gap)
+        # A program draws dashes one after the other; where it does not, the nearest ends are tried.
+        dashes = joined if len(joined) <= len(dashes) / 3 else _link(dashes, gap)
+    return done + dashes
+
+
+def _in_order(chains, reach):
+    """Chains joined where each begins within reach of the end of the one drawn before it."""
+    joined, run = [], []
+    for chain in chains:
+        if run and np.hypot(*(chain.points[0] - run[-1].points[-1])) > reach:
+            joined.append(run)
+            run = []
+        run.append(chain)
+    return [_merged(run, [False] * len(run)) if len(run) > 1 else run[0] for run in [*joined, run] if run]
 
 
 def _length(points):
@@ -179,7 +190,7 @@ def _length(points):
 def _link(chains, reach):
     """Greedy: from each line on to the nearest free end within reach, then back from its start."""
     n = len(chains)
-    if n < 2:
+    if not 2 <= n <= MAX_STROKES:
         return chains
     ends = np.array([[chain.points[0], chain.points[-1]] for chain in chains])  # (n, 2, 2)
     free = np.ones(n, bool)

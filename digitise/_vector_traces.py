@@ -4,7 +4,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from ._vector_course import at_bearings
+from ._vector_course import CROWDED_RHO, at_bearings
 from ._vector_evidence import course_of, find_paper, is_trace, shown_ink, shows
 from ._vector_lines import find_chains
 
@@ -66,7 +66,8 @@ def _whole(found, chains, grid):
 def _apart(a, b, grid):
     """Whether two chains lie at different bearings."""
     wanted = np.arange(0, 360, SAME_DEG / 4)
-    seen = [np.isfinite(_reach(chain, grid, wanted)) for chain in (a, b)]
+    # At the centre a line meets every bearing.
+    seen = [np.nan_to_num(_reach(chain, grid, wanted)) > CROWDED_RHO for chain in (a, b)]
     least = min(seen[0].sum(), seen[1].sum())
     return (seen[0] & seen[1]).sum() <= SHARED_TURN * least
 
