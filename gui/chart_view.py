@@ -174,8 +174,8 @@ class ChartView(ttk.Frame):
         if chart is not None:
             box = chart.box
             rgb = rgb[box.y : box.y + box.h, box.x : box.x + box.w]
-        self.pen.use(*overlay_colours(rgb, n))
-        self.window.colours_changed(self.pen.grid_colour, self.pen.trace_colours)
+        self.pen.use(overlay_colours(rgb, n))
+        self.window.colours_changed(self.pen.palette)
 
     def _draw_sight(self):
         self._sight.draw(loupe=self.hand.tool != "look" or self.session.held is not None)

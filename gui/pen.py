@@ -2,6 +2,7 @@
 
 import numpy as np
 
+from .colours import Palette
 from .theme import COLOURS
 
 __all__ = ["Pen"]
@@ -34,11 +35,13 @@ class Pen:
 
     def __init__(self, canvas, look, *, stronger=1.0):
         self.canvas, self.look, self.stronger = canvas, look, stronger
-        self.grid_colour, self.trace_colours = "#2f6fb0", ["#b3005e"]
+        self.palette = Palette(
+            grid="#2f6fb0", traces=("#b3005e",), ink=COLOURS["text"], paper=COLOURS["paper"]
+        )
 
-    def use(self, grid_colour, trace_colours):
-        """Take the colours that stand off a picture."""
-        self.grid_colour, self.trace_colours = grid_colour, list(trace_colours) or self.trace_colours
+    def use(self, palette):
+        """Take the colours that stand off a picture, a `colours.Palette`."""
+        self.palette = palette
 
     def draw(self, shapes, *, tag="overlay"):
         """Draw anew everything under a tag."""
@@ -52,8 +55,8 @@ class Pen:
         if shape.style.endswith("-stale") or shape.style.startswith("grid-stale"):
             return STALE
         if shape.style.startswith("trace") or shape.style == "pointed":
-            return self.trace_colours[shape.k % len(self.trace_colours)]
-        return {"mark": MARK, "pin": PIN, "reason": COLOURS["alert"]}.get(shape.style, self.grid_colour)
+            return self.palette.traces[shape.k % len(self.palette.traces)]
+        return {"mark": MARK, "pin": PIN, "reason": COLOURS["alert"]}.get(shape.style, self.palette.grid)
 
     def _line(self, shape):
         points = shape.points[np.isfinite(shape.points).all(axis=1)]
@@ -174,20 +177,20 @@ class Pen:
 
     def _tag(self, shape):
         x, y = shape.points[0]
-        self._label(x, y, shape.text, self.grid_colour, "center")
+        self._label(x, y, shape.text, self.palette.grid, "center", ground=self.palette.paper)
 
     def _words(self, shape):
         x, y = shape.points[0]
         self.canvas.create_text(
-            x, y, text=shape.text, fill=COLOURS["text"], font=self.look.fonts["text"], tags=self.tag
+            x, y, text=shape.text, fill=self.palette.ink, font=self.look.fonts["text"], tags=self.tag
         )
 
-    def _label(self, x, y, words, colour, anchor, *, filled=False):
+    def _label(self, x, y, words, colour, anchor, *, filled=False, ground=COLOURS["paper"]):
         """Words on a small ground of their own, readable on any picture."""
         font, unit = self.look.fonts["small"], self.look.unit
         width, height = font.measure(words) + 6 * unit, font.metrics("linespace")
         left = x - width / 2 if anchor == "center" else x
-        ground, ink = (colour, COLOURS["paper"]) if filled else (COLOURS["paper"], colour)
+        ground, ink = (colour, COLOURS["paper"]) if filled else (ground, colour)
         self.canvas.create_rectangle(
             left, y - height / 2, left + width, y + height / 2, fill=ground, outline="", tags=self.tag
         )

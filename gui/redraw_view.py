@@ -2,12 +2,14 @@
 
 import itertools
 import tkinter as tk
+from dataclasses import replace
 from tkinter import ttk
 
 import numpy as np
 
 from digitise._proof_panel import BAND_STRENGTH, Mask, arc_angles
 
+from .colours import rgb_of
 from .frame import to_ppm
 from .overlay import pointed_shapes, redraw_shapes
 from .pen import Pen
@@ -16,7 +18,7 @@ from .theme import COLOURS
 __all__ = ["RedrawView"]
 
 RIM_RHO = 1.27  # room for the bearings round the rim
-PAPER = (255, 255, 255)
+BAND_RHO = 1.12  # an error may reach far beyond the rim: so far it is drawn
 
 
 class RedrawView(ttk.Frame):
@@ -71,9 +73,12 @@ class RedrawView(ttk.Frame):
         if self._waiting is None:
             self._waiting = self.after_idle(self._draw)
 
-    def colours(self, trace_colours):
-        """Use the colours of the overlay."""
-        self.pen.use(COLOURS["dim"], trace_colours)
+    def use(self, palette):
+        """Use the colours of the overlay on the chart's own paper; the grid in the words' colour, softer."""
+        soft = 0.62 * np.array(rgb_of(palette.ink)) + 0.38 * np.array(rgb_of(palette.paper))
+        grid = "#{:02x}{:02x}{:02x}".format(*np.round(soft).astype(int))
+        self.pen.use(replace(palette, grid=grid))
+        self.canvas.configure(background=palette.paper)
         self.refresh()
 
     def _draw(self):
@@ -92,7 +97,7 @@ class RedrawView(ttk.Frame):
             )
             width, height = self.canvas.winfo_width(), self.canvas.winfo_height()
             self.canvas.create_text(
-                width / 2, height / 2, text=words, fill=COLOURS["dim"], font=self.look.fonts["text"]
+                width / 2, height / 2, text=words, fill=self.pen.palette.ink, font=self.look.fonts["text"]
             )
             self.show_row()
             return
@@ -124,13 +129,12 @@ class RedrawView(ttk.Frame):
         pixels = np.empty(
             (max(self.canvas.winfo_height(), 2), max(self.canvas.winfo_width(), 2), 3), np.uint8
         )
-        pixels[:] = PAPER
+        pixels[:] = rgb_of(self.pen.palette.paper)
         if self.session.chart.fresh:
-            for trace, colour in zip(reading.traces, itertools.cycle(self.pen.trace_colours), strict=False):
+            for trace, colour in zip(reading.traces, itertools.cycle(self.pen.palette.traces), strict=False):
                 mask = Mask(pixels)
                 mask.quads(self._band(reading, trace))
-                rgb = tuple(int(colour[k : k + 2], 16) for k in (1, 3, 5))
-                mask.lay(rgb, BAND_STRENGTH)
+                mask.lay(rgb_of(colour), BAND_STRENGTH)
         self._image = tk.PhotoImage(master=self.canvas, data=to_ppm(pixels), format="PPM")
         self.canvas.delete("all")
         self.canvas.create_image(0, 0, image=self._image, anchor="nw", tags="band")
@@ -141,7 +145,7 @@ class RedrawView(ttk.Frame):
         plane = reading.bearing.to_plane(table.angle_deg)
         known = np.isfinite(table.chart_db)
         level, error = np.where(known, table.chart_db, 0.0), np.where(known, table.error95_db, 0.0)
-        ends = [np.clip(reading.scale.rho(level + side * error), 0, 1.5) for side in (-1, 1)]
+        ends = [np.clip(reading.scale.rho(level + side * error), 0, BAND_RHO) for side in (-1, 1)]
         low, high = (np.stack(self._panel(rho, plane), axis=1) for rho in ends)
         following = (np.arange(len(known)) + 1) % len(known)
         corners = np.stack([low, low[following], high[following], high], axis=1)
@@ -151,13 +155,13 @@ class RedrawView(ttk.Frame):
         """A button a trace, with its colour, number, ink and dash."""
         reading = self.session.reading
         traces = reading.traces if reading is not None else ()
-        key = tuple((trace.ink, trace.dash) for trace in traces) + tuple(self.pen.trace_colours)
+        key = tuple((trace.ink, trace.dash) for trace in traces) + self.pen.palette.traces
         if key != self._buttons:
             self._buttons = key
             for child in self.traces.winfo_children():
                 child.destroy()
             for k, trace in enumerate(traces):
-                colour = self.pen.trace_colours[k % len(self.pen.trace_colours)]
+                colour = self.pen.palette.traces[k % len(self.pen.palette.traces)]
                 tk.Frame(self.traces, background=colour, width=self.look.px(14), height=self.look.px(4)).pack(
                     side="left", padx=(self.look.px(4), 0)
                 )

@@ -249,9 +249,9 @@ class Window:
         self.panes.show("chart")
         self.chart_view.tool_changed()
 
-    def colours_changed(self, grid_colour, trace_colours):
+    def colours_changed(self, palette):
         """The overlay chose colours for this picture."""
-        self.redraw.colours(trace_colours)
+        self.redraw.use(palette)
 
     def grid_drawn(self, draft):
         """A grid was drawn or dragged."""

@@ -51,6 +51,12 @@ LEVEL_DB = 0.05  # of a clean painted chart, with room
 MEGAPIXEL_S = 0.3  # one change of a told value, on one core
 
 
+@pytest.fixture(autouse=True)
+def no_labels(monkeypatch):
+    """No labels are read: what is told is what counts here, and reading text takes a second."""
+    monkeypatch.setattr("digitise._ocr.get_engine", lambda: None)
+
+
 @pytest.fixture(scope="module")
 def picture_path(tmp_path_factory):
     """A painted chart with two traces, as a file."""
