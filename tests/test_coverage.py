@@ -24,12 +24,11 @@ LEAST_ROWS = 150
 SURE_SHARE = 0.7  # of the traces are read without a reason to look
 NARROW = 4.5  # median claim over median error; 2.9 for a normal error
 
-TURNED = pytest.mark.xfail(
-    strict=True,
-    reason="on a chart with few spokes or none the straight sides of lobes are taken for spokes, which "
-    "turns the bearings by a degree and more with no reason to look (clean-001, fax-000, fax-001)",
+FLAGGED = pytest.mark.xfail(
+    strict=False, reason="about a third of the spoiled charts are read with a reason to look, more than should be"
 )
-WIDE = pytest.mark.xfail(strict=True, reason="claims are about twice as wide as the errors ask for")
+CROSSED = pytest.mark.xfail(strict=False, reason="where traces cross, the claim beside the crossing is too narrow")
+WIDE = pytest.mark.xfail(strict=False, reason="claims are about twice as wide as the errors ask for")
 
 
 @pytest.fixture(scope="module")
@@ -62,7 +61,7 @@ def test_nothing_is_wrong_in_silence(results):
     assert [f"{item.name} trace {item.trace}" for item in results if item.silently_wrong] == []
 
 
-@TURNED
+@FLAGGED
 def test_error95_holds_over_all_rows(results):
     """93 to 97 % of all rows of sure readings, which most readings are."""
     rows = sure(results)
@@ -72,7 +71,7 @@ def test_error95_holds_over_all_rows(results):
 
 
 @pytest.mark.parametrize(
-    "kind", [kind if kind in ("flat", "bridged") else pytest.param(kind, marks=TURNED) for kind in CLASSES]
+    "kind", [pytest.param(kind, marks=CROSSED) if kind == "crossing" else kind for kind in CLASSES]
 )
 def test_error95_holds_by_class(results, kind):
     """Also on flanks, by nulls, at crossings and where rows are bridged."""
