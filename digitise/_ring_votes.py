@@ -13,6 +13,8 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 
+from ._unwrap import shrink
+
 __all__ = ["Edges", "Hub", "centre_candidates", "find_edges", "fit_hub", "ring_shares"]
 
 WORK_PIXELS = 0.6e6  # size of the reduced picture that votes
@@ -33,12 +35,12 @@ RING_MISS = 0.09  # radians between gradient and radius of a ring pixel
 class Edges:
     """Edge pixels of a (reduced) picture.
 
-    image : the reduced picture, float32 grey; zoom : reduced px per picture px
+    image : the reduced picture, float32 grey; to_full : (3, 3) its px -> the picture's
     x, y : (n,) float32, px of the reduced picture; gx, gy : (n,) unit gradient
     """
 
     image: np.ndarray
-    zoom: float
+    to_full: np.ndarray
 
     x: np.ndarray
     y: np.ndarray
@@ -74,15 +76,9 @@ class Hub:
 
 
 def find_edges(gray, *, work_pixels=WORK_PIXELS):
-    """Reduce a grey picture (h, w) uint8 and list its edge pixels as `Edges`."""
-    h, w = gray.shape
-    zoom = min(1.0, float(np.sqrt(work_pixels / (h * w))))
-    small = gray.astype(np.float32)
-    if zoom < 1:
-        small = cv2.resize(small, (max(8, round(w * zoom)), max(8, round(h * zoom))), interpolation=cv2.INTER_AREA)
-    zoom = small.shape[1] / w
-    image = small
-    small = cv2.GaussianBlur(small, (0, 0), 1.0)
+    """Reduce a grey picture (h, w) and list its edge pixels as `Edges`."""
+    image, to_full = shrink(gray, float(np.sqrt(work_pixels / gray.size)))
+    small = cv2.GaussianBlur(image, (0, 0), 1.0)
     gx = cv2.Scharr(small, cv2.CV_32F, 1, 0, scale=1 / 32)
     gy = cv2.Scharr(small, cv2.CV_32F, 0, 1, scale=1 / 32)
     size = np.sqrt(gx * gx + gy * gy)  # cv2.magnitude's last bit hangs on where in memory the array lies
@@ -94,7 +90,7 @@ def find_edges(gray, *, work_pixels=WORK_PIXELS):
     norm = size[y, x]
     return Edges(
         image=image,
-        zoom=zoom,
+        to_full=to_full,
         x=x.astype(np.float32),
         y=y.astype(np.float32),
         gx=gx[y, x] / norm,

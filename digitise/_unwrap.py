@@ -3,7 +3,7 @@
 import cv2
 import numpy as np
 
-__all__ = ["apply_homography", "outer_radius", "sample", "unwrap"]
+__all__ = ["apply_homography", "outer_radius", "sample", "shrink", "unwrap"]
 
 ROW_LENGTH = 4096  # scattered points are handed to cv2.remap as rows of this length (its limit is 32767)
 
@@ -19,6 +19,20 @@ def outer_radius(homography):
     """Mean radius in px of the circle rho = 1, for a homography whose last entry is 1."""
     h = homography
     return float(np.sqrt(abs(np.linalg.det(h[:2, :2] - np.outer(h[:2, 2], h[2, :2])))))
+
+
+def shrink(image, zoom):
+    """A float32 picture reduced by zoom (1 or more leaves it), and the (3, 3) map of its px back to the picture's.
+
+    Rounding to whole px makes the zoom a little different in x and y, which a large picture would show as an offset.
+    """
+    image = np.asarray(image, np.float32)
+    h, w = image.shape
+    size = (w, h) if zoom >= 1 else (max(8, round(w * zoom)), max(8, round(h * zoom)))
+    if size != (w, h):
+        image = cv2.resize(image, size, interpolation=cv2.INTER_AREA)
+    fx, fy = w / size[0], h / size[1]
+    return image, np.array([[fx, 0, 0.5 * fx - 0.5], [0, fy, 0.5 * fy - 0.5], [0, 0, 1]])
 
 
 def sample(image, x, y):

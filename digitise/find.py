@@ -68,8 +68,8 @@ def find_charts(picture, *, crop=None):
             found.append(chart)
     boxes = []
     for chart in _without_overlap(found):
-        x, y = (chart["x"] + 0.5) / edges.zoom - 0.5 + left, (chart["y"] + 0.5) / edges.zoom - 0.5 + top
-        outer = chart["outer"] / edges.zoom
+        x, y, _ = edges.to_full @ [chart["x"], chart["y"], 1] + [left, top, 0]
+        outer = chart["outer"] * edges.to_full[0, 0]
         boxes.append(_box(x, y, outer, chart["share"], (left, top, width, height)))
     return tuple(_reading_order(boxes))
 
@@ -102,7 +102,7 @@ def _judge(edges, x, y):
         hub = fit_hub(edges, hub.x, hub.y, reach_px=1.06 * outer, a=hub.a, b=hub.b, tolerances=(0.06, 0.04, 0.03))
         if hub is None:
             return None
-    if outer < max(MIN_OUTER_WORK_PX, MIN_OUTER_PX * edges.zoom):
+    if outer < max(MIN_OUTER_WORK_PX, MIN_OUTER_PX / edges.to_full[0, 0]):
         return None
     plane = hub.homography(outer)
     return None if plane is None else _prove(edges, plane, outer, share)

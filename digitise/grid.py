@@ -16,7 +16,7 @@ from ._ring_points import ring_points, spoke_points
 from ._ring_profile import centre_profile, drawn_arc, ring_profile
 from ._ring_votes import find_edges, fit_hub
 from ._spokes import find_spokes
-from ._unwrap import outer_radius
+from ._unwrap import shrink
 from .exceptions import NotReadError
 from .frozen import lock_arrays
 from .review import reason
@@ -108,14 +108,12 @@ class Grid:
 def find_grid(picture, box):
     """Fit the grid of the chart at `box` on a `Picture`; raises `NotReadError` when there is none."""
     rgb = np.ascontiguousarray(picture.rgb[box.y : box.y + box.h, box.x : box.x + box.w])
-    gray8 = cv2.cvtColor(rgb, cv2.COLOR_RGB2GRAY)
-    work, zoom = _reduce(gray8, box.outer_px)
-    to_full = _zoom_matrix(1 / zoom)
-    plane = _first_plane(gray8, box)
+    full = cv2.cvtColor(rgb, cv2.COLOR_RGB2GRAY).astype(np.float32)
+    work, to_full = shrink(full, WORK_OUTER_PX / box.outer_px)
+    plane = _first_plane(work, np.linalg.inv(to_full), box)
     if plane is None:
         raise _no_grid(picture)
-    plane = np.linalg.inv(to_full) @ plane
-    plane = centre_profile(work, plane / plane[2, 2])
+    plane = centre_profile(work, plane)
     _, arc = drawn_arc(ring_profile(work, plane))
     spokes = find_spokes(work, plane, arc_deg=arc)
     plane = _align(work, plane, spokes, arc)
@@ -125,7 +123,6 @@ def find_grid(picture, box):
     profile = ring_profile(work, plane, spoke_deg=spokes.drawn_deg)
     blocks, arc = drawn_arc(profile)
     rho, score, _ = profile.peaks(WEAK, blocks)
-    full = gray8.astype(np.float32)
     plane = to_full @ plane
     plane /= plane[2, 2]
     rings = choose_rings(full, plane, rho, score, arc_deg=arc, avoid_deg=spokes.drawn_deg)
@@ -143,36 +140,15 @@ def _no_grid(picture):
     )
 
 
-def _zoom_matrix(factor):
-    """Scaling of pixel coordinates whose centres are at integers."""
-    return np.array([[factor, 0, 0.5 * factor - 0.5], [0, factor, 0.5 * factor - 0.5], [0, 0, 1]])
-
-
-def _reduce(gray8, outer_px):
-    """Float picture with the outer radius brought down to WORK_OUTER_PX, and the zoom."""
-    zoom = min(1.0, WORK_OUTER_PX / outer_px)
-    full = gray8.astype(np.float32)
-    if zoom == 1.0:
-        return full, 1.0
-    h, w = gray8.shape
-    size = max(8, round(w * zoom)), max(8, round(h * zoom))
-    return cv2.resize(full, size, interpolation=cv2.INTER_AREA), size[0] / w
-
-
-def _first_plane(gray8, box):
-    """First homography (crop px) from edge gradients about the box's centre."""
-    edges = find_edges(gray8, work_pixels=HUB_PIXELS)
-    to_small = _zoom_matrix(edges.zoom)
-    x, y, _ = to_small @ [box.centre_x - box.x, box.centre_y - box.y, 1]
-    outer = box.outer_px * edges.zoom
+def _first_plane(work, to_work, box):
+    """First homography (px of the reduced picture) from edge gradients about the box's centre; None without."""
+    edges = find_edges(work, work_pixels=HUB_PIXELS)
+    to_small = np.linalg.inv(edges.to_full)
+    x, y, _ = to_small @ to_work @ [box.centre_x - box.x, box.centre_y - box.y, 1]
+    outer = box.outer_px * to_work[0, 0] * to_small[0, 0]
     hub = fit_hub(edges, x, y, reach_px=1.08 * outer, tolerances=(0.08, 0.06, 0.04, 0.03))
-    if hub is None:
-        return None
-    h = hub.homography(outer)
-    if h is None:
-        return None
-    h = np.linalg.inv(to_small) @ h
-    return h / h[2, 2]
+    h = None if hub is None else hub.homography(outer)
+    return None if h is None else edges.to_full @ h
 
 
 def _align(work, plane, spokes, arc):
