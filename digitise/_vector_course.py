@@ -72,8 +72,8 @@ def at_bearings(rho, plane_deg, wanted_deg, *, vertex=None, bridged=True):
     ok = reach >= -1e-9
     ray, segment, share, reach = ray[ok], segment[ok], share[ok], np.maximum(reach[ok], 0.0)
 
-    # Drawn before bridged, then outermost: the last of each ray in this order. But a line through the centre crosses
-    # every ray there, also those whose own stretch lies in a gap.
+    # Drawn before bridged, then outermost: the last of each ray in this order. But a line through the centre
+    # crosses every ray there, also those whose own stretch lies in a gap.
     rank = 2 * (reach > CROWDED_RHO) + (jump[segment] == 0)
     order = np.lexsort((reach, rank, ray))
     ray, segment, share, reach = ray[order], segment[order], share[order], reach[order]

@@ -15,7 +15,7 @@ __all__ = ["Course", "course_of", "find_paper", "is_trace", "shown_ink", "shows"
 
 LEAST_POINTS = 12
 LEAST_LENGTH = 0.5  # outer radii
-LEAST_TURN_DEG = 30.0
+LEAST_TURN_DEG, LEAST_BEAM_DEG = 30.0, 5.0  # the second for a beam out of the centre and back
 ONE_WAY = 0.6  # net turn over turn to and fro
 INSIDE = 0.8  # share of the length inside the rim
 RIM_RHO = 1.1
@@ -71,7 +71,7 @@ def is_trace(chain, course):
         return False
     inside = float(np.mean(course.rho[known] <= RIM_RHO))
     touches = bool(course.rho[known].min() < CENTRE_RHO)
-    if inside < INSIDE or course.turn_deg < (LEAST_TURN_DEG / 3 if touches else LEAST_TURN_DEG):
+    if inside < INSIDE or course.turn_deg < (LEAST_BEAM_DEG if touches else LEAST_TURN_DEG):
         return False
     if abs(course.net_deg) < ONE_WAY * course.turn_deg:
         return False

@@ -120,12 +120,12 @@ class _View:
         span = np.maximum(np.hypot(*along.T), 1e-12)
         miss = np.abs(self.arm[first, 0] * along[:, 1] - self.arm[first, 1] * along[:, 0]) / span
         self.near, self.far = (ufunc(self.rho[first], self.rho[last]) for ufunc in (np.minimum, np.maximum))
-        # What a short dash's ends are rounded by turns it, so that it may miss the hub by more than a long line.
+        # What a short dash's ends are rounded by turns it: it may miss the hub by more than a long line.
         self.radial = pieces.straight & (miss <= 0.1 * pieces.unit * (1 + self.near / span))
 
 
 def _centred(pieces, styles, hub):
-    """A hub's x, y by least squares over its rings, of any radius, and spokes (Gauss-Newton), robustly weighted."""
+    """A hub's x, y by robust least squares over its rings, of any radius, and spokes (Gauss-Newton)."""
     x, y = hub.x, hub.y
     rings = []
     for ring in hub.rings:

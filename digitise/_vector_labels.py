@@ -23,6 +23,7 @@ PLAIN_ODDS = 0.8  # of a number without a degree sign to be a bearing
 RIM_SPREAD = 0.15  # rho
 LEAST_RIM = 3
 RING_TO_RHO = 1.12
+FAR_LEVEL_DB = 150.0  # of any level that a chart prints
 ROW_RHO = 0.1  # how far a ring label may stand off its row
 FAR_SHIFT, SAFE_SHIFT = 0.6, 0.34  # of the gap between rings, that labels may stand off theirs
 RIVAL_SHARE = 0.05  # of that gap, by which another naming of the rings must fit worse
@@ -31,11 +32,16 @@ LEGEND_EM = 4.0  # between a sample line and its name
 SAMPLE_EM = 12.0  # the longest sample line
 
 
-def place_texts(page, grid, names):
-    """The `Labels` of a chart by its `Grid` on a `VectorPage` in picture px; `names` are its legend's."""
+def place_texts(page, grid, names, *, others=()):
+    """The `Labels` of a chart by its `Grid` on a `VectorPage` in picture px; `names` are its legend's.
+
+    others : grids of the page's other charts; text that stands nearer to one of them is left to it
+    """
     near = []
     for text in page.texts:
         rho, plane = (float(v) for v in grid.to_plane(text.x, text.y))
+        if rho > 1 and any(other.to_plane(text.x, text.y)[0] < rho for other in others):
+            continue
         value, unit = _number(text.text)
         if rho <= (FAR_RHO if value is None else FAR_NUMBER_RHO):
             if (
@@ -154,7 +160,7 @@ def _rim(near):
         return set()
     best = [chosen[k] for k in vote.members]
     marked = [k for k in best if near[k][4] == "deg"]
-    middle = float(np.median([near[k][1] for k in marked or best]))
+    middle = float(np.median([near[k][1] for k in (marked if len(marked) >= LEAST_RIM else best)]))
     rim = {}
     for k in best:
         rho, plane, value = near[k][1:4]
@@ -167,7 +173,7 @@ def _rim(near):
 
 def _may_be_level(item):
     _, rho, _, value, unit = item
-    return value is not None and unit != "deg" and rho <= RING_TO_RHO
+    return value is not None and abs(value) <= FAR_LEVEL_DB and unit != "deg" and rho <= RING_TO_RHO
 
 
 def _row(chosen, near, grid):

@@ -13,18 +13,30 @@ from ._vector_course import at_bearings
 from ._vector_grid import find_drawn_grids
 from ._vector_labels import legend_names, place_texts
 from ._vector_traces import MANY_BREAKS, drawn_traces
+from .exceptions import NotReadError
 from .find import Box, _reading_order, box_around
 from .follow import SAMPLES_PER_DEG, Trace
 from .frozen import lock_arrays
 from .grid import Grid
 from .labels import Labels
+from .traces import FoundTrace
 
-__all__ = ["VectorChart", "VectorTrace", "find_vector_charts", "followed", "page_labels", "trace_at"]
+__all__ = [
+    "VectorChart",
+    "VectorTrace",
+    "find_vector_charts",
+    "followed",
+    "page_labels",
+    "trace_at",
+    "vector_traces",
+    "way_read",
+]
 
 PLACE_PT = (
     0.004  # standard uncertainty of a drawn point on paper: rounding to 0.01 over the root of 12, and more
 )
 NEAR_CENTRE_RHO = 0.25
+SAME_INK = 48  # levels of a colour's channel that a told ink may be off
 BRIDGE_SHARE = 0.1  # of a bridged jump's length, as the standard uncertainty of what lies between
 
 
@@ -79,8 +91,10 @@ def find_vector_charts(picture, *, box=None):
     if page is None or not page.whole or not page.paths or not np.isfinite(page.px_per_pt):
         return ()
     charts = []
-    for drawn in find_drawn_grids(page):
+    found = find_drawn_grids(page)
+    for drawn in found:
         grid = drawn.grid
+        others = [item.grid for item in found if item is not drawn]
         if (
             box is not None
             and np.hypot(grid.centre_x - box.centre_x, grid.centre_y - box.centre_y) > 0.5 * box.outer_px
@@ -93,7 +107,7 @@ def find_vector_charts(picture, *, box=None):
             VectorChart(
                 box=box_around(grid, picture),
                 grid=grid,
-                labels=place_texts(page, grid, names),
+                labels=place_texts(page, grid, names, others=others),
                 traces=tuple(made),
             )
         )
@@ -107,6 +121,42 @@ def page_labels(picture, grid):
     if page is None or not page.texts or not np.isfinite(page.px_per_pt):
         return Labels()
     return place_texts(page, grid, ())
+
+
+def vector_traces(chart, *, settings):
+    """The drawn traces of a `VectorChart` as `find_traces` gives those of ink: a tuple of (FoundTrace, name).
+
+    settings : Settings; `inks` chooses among them, `covers` takes parts out; pins are not needed
+
+    Raises `NotReadError` when a told ink is not drawn.
+    """
+    chosen = chart.traces
+    if settings.inks:
+        chosen = [trace for told in settings.inks for trace in _of_ink(chart, told)]
+    return tuple(
+        (
+            FoundTrace(
+                ink=trace.ink,
+                dash=trace.dash,
+                filled=trace.filled,
+                trace=followed(trace, chart.grid, covers=settings.covers),
+                length=trace.length,
+                doubt=0.0,
+            ),
+            trace.name,
+        )
+        for trace in chosen
+    )
+
+
+def way_read(picture, chart=None):
+    """How a chart's numbers are taken, for the record: "vector", "embedded" or "raster".
+
+    chart : the `VectorChart` that is read by its lines, or None when the pixels are
+    """
+    if chart is not None and chart.traces:
+        return "vector"
+    return "embedded" if picture.vector is not None and picture.vector.embedded else "raster"
 
 
 def trace_at(trace, plane_deg):
@@ -168,6 +218,21 @@ def _vector_trace(chain, ink, dash, filled, name, grid, page):
         place_u_px=PLACE_PT * page.px_per_pt,
         length=float(np.nansum(np.hypot(np.diff(u), np.diff(v)))),
     )
+
+
+def _of_ink(chart, told):
+    """The traces nearest in colour to a told ink, within what a person means by one colour."""
+    rgb = np.array([int(told[k : k + 2], 16) for k in (1, 3, 5)], float)
+    inks = [np.array([int(trace.ink[k : k + 2], 16) for k in (1, 3, 5)], float) for trace in chart.traces]
+    off = [float(np.abs(ink - rgb).max()) for ink in inks]
+    if not off or min(off) > SAME_INK:
+        there = ", ".join(dict.fromkeys(trace.ink for trace in chart.traces)) or "none"
+        raise NotReadError(
+            f"no trace is drawn in the ink {told}",
+            remedy=f"inks on the chart: {there}; choose one with --ink",
+            stage="ink",
+        )
+    return [trace for trace, own in zip(chart.traces, off, strict=True) if own <= min(off) + 1]
 
 
 def _uncovered(trace, grid, covers):

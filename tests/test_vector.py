@@ -6,11 +6,12 @@ import numpy as np
 import pytest
 
 from digitise.bearing import make_bearing
+from digitise.exceptions import NotReadError
 from digitise.picture import open_picture
 from digitise.reading import read_charts
 from digitise.scale import make_scale
 from digitise.settings import Settings
-from digitise.vector import find_vector_charts, followed, page_labels, trace_at
+from digitise.vector import find_vector_charts, followed, page_labels, trace_at, vector_traces, way_read
 from tests.pdf_pages import (
     chord_circle,
     curve_circle,
@@ -540,3 +541,77 @@ def test_the_error_holds_what_thinned_points_lose(opened):
     off_px = np.abs(line_.rho - truth) * line_.radial_share * found.grid.outer_px
     assert np.mean(off_px <= 1.96 * line_.u_px) > 0.95
     assert np.median(line_.u_px) < 4 * np.median(off_px) + 0.02
+
+
+def test_traces_for_the_rest_of_the_flow(opened):
+    """Told inks choose among the drawn traces, covers take rows out, an ink that is not there is refused."""
+    picture = opened(chart() + "0.1 0.2 0.8 RG 1 w\n" + trace(lobes() - 8))
+    found = read(picture, 2)
+    scale = picture.vector.px_per_pt
+    cover = ((X - 20) * scale, 0.0, 40 * scale, (400 - Y - 20) * scale)
+
+    both = vector_traces(found, settings=Settings())
+    blue = vector_traces(found, settings=Settings(inks=("#2030c0",), covers=(cover,)))
+    with pytest.raises(
+        NotReadError, match=r"no trace is drawn in the ink #00ff00; inks on the chart: #cc1a1a, #1a33cc"
+    ):
+        vector_traces(found, settings=Settings(inks=("#00ff00",)))
+
+    assert [item.ink for item, _ in both] == ["#cc1a1a", "#1a33cc"]
+    assert [item.ink for item, _ in blue] == ["#1a33cc"]
+    line_ = blue[0][0].trace
+    assert line_.state[0] == "missing"
+    assert line_.state[20 * 90] == "seen"
+    assert way_read(picture, found) == "vector"
+    assert way_read(picture) == "raster"
+
+
+def test_a_square_frame_is_no_ring(opened):
+    """The corners of a square lie on a circle; the square is none, nor is a many-sided frame."""
+    frame = "0 0 0 RG 1 w\n" + line(*polar(X, Y, 185.0, np.array([45, 135, 225, 315])), close=True)
+    frame += line(*polar(X, Y, 160.0, np.arange(0, 360, 45)), close=True)
+    found = read(opened(frame + chart()))
+
+    assert len(found.grid.ring_rho) == 4
+    assert misfit_db(found.traces[0]) < WITHIN_DB
+
+
+def test_labels_printed_close_together_are_several(opened):
+    """A rim label beside a ring label, and a row of levels with units, are labels of their own."""
+    words = text(X - R - 16, Y - 3, "270") + "".join(
+        text(X - R * k / 4 + 1, Y - 3, f"{10 * k - 40} dB", 13) for k in (4, 3, 2, 1)
+    )
+    labels = read(opened(chart() + words)).labels
+
+    assert [item.text for item in labels.with_role("ring")] == ["0 dB", "-10 dB", "-20 dB", "-30 dB"]
+    assert "270" in [item.text for item in labels.found]
+
+
+def test_text_of_another_chart_is_left_to_it(opened):
+    """Of two charts side by side each has its own rim labels, though they stand close."""
+    content = ""
+    for x in (200.0, 560.0):
+        content += GRID + rings(x=x) + spokes(x, Y, R) + INK + trace(x=x)
+        for deg in range(0, 360, 30):
+            tx, ty = polar(x, Y, R + 14, float(deg))
+            content += text(tx - 2.2 * len(str(deg)), ty - 3, f"{deg}")
+    charts = find_vector_charts(opened(content, size=(760, 400)))
+
+    for found in charts:
+        rim = sorted(item.value for item in found.labels.with_role("rim"))
+        assert rim == list(range(0, 360, 30))
+        assert not [item for item in found.labels.found if item.role != "rim"]
+
+
+def test_bits_of_a_trace_along_the_grid_stay_its_own(opened):
+    """Strokes of a dashed trace that happen to lie on a spoke or ring do not join, move or turn the grid."""
+    level = np.maximum(lobes(), -10.0)  # along a ring at the back
+    flank = np.linspace(-25, -2, 60)  # along a spoke
+    dashes = "".join(trace(level[k : k + 2], DEG[k : k + 2], close=False) for k in range(0, 360, 3))
+    dashes += "".join(trace(flank[k : k + 2], np.full(2, 210.0), close=False) for k in range(0, 58, 3))
+    found = read(opened(GRID + rings() + spokes(X, Y, R) + INK + dashes))
+    plain = read(opened(chart()))
+
+    assert found.grid.homography == pytest.approx(plain.grid.homography, abs=1e-4)
+    assert found.grid.spoke_deg == pytest.approx(plain.grid.spoke_deg, abs=1e-4)
+    assert misfit_db(found.traces[0], level[::3], DEG[::3]) < WITHIN_DB
