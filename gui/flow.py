@@ -77,25 +77,27 @@ def complete(state):
 
 
 def quick(state):
-    """Read quickly the chart worked on, when its grid was corrected and labels are needed.
+    """Read quickly the chart worked on, from what its earlier reading found; None where nothing is gained.
 
-    None where nothing is gained, or where the quick reading fails: then the whole one tells.
+    After a change of grid, pins or covers only the inks that had a trace are followed, and labels are moved
+    with the grid instead of read anew. The whole reading follows, and alone is saved.
     """
     chart = state.chart
-    if chart is None or chart.done or chart.settings.grid is None:
+    if chart is None or chart.done or chart.earlier is None or not chart.earlier.traces:
         return None
-    earlier = chart.earlier
-    if earlier is None or not earlier.labels.found:
-        return None
-    labels = place_labels(earlier.labels, earlier.grid, chart.settings.grid)
+    told, earlier = chart.settings, chart.earlier
+    if all(getattr(told, name) == getattr(earlier.settings, name) for name in ("grid", "pins", "covers")):
+        return None  # the traces are there already
+    labels = place_labels(earlier.labels, earlier.grid, told.grid or earlier.grid)
+    inks = told.inks or tuple(dict.fromkeys(trace.ink for trace in earlier.traces))
     try:
         reading = read_chart(
-            state.picture, chart.box, settings=chart.settings, kept=state.kept, labels=labels
+            state.picture, chart.box, settings=replace(told, inks=inks), kept=state.kept, labels=labels
         )
     except DigitiseError:
-        return None
+        return None  # the whole reading tells why
     charts = list(state.charts)
-    charts[state.at] = replace(chart, quick=_numbered(reading, chart.settings))
+    charts[state.at] = replace(chart, quick=_numbered(reading, told))
     return replace(state, charts=tuple(charts))
 
 

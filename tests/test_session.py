@@ -486,6 +486,29 @@ def test_a_corrected_grid_is_read_quickly_with_the_labels_taken_over(session):
     assert flow.quick(session.now) is None
 
 
+def test_a_pin_is_read_quickly_for_the_traces_there_are(session):
+    """Only inks that had a trace are followed at first, and what is shown is what the whole reading gives."""
+    session.add_pin(*(float(value) for value in session.chart.grid.to_picture(1.0, 0.0)))
+    session.take(flow.quick(session.now))
+    assert session.chart.fresh
+    assert session.chart.reading is None
+    quick = {trace.ink: trace.table.chart_db for trace in session.reading.traces}
+
+    read(session)
+
+    assert session.chart.quick is None
+    for trace in session.reading.traces:
+        difference = np.abs(quick[trace.ink] - trace.table.chart_db)
+        assert np.nanmax(difference[trace.table.chart_db > -20]) < LEVEL_DB
+
+
+def test_a_level_needs_no_quick_reading(session):
+    """The traces are there already."""
+    session.tell_levels("outermost ring", outer_db=1.0)
+
+    assert flow.quick(session.now) is None
+
+
 def ring_label(grid, rho, level_db):
     """A ring's level as the reader of labels would give it, printed at the right."""
     x, y = grid.to_picture(rho, 80.0)
