@@ -9,27 +9,26 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ._ring_pattern import find_pattern
 from ._ring_points import STEP_PX, ring_points
 from ._robust import median, scatter
 from ._unwrap import outer_radius
 
-__all__ = ["Candidate", "choose_rings", "even_step"]
+__all__ = ["Candidate", "choose_rings"]
 
 BLOCK_ARC_PX = 24.0  # sectors are at least this long, to hold a dash and its gap
 MAX_BLOCKS, MIN_BLOCKS = 72, 12
 NEAR_PX = 0.6  # a sector holds the line when it lies this near the usual radius
 MIN_RADIUS_PX = 10.5  # nearer the centre, spokes and traces run into one
-SMALL_RADIUS_PX = 26.0  # below it a ring needs better evidence
+SMALL_RADIUS_PX, SMALL_SHARE = 26.0, 0.09  # below it, or below this share of the rim, a ring needs better evidence
 MIN_SCORE = 0.45  # of the radial profile, for a ring that stands by itself
 MIN_SHARE = 0.55  # of the sectors
 MAX_WANDER_PX = 0.75
-MAX_FORETOLD_WANDER_PX = 0.45
+MAX_FORETOLD_WANDER_PX = 0.55
 WEAK_SHARE = 0.33  # enough where the even step foretells a ring
-STEP_MISS_PX = 0.9
-MIN_LAW_GAP_PX = 6.0
-LAW_RATIOS = (10 ** (-1 / 20), 10 ** (-1 / 10), 0.89**0.5)  # radius a dB: field, power, log-periodic
-N_CUTS = 150  # at most, across a candidate
+N_CUTS = 216  # at most, across a candidate
 REACH_PX = 5.0  # half length of the cuts across a candidate
+NARROW_REACH_PX = 3.0  # and across a place that the rule of the others foretells
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -62,13 +61,13 @@ def choose_rings(image, homography, rho, score, *, arc_deg, avoid_deg=(), avoid_
     """
     outer_px = outer_radius(homography)
 
-    def candidate(r, s):
+    def candidate(r, s, reach_px=REACH_PX):
         points = ring_points(
             image,
             homography,
             r,
             arc_deg=arc_deg,
-            reach_px=REACH_PX,
+            reach_px=reach_px,
             sign=np.sign(s),
             n_max=N_CUTS,
             avoid_deg=avoid_deg,
@@ -86,74 +85,56 @@ def choose_rings(image, homography, rho, score, *, arc_deg, avoid_deg=(), avoid_
     rim = _rim(sure)
     sign = np.sign(sum(c.score * c.share * c.contrast for c in sure if c is not rim) or rim.score)
     rings = [c for c in sure if c.rho < rim.rho and np.sign(c.score) == sign]
-    step = even_step(np.array([c.rho for c in [rim, *rings]]) * outer_px)
-    rings = _without_strangers(rings, step, outer_px)
-    if step is not None:
-        places, min_share = step[1] + step[0] * np.arange(-200, 201), WEAK_SHARE
-    else:
-        places, min_share = _law_places(rings, rim, outer_px), MIN_SHARE
-    rings += _foretold(found, rings, rim, places, sign, outer_px, candidate, min_share)
+    pattern = find_pattern(np.array([c.rho for c in [rim, *rings]]) * outer_px)
+    rings = _without_strangers(rings, pattern, outer_px)
+    rings += _foretold(found, rings, rim, pattern, outer_px, candidate)
     return [rim, *sorted(rings, key=lambda c: -c.rho)]
 
 
-def _off_step(c, step, outer_px):
-    """Distance from the nearest place of the even step, px."""
-    size, first = step
-    return abs((c.rho * outer_px - first + size / 2) % size - size / 2)
-
-
-def _without_strangers(rings, step, outer_px):
-    """Drop lines whose contrast or completeness sets them apart and that no even step supports: round traces."""
-    if len(rings) < 2:
-        return rings
+def _without_strangers(rings, pattern, outer_px):
+    """Drop lines that no rule supports and whose contrast, completeness or small radius sets them apart."""
     kept = []
     for c in rings:
         others = [o for o in rings if o is not c]
-        share = np.median([o.share for o in others])
-        odd = c.contrast > 1.7 * max(o.contrast for o in others) or c.share < 0.8 * share
-        supported = step is not None and _off_step(c, step, outer_px) < STEP_MISS_PX
-        if supported or not odd:
+        odd = pattern.kind != "none" and c.rho * outer_px < _small_px(outer_px)
+        if others:
+            louder = c.contrast > 1.7 * max(o.contrast for o in others)
+            thinner = c.share < 0.8 * np.median([o.share for o in others])
+            odd |= louder or thinner and abs(c.score) < 0.8 * np.median([abs(o.score) for o in others])
+        if pattern.holds(c.rho * outer_px) or not odd:
             kept.append(c)
     return kept
 
 
-def _foretold(found, rings, rim, places_px, sign, outer_px, candidate, min_share):
-    """Fainter or half-hidden rings at radii that the step or the law of the others foretells."""
+def _foretold(found, rings, rim, pattern, outer_px, candidate):
+    """Fainter or half-hidden rings at radii that the rule of the others foretells."""
     usual = np.median([c.contrast for c in rings]) if rings else rim.contrast
     usual_drawn = np.median([c.points.drawn for c in rings]) if rings else rim.points.drawn
+    sign = np.sign(rings[0].score if rings else rim.score)
+    min_share = WEAK_SHARE if pattern.kind == "even" else MIN_SHARE
     more = []
-    for place in places_px:
+    for place in pattern.places_px:
         if not MIN_RADIUS_PX < place < rim.rho * outer_px - 2:
             continue
-        if any(abs(c.rho * outer_px - place) < 2 * STEP_MISS_PX for c in [rim, *rings, *more]):
+        if any(abs(c.rho * outer_px - place) < 2 * pattern.miss_px for c in [rim, *rings, *more]):
             continue
-        near = [c for c in found if abs(c.rho * outer_px - place) < STEP_MISS_PX and np.sign(c.score) == sign]
-        best = max([*near, candidate(place / outer_px, sign * MIN_SCORE)], key=lambda c: c.share)
+        near = [c for c in found if abs(c.rho * outer_px - place) < pattern.miss_px and np.sign(c.score) == sign]
+        near.append(candidate(place / outer_px, sign * MIN_SCORE, NARROW_REACH_PX))
+        best = max(near, key=lambda c: c.share)
         fits = best.share > min_share and best.points.drawn > min(0.25, 0.6 * usual_drawn)
         if fits and best.wander_px < MAX_FORETOLD_WANDER_PX and 0.4 < best.contrast / usual < 2.5:
             more.append(best)
     return more
 
 
-def _law_places(rings, rim, outer_px):
-    """Radii of whole dB under the law (REFERENCES: field, power, log-periodic) that all rings obey, or none."""
-    if len(rings) < 3:
-        return []
-    ratio = np.array([c.rho for c in rings]) / rim.rho
-    edge = rim.rho * outer_px
-    best, best_miss = None, 0.5
-    for per_db in LAW_RATIOS:
-        level = np.round(np.log(ratio) / np.log(per_db))
-        miss = np.abs(per_db**level - ratio) * edge
-        if miss.max() < STEP_MISS_PX and len(np.unique(level)) == len(level) and np.median(miss) < best_miss:
-            best, best_miss = per_db, float(np.median(miss))
-    places = [] if best is None else edge * best ** np.arange(1.0, 41.0)
-    return [place for place in places if place * (1 - best) > MIN_LAW_GAP_PX]
+def _small_px(outer_px):
+    """Radius below which a ring needs better evidence."""
+    return max(SMALL_RADIUS_PX, SMALL_SHARE * outer_px)
 
 
 def _stands_alone(c, outer_px):
     """Whether a candidate is a ring on its own evidence."""
-    small = c.rho * outer_px < SMALL_RADIUS_PX
+    small = c.rho * outer_px < _small_px(outer_px)
     return (
         abs(c.score) > (0.7 if small else MIN_SCORE)
         and c.share > (0.7 if small else MIN_SHARE)
@@ -168,30 +149,6 @@ def _rim(sure):
         if c.rho < 1.04 or (abs(c.score) > 0.75 and c.share > 0.75):
             return c
     return sure[-1]
-
-
-def even_step(radius_px):
-    """The even step of most of the rings: (step, a ring's radius) in px, or None when they are uneven or too few."""
-    radius = np.sort(radius_px)
-    n = len(radius)
-    best, best_merit = None, 0.0
-    for i in range(n):
-        for j in range(i + 1, n):
-            for part in (1, 2, 3):
-                size = (radius[j] - radius[i]) / part
-                if size < 6 * STEP_MISS_PX:
-                    break
-                k = np.round((radius - radius[i]) / size)
-                fits = np.abs(radius - radius[i] - k * size) < STEP_MISS_PX
-                places = k[fits].max() - k[fits].min() + 1
-                merit = fits.sum() - 0.4 * (places - len(np.unique(k[fits])))
-                if merit > best_merit and fits.sum() >= max(3, 0.6 * n):
-                    best, best_merit = (k[fits], radius[fits]), merit
-    if best is None or best_merit < 2.6:
-        return None
-    k, at = best
-    size, first = np.polyfit(k, at, 1)
-    return float(size), float(first)
 
 
 def _character(points, radius_px):
