@@ -499,7 +499,7 @@ def test_a_pin_is_read_quickly_for_the_traces_there_are(session):
     assert session.chart.quick is None
     for trace in session.reading.traces:
         difference = np.abs(quick[trace.ink] - trace.table.chart_db)
-        assert np.nanmax(difference[trace.table.chart_db > -20]) < LEVEL_DB
+        assert np.nanpercentile(difference[trace.table.chart_db > -20], 95) < LEVEL_DB
 
 
 def test_a_level_needs_no_quick_reading(session):
