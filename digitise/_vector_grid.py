@@ -8,8 +8,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ._vector_hubs import find_hubs, ring_cover, style_of
+from ._vector_hubs import find_hubs
 from ._vector_pieces import cut_pieces
+from ._vector_rings import ring_cover, style_of
 from .grid import Grid
 
 __all__ = ["DrawnGrid", "find_drawn_grids"]
