@@ -36,6 +36,7 @@ class Ray:
     anchor : -1, 0, 1 for the left end, middle or right end of the text
     turn_deg, height, length : of the labels on the sheet, degrees clockwise and px
     safe : whether the shift leaves no doubt about which ring a label names
+    middle : side and shift of the labels' middles, whichever the anchor
     members : indices of the lines that proposed it; score : sum of their odds
     """
 
@@ -48,6 +49,7 @@ class Ray:
     height: float
     length: float
     safe: bool
+    middle: tuple
     members: tuple
     score: float
 
@@ -135,6 +137,7 @@ def _gather(grid, seen, marks, points, first, second):
 def _usual_turn(items):
     """The turn that most of the lines agree on, by the odds of their numbers; a short line's turn says less."""
     weights = [item.level_odds * (1.0 if item.line.length > 1.5 * item.line.height else 0.5) for item in items]
+    weights = [weight * (1.0 if item.line.turn_deg == 0 else 0.7) for weight, item in zip(weights, items)]  # most print is level
     turns = np.array([item.line.turn_deg for item in items])
     off = np.abs((turns[:, None] - turns[None, :] + 180) % 360 - 180)
     return float(turns[np.argmax((off < TURN_SLACK_DEG) @ np.array(weights))])
@@ -151,7 +154,7 @@ def _anchored(grid, seen, on, along, across, turn_deg):
     """The `Ray` whose anchor and shift bring its labels nearest to the rings."""
     gap = _gap(grid)
     shifts = np.linspace(-0.5, 0.5, 41) * gap
-    best = None
+    best = middle = None
     for anchor in (0, -1, 1):
         points = np.array([_plane_point(grid, seen[k].line, anchor) for k in on])
         s, sides = points @ along, points @ across
@@ -161,6 +164,7 @@ def _anchored(grid, seen, on, along, across, turn_deg):
         cost = cost[k] * (1.0 if anchor == 0 else 1.1)
         if best is None or cost < best[0]:
             best = cost, anchor, shifts[k], float(np.median(sides))
+        middle = middle or (float(np.median(sides)), float(shifts[k]))
     _, anchor, shift, side = best
     heights, lengths = [seen[k].line.height for k in on], [seen[k].line.length for k in on]
     tall = [h for h, w in zip(heights, lengths) if w > 1.5 * h] or heights
@@ -169,6 +173,7 @@ def _anchored(grid, seen, on, along, across, turn_deg):
         along=along, across=across, side=side, shift=float(shift), anchor=anchor, turn_deg=turn_deg,
         height=float(np.median(tall)), length=float(max(*lengths, 2.0 * np.median(tall))),
         safe=abs(shift) < SAFE_SHIFT * gap, members=tuple(on), score=float(score),
+        middle=middle,
     )  # fmt: skip
 
 
@@ -198,6 +203,7 @@ def _from_long(grid, line, index):
     return Ray(
         along=along, across=across, side=side, shift=0.0, anchor=0, turn_deg=line.turn_deg, height=line.height,
         length=2.6 * line.height, safe=True, members=(index,), score=0.6,
+        middle=(side, 0.0),
     )  # fmt: skip
 
 

@@ -118,7 +118,10 @@ def _as_turned(ray, turn_deg):
     lean = np.radians(turn_deg - ray.turn_deg)
     height = ray.height / (0.5 * LONG_OVER_TALL * abs(np.sin(lean)) + abs(np.cos(lean)))
     length = max(ray.length, LONG_OVER_TALL * height) if abs(np.sin(lean)) < 0.2 else 2.6 * height
-    return replace(ray, turn_deg=turn_deg, height=float(height), length=float(length), anchor=0)
+    side, shift = ray.middle
+    return replace(
+        ray, turn_deg=turn_deg, height=float(height), length=float(length), anchor=0, side=side, shift=shift
+    )  # fmt: skip
 
 
 def _page_deg(grid, ray):
