@@ -84,7 +84,7 @@ class TableView(ttk.Frame):
                 self.look.fonts["small"].measure(heading), self.look.fonts["text"].measure("bridged")
             ) + px(10)
             self.tree.column(
-                name, width=width, minwidth=px(40), anchor="w" if name == "state" else "e", stretch=True
+                name, width=width, minwidth=px(40), anchor="center" if name == "state" else "e", stretch=True
             )
         bar = ttk.Scrollbar(self, orient="vertical", command=self.tree.yview)
         self.tree.configure(yscrollcommand=bar.set)

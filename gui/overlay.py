@@ -66,15 +66,18 @@ def overlay_shapes(session, place, *, draft=None, scale_px=1.0):
     return shapes
 
 
-def redraw_shapes(session, place, *, scale_px=1.0):
-    """The reading drawn anew, without the picture; `place` as for `overlay_shapes`."""
+def redraw_shapes(session, place, *, words_rho, scale_px=1.0):
+    """The reading drawn anew, without the picture; `place` as for `overlay_shapes`.
+
+    words_rho : plane angle -> radius at which its bearing is written
+    """
     reading, stale = session.reading, not session.chart.fresh
     shapes = list(_grid(session, reading.grid, place, stale, scale_px, zero=False))
     for bearing in range(0, 360, 30):
         plane = float(reading.bearing.to_plane(np.array([float(bearing)]))[0])
         if on_arc(reading.grid, plane):
             said = bearing - 360 if reading.bearing.signed and bearing > 180 else bearing
-            point = _on_grid(reading.grid, place, np.array([1.11]), plane)
+            point = _on_grid(reading.grid, place, np.array([words_rho(plane)]), plane)
             shapes.append(Shape(kind="words", style="rim", points=point, text=f"{said}\u00b0"))
     return [*shapes, *_traces(session, place, stale, scale_px)]
 

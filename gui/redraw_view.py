@@ -17,7 +17,6 @@ from .theme import COLOURS
 
 __all__ = ["RedrawView"]
 
-RIM_RHO = 1.27  # room for the bearings round the rim
 BAND_RHO = 1.12  # an error may reach far beyond the rim: so far it is drawn
 
 
@@ -38,9 +37,11 @@ class RedrawView(ttk.Frame):
             self, background=COLOURS["paper"], highlightthickness=px(2), highlightcolor=COLOURS["focus"],
             highlightbackground=COLOURS["rule"], takefocus=True, width=px(300), height=px(250), borderwidth=0,
         )  # fmt: skip
-        self.canvas.pack(fill="both", expand=True)
         self.readout = ttk.Frame(self)
-        self.readout.pack(fill="x", pady=(px(4), 0))
+        self.readout.pack(
+            side="bottom", fill="x", pady=(px(4), 0)
+        )  # before the canvas, which takes what is left
+        self.canvas.pack(fill="both", expand=True)
         self.cells = {}
         for column, (name, title) in enumerate(
             (
@@ -104,18 +105,31 @@ class RedrawView(ttk.Frame):
         self.canvas.delete("nothing")
         self._set_panel(reading.grid)
         self._draw_band(reading)
-        self.pen.draw(redraw_shapes(self.session, self._place, scale_px=self.look.unit))
+        shapes = redraw_shapes(self.session, self._place, words_rho=self._words_rho, scale_px=self.look.unit)
+        self.pen.draw(shapes)
         self.show_row()
 
     def _set_panel(self, grid):
         """Place the drawn arc as large as the pane allows."""
         width, height = max(self.canvas.winfo_width(), 50), max(self.canvas.winfo_height(), 50)
         angle = np.radians(arc_angles(grid, 181))
-        u, v = np.append(RIM_RHO * np.sin(angle), 0), np.append(-RIM_RHO * np.cos(angle), 0)
-        self._radius = min(width / np.ptp(u), height / np.ptp(v))
+        u, v = np.append(np.sin(angle), 0), np.append(-np.cos(angle), 0)
+        font, gap = (
+            self.look.fonts["text"],
+            self.look.px(3),
+        )  # from the rim to the middle of a bearing's words:
+        self._room = font.measure("-330\u00b0") / 2 + gap, font.metrics("linespace") / 2 + gap
+        across, down = width - 4 * self._room[0], height - 4 * self._room[1]
+        self._radius = max(min(across / np.ptp(u), down / np.ptp(v)), 20.0)
         self._x0 = width / 2 - self._radius * (u.max() + u.min()) / 2
         self._y0 = height / 2 - self._radius * (v.max() + v.min()) / 2
         self._grid = grid
+
+    def _words_rho(self, plane_deg):
+        """Radius at which the words of a bearing stand clear of the rim."""
+        angle = np.radians(plane_deg)
+        away = abs(np.sin(angle)) * self._room[0] + abs(np.cos(angle)) * self._room[1]
+        return 1 + away / self._radius
 
     def _panel(self, rho, plane_deg):
         angle = np.radians(plane_deg)

@@ -53,10 +53,9 @@ def open_screen():
 
 
 def take_picture(root, name):
-    """Keep a picture of the window and its menu for a person to look at; returns it."""
+    """Keep a picture of a window in the screen's corner, menu included, for a person to look at; returns it."""
     root.update()
-    left, top = root.winfo_x(), root.winfo_y()  # a menu lies above the root's own top
-    box = (left, top, root.winfo_rootx() + root.winfo_width(), root.winfo_rooty() + root.winfo_height())
+    box = (0, 0, root.winfo_rootx() + root.winfo_width(), root.winfo_rooty() + root.winfo_height())
     picture = ImageGrab.grab(xdisplay=os.environ["DISPLAY"]).crop(box)
     PICTURES.mkdir(exist_ok=True)
     picture.save(PICTURES / f"{name}.png")

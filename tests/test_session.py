@@ -978,7 +978,7 @@ def test_the_overlay_lies_on_the_chart(session):
 
 def test_the_redraw_shows_the_bearings(session):
     """Twelve of them round the rim, and the traces."""
-    shapes = redraw_shapes(session, lambda x, y: (x, y))
+    shapes = redraw_shapes(session, lambda x, y: (x, y), words_rho=lambda plane: 1.1)
 
     assert [shape.text for shape in shapes if shape.kind == "words"] == [
         f"{angle}°" for angle in range(0, 360, 30)

@@ -220,6 +220,9 @@ def test_everything_is_in_sight(make_window, opened, size, percent):
         window.panes.show(pane)
         take_picture(driver.root, f"{size}-{percent}-{pane}")
         shown = [pane for pane in (window.chart_view, window.redraw, window.lists) if pane.winfo_ismapped()]
+        if window.redraw in shown:
+            assert_in_sight(window.redraw.readout, driver.root)
+            assert window.redraw.readout.winfo_height() >= window.redraw.readout.winfo_reqheight()
         for widget in (window.status, *window.buttons.values(), *shown):
             assert_in_sight(widget, driver.root)
         assert min(shown[0].winfo_width(), shown[0].winfo_height()) > 300

@@ -19,7 +19,7 @@ def main():
         driver.read()
         driver.window.trace_chosen(1)
         driver.window.row_pointed(ROW)
-        picture = take_picture(driver.root, "readme").convert("P", palette=1, colors=128)
+        picture = take_picture(driver.root, "readme").convert("P", palette=1, colors=256)
         picture.save(SAMPLES / "window.png", optimize=True)
         driver.window.close()
 
