@@ -53,7 +53,7 @@ def open_screen():
 
 
 def take_picture(root, name):
-    """Keep a picture of a window in the screen's corner, menu included, for a person to look at; returns it."""
+    """Keep a picture of a window in the screen's corner for a person to look at; returns it."""
     root.update()
     box = (0, 0, root.winfo_rootx() + root.winfo_width(), root.winfo_rooty() + root.winfo_height())
     picture = ImageGrab.grab(xdisplay=os.environ["DISPLAY"]).crop(box)

@@ -1,4 +1,4 @@
-"""Make the README's picture of the window: `python -m tests.window_picture`, over a sample that comes with us."""
+"""Make the README's picture of the window over a sample: `python -m tests.window_picture`."""
 
 import tkinter as tk
 from pathlib import Path
