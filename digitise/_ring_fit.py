@@ -54,7 +54,7 @@ class PlaneFit:
     spoke_sigma_px: np.ndarray
 
 
-def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True, alike=False):
+def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, first=False):
     """Fit the chart plane to measured lines.
 
     Parameters
@@ -62,21 +62,22 @@ def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True, alike=Fal
     rings, spokes : lists of LinePoints; the radius of the first ring is the unit that stays
     spoke_deg : (m,) plane angles that the spokes must have
     start : (8,) plane parameters; ring_rho : (n,) first radii
-    tilt : whether a perspective may be tried; alike : weigh all lines alike, for a start that may hold a trace, which
-        runs truer about the wrong centre than the rings do
+    first : a quick fit from afar: stretch and no comparison of models, and all lines weighed alike, because a trace
+        among them may run truer about a wrong centre than the rings do
 
     Returns
     -------
     PlaneFit
     """
-    points = _Points(rings, spokes, spoke_deg)
-    points.alike = alike
+    points = _Points(rings, spokes, spoke_deg, alike=first)
     begin = np.array(start, float)
     if not len(spokes):
         begin[TURN] = 0
     rho = np.array(ring_rho, float)
     free = [CX, CY, SIZE] + ([TURN] if len(spokes) else [])
     model = [*free, STRETCH_A, STRETCH_B]
+    if first:
+        return _finish(points, _iterate(points, begin, rho, model))
     level = begin.copy()
     level[[TILT_X, TILT_Y]] = 0
     best = _iterate(points, level, rho, model)
@@ -85,7 +86,7 @@ def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, tilt=True, alike=Fal
     simple = _iterate(points, plain, best.rho, free)
     if not _better(best, simple, points):
         best = simple
-    if tilt and len(rings) > 1:
+    if len(rings) > 1:
         tilted = _iterate(points, best.plane, best.rho, [*model, TILT_X, TILT_Y])
         if _better(tilted, best, points):
             best = tilted
@@ -126,7 +127,8 @@ def _affine_of(parameters):
 class _Points:
     """All points in flat arrays: rings first, then spokes."""
 
-    def __init__(self, rings, spokes, spoke_deg):
+    def __init__(self, rings, spokes, spoke_deg, *, alike):
+        self.alike = alike
         lists = [*rings, *spokes]
         self.line = np.concatenate([np.full(int(p.good.sum()), k) for k, p in enumerate(lists)])
         self.xy = np.stack([np.concatenate([getattr(p, name)[p.good] for p in lists]) for name in "xy"])

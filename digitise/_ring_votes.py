@@ -24,6 +24,10 @@ MAX_VOTERS = 40_000
 N_DIRECTIONS = 90
 VOTE_CAP = 4.0  # one direction cannot count for more than this many standard deviations
 ROUNDS = 4  # at each tolerance
+WIDE = (0.15, 0.10, 0.06, 0.04, 0.03)  # radians, for a centre known to a few per cent of the outer radius
+MOVE_PX, STRETCH = 30.0, 0.08  # expected sizes of a move and a stretch
+PULL = 0.02**2  # variance of a gradient's direction
+SMALL_STRETCH = 0.012
 HUB_POINTS = 8_000  # edge pixels that refine a centre
 RHO_BIN_PX = 2.0
 CENTRE_STEP_PX = 4.0  # spacing of the candidate centres on the reduced picture
@@ -139,58 +143,60 @@ def _line_votes(edges, dx, dy):
     return total / N_DIRECTIONS
 
 
-def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=(0.15, 0.10, 0.06, 0.04, 0.03)):
-    """Refine a centre candidate and its stretch from all gradients that agree with it, as a `Hub`.
+def fit_hub(edges, x, y, *, reach_px=None, a=0.0, b=0.0, tolerances=WIDE):
+    """Refine a centre candidate and its stretch from all gradients that agree with it, as a `Hub`; None without.
 
-    Robust Gauss-Newton on the angle between gradient and M (p - c) for ring pixels, and on its departure from a
-    right angle for spoke pixels; tolerances in radians, falling.
+    reach_px : pixels further away do not count; a, b : first stretch; tolerances : radians, falling
+    A trace that is nearly a ring can feign a stretch, so a round hub competes with a stretched one: the rings about
+    the better hub are the sharper.
     """
-    step = max(1, len(edges.x) // HUB_POINTS)
-    at_x, at_y, at_gx, at_gy = edges.x[::step], edges.y[::step], edges.gx[::step], edges.gy[::step]
+    hub = _fit_hub(edges, x, y, reach_px, a, b, tolerances, stretch=True)
+    if hub is not None and max(abs(hub.a), abs(hub.b)) < SMALL_STRETCH:
+        return hub
+    plain = _fit_hub(edges, x, y, reach_px, 0.0, 0.0, tolerances, stretch=False)
+    hubs = [h for h in (plain, hub) if h is not None]
+    return max(hubs, key=lambda h: _sharpness(edges, h, reach_px)) if hubs else None
+
+
+def _sharpness(edges, hub, reach_px):
+    """Sum of powers of the shares of all circles about a hub: large when few circles hold all the edges."""
+    share, _ = ring_shares(edges, hub)
+    return float(np.sum(share[: None if reach_px is None else int(reach_px)] ** 4))
+
+
+def _fit_hub(edges, x, y, reach_px, a, b, tolerances, *, stretch):
+    """Robust Gauss-Newton on the angle between gradient and M (p - c), or on its departure from a right angle."""
+    every = max(1, len(edges.x) // HUB_POINTS)
+    at, grad = np.stack([edges.x, edges.y])[:, ::every], np.stack([edges.gx, edges.gy])[:, ::every]
+    free = 4 if stretch else 2
     done = None
     # Pixels of no ring add to the normal matrix but not to the pull, so one step covers only part of the way.
     for tolerance in np.repeat(tolerances, ROUNDS):
         if tolerance == done:
             continue
-        dx, dy = at_x - x, at_y - y
-        r = np.hypot(dx, dy)
-        near = r > 4
-        if reach_px is not None:
-            near &= r < reach_px
-        dx, dy, r = dx[near], dy[near], r[near]
-        gx, gy = at_gx[near], at_gy[near]
-        mx, my = (1 + a) * dx + b * dy, b * dx + (1 - a) * dy
-        ring = (gx * my - gy * mx) / r
-        spoke = (gx * dx + gy * dy) / r
-        on_ring, on_spoke = np.abs(ring) < tolerance, np.abs(spoke) < tolerance
-        if on_ring.sum() < 20:
+        d = at - np.array([[x], [y]])
+        r = np.hypot(*d)
+        near = (r > 4) & (r < (reach_px or np.inf))
+        d, g, r = d[:, near], grad[:, near], r[near]
+        m = np.array([[1 + a, b], [b, 1 - a]]) @ d
+        ring, spoke = (g[0] * m[1] - g[1] * m[0]) / r, (g * d).sum(axis=0) / r
+        on, along = np.abs(ring) < tolerance, np.abs(spoke) < tolerance
+        if on.sum() < 20:
             return None
-        weight_ring = (1 - (ring[on_ring] / tolerance) ** 2) ** 2
-        weight_spoke = (1 - (spoke[on_spoke] / tolerance) ** 2) ** 2
-        gxr, gyr, rr = gx[on_ring], gy[on_ring], r[on_ring]
+        gx, gy, dx, dy, rr = g[0, on], g[1, on], d[0, on], d[1, on], r[on]
         rows = np.stack(
-            [
-                (gxr * b - gyr * (1 + a)) / -rr,
-                (gxr * (1 - a) - gyr * b) / -rr,
-                (-gxr * dy[on_ring] - gyr * dx[on_ring]) / rr,
-                (gxr * dx[on_ring] - gyr * dy[on_ring]) / rr,
-            ],
-            axis=1,
+            [gy * (1 + a) - gx * b, gy * b - gx * (1 - a), -gx * dy - gy * dx, gx * dx - gy * dy][:free], axis=1
         )
-        zero = np.zeros(int(on_spoke.sum()))
-        rs = r[on_spoke]
-        more = np.stack([-gx[on_spoke] / rs, -gy[on_spoke] / rs, zero, zero], axis=1)
-        jac = np.concatenate([rows, more])
-        weight = np.concatenate([weight_ring, weight_spoke])
-        error = np.concatenate([ring[on_ring], spoke[on_spoke]])
-        normal = (jac * weight[:, None]).T @ jac
-        # Weak pull towards no stretch and no move: matters only when few pixels agree.
-        scale = 0.02**2
-        normal[0, 0] += scale / 30.0**2
-        normal[1, 1] += scale / 30.0**2
-        normal[2, 2] += scale / 0.08**2
-        normal[3, 3] += scale / 0.08**2
-        step = np.linalg.solve(normal, -(jac * weight[:, None]).T @ error - np.array([0, 0, a, b]) * scale / 0.08**2)
+        more = np.zeros((int(along.sum()), free))
+        more[:, :2] = -g[:, along].T
+        jac = np.concatenate([rows / rr[:, None], more / r[along, None]])
+        error = np.concatenate([ring[on], spoke[along]])
+        weighted = jac * ((1 - (error / tolerance) ** 2) ** 2)[:, None]
+        # a weak pull to the spot and to no stretch matters only when few pixels agree
+        hold = PULL / np.array([MOVE_PX, MOVE_PX, STRETCH, STRETCH][:free]) ** 2
+        value = np.array([0.0, 0.0, a, b][:free])
+        step = np.zeros(4)
+        step[:free] = -np.linalg.solve(weighted.T @ jac + np.diag(hold), weighted.T @ error + hold * value)
         x, y, a, b = x + step[0], y + step[1], float(a + step[2]), float(b + step[3])
         if np.abs(step[:2]).max() < 0.05 and np.abs(step[2:]).max() < 3e-4:
             done = tolerance

@@ -50,6 +50,12 @@ def find_spokes(image, homography, *, arc_deg):
     peak_deg, peak_score = _peaks(np.where(inside, score, 0))
     if not len(peak_deg):
         return NO_SPOKES
+    # beside every line the detector answers with the other sign, and twice
+    window = np.degrees(2 * SIDE_PX / (INNER * outer_radius(homography)))
+    apart = np.abs((peak_deg[:, None] - peak_deg + 180) % 360 - 180)
+    other = (peak_score[:, None] * peak_score < 0) & (np.abs(peak_score) > np.abs(peak_score)[:, None])
+    main = ~(other & (apart < window)).any(axis=1)
+    peak_deg, peak_score = peak_deg[main], peak_score[main]
     sign = 1.0 if np.sum(peak_score) >= 0 else -1.0
     size = np.where(inside, np.maximum(sign * score, 0), 0).astype(np.float32)
     near = cv2.dilate(np.r_[size[-4:], size, size[:4]][None], np.ones((1, 7), np.uint8))[0][4:-4]

@@ -135,10 +135,12 @@ def _prove(edges, plane, outer, share):
     radius = rho * outer
     rings = 0.0
     for k in range(len(rho)):
-        beside = (np.abs(radius - radius[k]) < EDGE_PX) & (score * score[k] < 0)
-        is_edge = np.any(beside & (np.abs(level) > 0.5 * abs(level[k])))
-        if radius[k] > MIN_RING_WORK_PX and not is_edge and profile.wander(rho[k], score[k], blocks) < MAX_WANDER_PX:
-            rings += abs(score[k])
+        beside = (np.abs(radius - radius[k]) < EDGE_PX) & (np.abs(level) > 0.5 * abs(level[k]))
+        is_edge = np.any(beside & (score * score[k] < 0))
+        again = np.any(beside[:k] & (score[:k] * score[k] > 0))  # the other side of a thick line
+        if radius[k] > MIN_RING_WORK_PX and not (is_edge or again):
+            if profile.wander(rho[k], score[k], blocks) < MAX_WANDER_PX:
+                rings += abs(score[k])
     spokes = find_spokes(edges.image, plane, arc_deg=arc)
     evidence = rings + min(len(spokes.deg), MAX_SPOKES) * SPOKE_WORTH
     if rings < MIN_RINGS or evidence < MIN_EVIDENCE:

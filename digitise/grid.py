@@ -16,7 +16,7 @@ from ._ring_points import ring_points, spoke_points
 from ._ring_profile import centre_profile, drawn_arc, ring_profile
 from ._ring_votes import find_edges, fit_hub
 from ._spokes import find_spokes
-from ._unwrap import shrink
+from ._unwrap import outer_radius, shrink
 from .exceptions import NotReadError
 from .frozen import lock_arrays
 from .review import reason
@@ -26,7 +26,8 @@ __all__ = ["Grid", "find_grid"]
 WORK_OUTER_PX = 320.0  # rings are looked for on a picture reduced to this outer radius
 HUB_PIXELS = 0.12e6  # and the first centre on one of this many px
 MIN_DRAWN = 0.15  # share of a ring's arc: less is an accident
-MAX_PASSES = 3
+IN_LINE_PX = 0.15  # rms of the strong rings about a first plane that is good enough
+MAX_TILT_RESIDUAL_PX = 1.0  # a perspective from a first plane is believed below this rms
 SETTLED_PX = 0.1  # the lines are not measured again once the plane moves less
 AVOID_PX = 2.5  # ring points keep this far from spokes
 STRONG, WEAK = 0.4, 0.15  # mean vote of the sectors for a ring
@@ -86,7 +87,7 @@ class Grid:
     @property
     def outer_px(self):
         """Mean radius of the outermost ring on the picture, px."""
-        return float(np.sqrt(abs(np.linalg.det(self.homography[:2, :2]))))
+        return outer_radius(self.homography)
 
     def to_picture(self, rho, plane_deg):
         """Picture x, y (px) of chart-plane points; arrays broadcast."""
@@ -153,18 +154,21 @@ def _first_plane(work, to_work, box):
 
 def _align(work, plane, spokes, arc):
     """Bring the strong rings into line on the reduced picture; None when there are none."""
-    for tilt in (False, True):
+    for first in (True, False):
         profile = ring_profile(work, plane, reach=1.1, spoke_deg=spokes.drawn_deg)
         rho, score, level = profile.peaks(STRONG)
         order = np.argsort(-np.abs(score) * np.sqrt(np.abs(level)))[:6]
         if not len(order):
             return None
         rings = [
-            ring_points(work, plane, rho[k], sign=np.sign(score[k]), n_max=180, avoid_deg=spokes.drawn_deg, arc_deg=arc)
+            ring_points(work, plane, rho[k], sign=np.sign(score[k]), n_max=120, avoid_deg=spokes.drawn_deg, arc_deg=arc)
             for k in order
         ]
-        start = parameters_of(plane)
-        plane = fit_plane(rings, [], [], start=start, ring_rho=rho[order], tilt=tilt, alike=True).homography
+        fit = fit_plane(rings, [], [], start=parameters_of(plane), ring_rho=rho[order], first=first)
+        if first or fit.residual_px < MAX_TILT_RESIDUAL_PX:
+            plane = fit.homography
+        if fit.residual_px < IN_LINE_PX:
+            break
     return plane
 
 
@@ -177,7 +181,7 @@ def _measure(full, plane, rings, spokes, arc, origin):
     parameters = parameters_of(plane)
     parameters[3] = np.radians(spokes.skew_deg)
     lines = [spoke_points(full, plane, a, 0.25, 0.97) for a in spokes.drawn_deg]
-    for _ in range(MAX_PASSES):
+    for n_max in (100, 300, 300):
         plane = homography_of(parameters)
         rings = [
             ring_points(
@@ -187,6 +191,7 @@ def _measure(full, plane, rings, spokes, arc, origin):
                 arc_deg=arc,
                 reach_px=max(3.0, w / 2 + 2.5),
                 sign=s,
+                n_max=n_max,
                 avoid_deg=spokes.deg,
                 avoid_px=AVOID_PX,
             )
@@ -199,7 +204,7 @@ def _measure(full, plane, rings, spokes, arc, origin):
         fit = fit_plane(rings, lines, spokes.deg, start=parameters, ring_rho=rho)
         moved = np.abs(fit.homography[:2] - plane[:2]).max()
         parameters, rho = fit.parameters, fit.ring_rho
-        if moved < SETTLED_PX:
+        if moved < SETTLED_PX and n_max == 300:
             break
     shift = np.array([[1, 0, origin[0]], [0, 1, origin[1]], [0, 0, 1.0]])
     h = shift @ fit.homography
