@@ -14,6 +14,8 @@ CURVE, MOVE = 1, 2  # kinds of path segments, as the engine counts them (ISO 320
 def flat_line(points, kinds, closed):
     """(points, vertex flags) of one unbroken line with its curves made fine; None when it has no length."""
     if (kinds == CURVE).any():
+        if (kinds == CURVE).sum() % 3 or kinds[0] == CURVE:
+            return None
         points, vertex = _without_curves(points, kinds)
     else:
         vertex = np.ones(len(points), bool)
@@ -29,21 +31,18 @@ def flat_line(points, kinds, closed):
 
 
 def _without_curves(points, kinds):
-    """Points and vertex flags with every cubic cut into short chords."""
-    out, flags, k = [points[:1]], [True], 1
-    while k < len(points):
-        if kinds[k] != CURVE or k + 2 >= len(points):
-            out.append(points[k : k + 1])
-            flags.append(True)
-            k += 1
-            continue
-        p = points[k - 1 : k + 3]
-        bend = max(np.hypot(*(p[0] - 2 * p[1] + p[2])), np.hypot(*(p[1] - 2 * p[2] + p[3])))
-        # By its second derivative a cubic in n equal parts strays at most 6 bend / (8 n^2) from its chords.
-        steps = 2 * int(np.clip(math.ceil(math.sqrt(0.75 * bend / FLAT_PT) / 2), 1, MAX_STEPS // 2))
-        t = np.arange(1, steps + 1)[:, None] / steps
-        s = 1 - t
-        out.append(s**3 * p[0] + 3 * s * s * t * p[1] + 3 * s * t * t * p[2] + t**3 * p[3])
-        flags += [j == steps or 2 * j == steps for j in range(1, steps + 1)]
-        k += 3
-    return np.vstack(out), np.array(flags)
+    """Points and vertex flags with every cubic cut into short chords, all cubics of a line into as many."""
+    ends = np.flatnonzero(kinds == CURVE)[2::3]  # a cubic is three points in a row: two controls and its end
+    p = points[ends[:, None] + np.arange(-3, 1)]
+    bend = np.hypot(*np.moveaxis(p[:, 2:] - 2 * p[:, 1:3] + p[:, :2], 2, 0)).max()
+    # By its second derivative a cubic in n equal parts strays at most 6 bend / (8 n^2) from its chords.
+    half = int(np.clip(math.ceil(math.sqrt(0.75 * bend / FLAT_PT) / 2), 1, MAX_STEPS // 2))
+    t = np.arange(1, 2 * half + 1) / (2 * half)
+    weights = np.stack([(1 - t) ** 3, 3 * (1 - t) ** 2 * t, 3 * (1 - t) * t**2, t**3], axis=1)
+    flat = np.einsum("ti,mij->mtj", weights, p).reshape(-1, 2)
+    place = (ends[:, None] - 1 + t).ravel()
+    named = np.tile((t == 0.5) | (t == 1.0), len(ends))
+    straight = np.flatnonzero(kinds != CURVE)
+    order = np.argsort(np.concatenate([straight, place]), kind="stable")
+    flags = np.concatenate([np.ones(len(straight), bool), named])
+    return np.concatenate([points[straight], flat])[order], flags[order]

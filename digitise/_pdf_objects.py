@@ -170,6 +170,8 @@ def moved(page, matrix):
 
 def _chain(outer, inner):
     """(2, 3) matrix that takes `inner` first."""
+    if inner is None:
+        return outer
     return np.column_stack([outer[:, :2] @ inner[:, :2], outer[:, :2] @ inner[:, 2] + outer[:, 2]])
 
 
@@ -206,10 +208,17 @@ class _Collector:
         return True
 
     def _matrix(self, item):
-        """(2, 3) of an object; the identity when it has none."""
+        """(2, 3) of an object, None for the identity."""
         m = self.raw.FS_MATRIX()
-        if not self.raw.FPDFPageObj_GetMatrix(item, m):
-            return np.eye(3)[:2]
+        if not self.raw.FPDFPageObj_GetMatrix(item, m) or (m.a, m.b, m.c, m.d, m.e, m.f) == (
+            1,
+            0,
+            0,
+            1,
+            0,
+            0,
+        ):
+            return None
         return np.array([[m.a, m.c, m.e], [m.b, m.d, m.f]], float)
 
     def _take_image(self, item, matrix):
@@ -236,7 +245,7 @@ class _Collector:
         runs, curved = self._runs(item, n_segments, raw.FPDFPath_GetPathSegment, place)
         if not runs:
             return
-        size = math.sqrt(abs(np.linalg.det(place[:, :2])))
+        size = math.sqrt(abs(place[0, 0] * place[1, 1] - place[0, 1] * place[1, 0]))
         width = ctypes.c_float()
         raw.FPDFPageObj_GetStrokeWidth(item, width)
         self.paths.append(

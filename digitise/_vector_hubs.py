@@ -74,22 +74,19 @@ def _proposals(pieces):
     arcs = np.flatnonzero(
         (pieces.sweep_deg >= MIN_SWEEP_DEG) & (pieces.radius >= MIN_OUTER_PT * pieces.unit / 3)
     )
-    found = []  # [x, y, weight, reach]
-    for k in arcs[np.argsort(-pieces.radius[arcs])][:4000]:
-        x, y, radius = *pieces.centre[k], pieces.radius[k]
-        weight = min(pieces.sweep_deg[k], 360) / 360
-        for item in found:
-            if np.hypot(x - item[0], y - item[1]) < 0.01 * radius + 0.3 * pieces.unit:
-                share = weight / (item[2] + weight)
-                item[0] += share * (x - item[0])
-                item[1] += share * (y - item[1])
-                item[2] += weight
-                break
-        else:
-            found.append([x, y, weight])
-    found += [[x, y, 0.4 * n] for x, y, n in _crossings(pieces)]
-    found.sort(key=lambda item: -item[2])
-    return [(x, y) for x, y, _ in found[:MAX_HUBS]]
+    found = []  # (weight, x, y)
+    if len(arcs):
+        cell = np.round(pieces.centre[arcs] / pieces.unit).astype(np.int64)
+        _, owner = np.unique(cell, axis=0, return_inverse=True)
+        weight = np.bincount(owner.ravel(), np.minimum(pieces.sweep_deg[arcs], 360) / 360)
+        # The longest arc of a cell tells its centre best.
+        order = np.argsort(pieces.sweep_deg[arcs] * pieces.radius[arcs], kind="stable")
+        best = np.zeros(len(weight), int)
+        best[owner.ravel()[order]] = arcs[order]
+        found = [(w, *pieces.centre[k]) for w, k in zip(weight, best, strict=True)]
+    found += [(0.4 * n, x, y) for x, y, n in _crossings(pieces)]
+    found.sort(key=lambda item: -item[0])
+    return [(float(x), float(y)) for _, x, y in found[:MAX_HUBS]]
 
 
 def _crossings(pieces):
