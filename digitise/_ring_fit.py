@@ -21,6 +21,8 @@ __all__ = ["PlaneFit", "fit_plane", "homography_of", "parameters_of"]
 # order of the plane's parameters
 CX, CY, SIZE, TURN, STRETCH_A, STRETCH_B, TILT_X, TILT_Y = range(8)
 N_PLANE = 8
+HUB_U, HUB_V = 8, 9  # where the spokes meet, beside the rings' centre, px: renderers snap lines, and rings otherwise
+N_ALL = 10
 TUKEY = 4.685
 MIN_SIGMA_PX = 0.02  # floor of a line's scatter: no line weighs without limit
 SYSTEMATIC_PX = 0.03  # of renderers: curves flattened to chords, lines snapped; measured on drawn charts
@@ -29,8 +31,10 @@ CLUSTER_RHO = 0.25
 MAX_ROUNDS = 10
 SIGMA_ROUNDS = 5  # the scatter of the lines is held fixed after these, so that the iteration settles
 # standard deviation of the plane's parameters about their first values: wide, to hold what few points leave open
-LOOSE = np.array([8.0, 8.0, 0.1, 0.2, 0.12, 0.12, 0.06, 0.06])
+LOOSE = np.array([8.0, 8.0, 0.1, 0.2, 0.12, 0.12, 0.06, 0.06, 0.5, 0.5])
 LOOSE_RHO = 0.05
+MIN_TILT_PX, MIN_TILT_FEW_PX = 0.1, 0.7  # shift of the rim by a perspective worth having, many and few rings
+STRAY_PX, MUTE = 0.12, 30.0
 MIN_GAIN = 12.0  # of a richer model, in units of the clusters' variance
 
 
@@ -70,32 +74,68 @@ def fit_plane(rings, spokes, spoke_deg, *, start, ring_rho, first=False):
     PlaneFit
     """
     points = _Points(rings, spokes, spoke_deg, alike=first)
-    begin = np.array(start, float)
+    begin = np.r_[np.asarray(start, float), 0.0, 0.0]
     if not len(spokes):
         begin[TURN] = 0
     rho = np.array(ring_rho, float)
-    free = [CX, CY, SIZE] + ([TURN] if len(spokes) else [])
+    free = [CX, CY, SIZE] + ([TURN] if len(spokes) else []) + ([HUB_U, HUB_V] if len(spokes) > 3 else [])
     model = [*free, STRETCH_A, STRETCH_B]
     if first:
         return _finish(points, _iterate(points, begin, rho, model))
     level = begin.copy()
     level[[TILT_X, TILT_Y]] = 0
-    best = _iterate(points, level, rho, model)
+    best = _choose_model(points, level, rho, free)
+    strays = _stray_rings(points, best)
+    if strays.any():
+        points.muted = strays
+        best = _choose_model(points, level, best.rho, free)
+    return _finish(points, best)
+
+
+def _choose_model(points, begin, rho, free):
+    """Similarity, stretch or perspective: the plainest that the residuals bear."""
+    stretched = [*free, STRETCH_A, STRETCH_B]
+    best = _iterate(points, begin, rho, stretched)
     plain = best.plane.copy()
     plain[[STRETCH_A, STRETCH_B]] = 0
     simple = _iterate(points, plain, best.rho, free)
     if not _better(best, simple, points):
         best = simple
-    if len(rings) > 1:
-        tilted = _iterate(points, best.plane, best.rho, [*model, TILT_X, TILT_Y])
-        if _better(tilted, best, points):
+    n_sound = points.n_rings - int(points.muted.sum())
+    if n_sound > 1:
+        tilted = _iterate(points, best.plane, best.rho, [*stretched, TILT_X, TILT_Y])
+        shift_px = np.exp(tilted.plane[SIZE]) * np.hypot(*tilted.plane[[TILT_X, TILT_Y]])
+        # two or three rings may be off centre because a trace lies along one of them
+        if shift_px > (MIN_TILT_PX if n_sound > 3 else MIN_TILT_FEW_PX) and _better(tilted, best, points):
             best = tilted
-    return _finish(points, best)
+    return best
+
+
+def _stray_rings(points, state):
+    """(n_lines,) bool: rings whose own centre lies off the one that most rings and the spokes' hub agree on.
+
+    Such a ring has a trace along it, or is one; its radius is kept, its say on the centre is not.
+    """
+    stray = np.zeros(points.n_lines, bool)
+    centres = []
+    for k in range(points.n_rings):
+        own = points.line == k
+        jac = np.column_stack([state.centre_jac[own], np.ones(int(own.sum()))])
+        weighted = jac * state.weight[own, None]
+        normal = weighted.T @ jac + 1e-9 * np.eye(3) * max(float(state.weight[own].sum()), 1e-9)
+        centres.append(np.linalg.lstsq(normal, -weighted.T @ state.residual[own], rcond=None)[0][:2])
+    centres = np.array(centres)
+    members = np.vstack([centres, state.plane[[HUB_U, HUB_V]]]) if HUB_U in state.model else centres
+    if len(members) < 3:
+        return stray
+    off = np.hypot(*(members - np.median(members, axis=0)).T)
+    stray[: points.n_rings] = (off > max(STRAY_PX, 4 * float(np.median(off))))[: points.n_rings]
+    return stray
 
 
 def homography_of(parameters):
     """Homography of plane parameters: stretch times turn times scale, then perspective, about the centre."""
-    cx, cy, _, _, _, _, tilt_x, tilt_y = parameters
+    cx, cy, _, _, _, _, tilt_x, tilt_y = parameters[:N_PLANE]
     h = np.eye(3)
     h[:2, :2] = _affine_of(parameters) + np.outer([cx, cy], [tilt_x, tilt_y])
     h[:2, 2] = cx, cy
@@ -116,7 +156,7 @@ def parameters_of(homography):
 
 def _affine_of(parameters):
     """(2, 2) affine part: exp(size) exp([[a, b], [b, -a]]) rotation(turn)."""
-    _, _, size, turn, a, b, _, _ = parameters
+    size, turn, a, b = parameters[SIZE : STRETCH_B + 1]
     r = np.hypot(a, b)
     sinh = np.sinh(r) / r if r > 1e-12 else 1.0
     stretch = np.cosh(r) * np.eye(2) + sinh * np.array([[a, b], [b, -a]])
@@ -129,6 +169,7 @@ class _Points:
 
     def __init__(self, rings, spokes, spoke_deg, *, alike):
         self.alike = alike
+        self.muted = np.zeros(len(rings) + len(spokes), bool)
         lists = [*rings, *spokes]
         self.line = np.concatenate([np.full(int(p.good.sum()), k) for k, p in enumerate(lists)])
         self.xy = np.stack([np.concatenate([getattr(p, name)[p.good] for p in lists]) for name in "xy"])
@@ -142,7 +183,7 @@ class _Points:
         self.n_clusters = int(self.cluster.max(initial=-1)) + 1
 
     def equations(self, plane, rho):
-        """Residuals (n,) in px and their derivatives (n, 8) to the plane's parameters."""
+        """Residuals (n,) in px and their derivatives (n, 10) to the parameters."""
         affine = _affine_of(plane)
         inverse = np.linalg.inv(affine)
         tilt = plane[[TILT_X, TILT_Y]]
@@ -152,20 +193,22 @@ class _Points:
         r = np.hypot(*w)
         px = np.exp(plane[SIZE])
         target = np.r_[rho, np.zeros(self.n_lines - self.n_rings)][self.line]
-        residual = px * np.where(self.is_ring, r - target, (w * self.across).sum(axis=0))
+        hub = self.across * ~self.is_ring
+        residual = px * np.where(self.is_ring, r - target, (w * self.across).sum(axis=0)) - plane[[HUB_U, HUB_V]] @ hub
         # direction in the plane along which the residual is measured, carried back to y
         way = np.where(self.is_ring, w / np.maximum(r, 1e-9), self.across)
         back = way * shrink + np.outer(tilt, (way * w).sum(axis=0) * shrink)
-        jac = np.empty((len(r), N_PLANE))
+        jac = np.empty((len(r), N_ALL))
+        jac[:, [HUB_U, HUB_V]] = -hub.T
         jac[:, [CX, CY]] = -px * (inverse.T @ back).T
         for k in (SIZE, TURN, STRETCH_A, STRETCH_B):
-            change = np.zeros(N_PLANE)
+            change = np.zeros(N_ALL)
             change[k] = 1e-6
             slope = inverse @ (_affine_of(plane + change) - _affine_of(plane - change)) / 2e-6
             jac[:, k] = -px * (back * (slope @ y)).sum(axis=0)
         along = (way * w).sum(axis=0)
         jac[:, TILT_X], jac[:, TILT_Y] = px * along * w[0], px * along * w[1]
-        jac[:, SIZE] += residual
+        jac[:, SIZE] += residual + plane[[HUB_U, HUB_V]] @ hub
         return residual, jac
 
 
@@ -181,11 +224,13 @@ class _State:
     sigma: np.ndarray
     jac: np.ndarray
     normal: np.ndarray
+    centre_jac: np.ndarray
 
 
 def _iterate(points, plane, rho, model):
     """Tukey-weighted Gauss-Newton for the parameters named by `model` and the radii of all rings but the first."""
-    first_plane, first_rho = plane, rho
+    first_plane, first_rho = plane.copy(), rho
+    first_plane[[HUB_U, HUB_V]] = 0
     plane, rho = plane.copy(), rho.copy()
     hold = np.r_[LOOSE[model], np.full(points.n_rings - 1, LOOSE_RHO)] ** -2
     for round_ in range(MAX_ROUNDS):
@@ -206,7 +251,7 @@ def _iterate(points, plane, rho, model):
         rho[1:] += step[len(model) :]
         if round_ >= 2 and np.abs(step[:2]).max() < 3e-4:
             break
-    return _State(plane, rho, model, residual, weight, sigma, full, normal)
+    return _State(plane, rho, model, residual, weight, sigma, full, normal, jac[:, [CX, CY]])
 
 
 def _normal_equations(points, jac, residual, weight, px):
@@ -241,6 +286,7 @@ def _line_sigma(points, residual):
             sigma[k] = scatter(residual[first:last])
     if points.alike:
         sigma[:] = median(sigma)
+    sigma[points.muted] *= MUTE
     return np.maximum(sigma, MIN_SIGMA_PX)
 
 
@@ -264,6 +310,8 @@ def _better(rich, plain, points):
 def _finish(points, state):
     """Covariances and scatter of the chosen model."""
     plane, jac, n_model = state.plane, state.jac, len(state.model)
+    inside = [k for k in range(n_model) if state.model[k] < N_PLANE]
+    model = [state.model[k] for k in inside]
     scale = np.sqrt(np.maximum(np.diag(state.normal), 1e-12))
     outer = np.outer(scale, scale)
     inverse = np.linalg.inv(state.normal / outer + 1e-9 * np.eye(len(scale))) / outer
@@ -277,19 +325,19 @@ def _finish(points, state):
     spread = push.T @ push * points.n_clusters / max(points.n_clusters - len(scale), 1)
     full = inverse @ spread @ inverse
     cov = np.zeros((N_PLANE, N_PLANE))
-    cov[np.ix_(state.model, state.model)] = full[:n_model, :n_model]
+    cov[np.ix_(model, model)] = full[np.ix_(inside, inside)]
     for k, floor in ((CX, SYSTEMATIC_PX / 2), (CY, SYSTEMATIC_PX / 2), (SIZE, SYSTEMATIC_PX / px)):
         cov[k, k] += floor**2
     to_h = np.empty((8, N_PLANE))
     for k in range(N_PLANE):
-        change = np.zeros(N_PLANE)
+        change = np.zeros(N_ALL)
         change[k] = 1e-4 if k in (CX, CY) else 1e-6
         to_h[:, k] = (homography_of(plane + change) - homography_of(plane - change)).ravel()[:8] / (2 * change[k])
     rho_u = np.zeros(points.n_rings)
     rho_u[1:] = np.sqrt(np.maximum(np.diag(full)[n_model:], 0) + (SYSTEMATIC_PX / px) ** 2)
     used = state.weight > 0
     return PlaneFit(
-        parameters=plane,
+        parameters=plane[:N_PLANE],
         homography=homography_of(plane),
         covariance=to_h @ cov @ to_h.T,
         ring_rho=state.rho,
