@@ -28,12 +28,18 @@ def bearing_from_labels(grid, labels, *, zero_deg=None, turn=None):
         assumed = [f"0 at the {'top' if zero_deg is None else 'told place'}", turn or "cw"]
         reasons = (reason("bearing-assumed", 0, f"{', '.join(assumed)} is assumed"),)
         at = 0.0 if zero_deg is None else zero_deg
-        return Bearing(zero_deg=at, turn=turn or "cw", u_deg=float(grid.skew_u_deg), source="assumed", reasons=reasons)
+        return Bearing(
+            zero_deg=at, turn=turn or "cw", u_deg=float(grid.skew_u_deg), source="assumed", reasons=reasons
+        )
     at, u_deg = (zero_deg, float(grid.skew_u_deg)) if zero_deg is not None else _snapped(grid, vote)
     return Bearing(
-        zero_deg=float(at % 360), turn=vote.turn, u_deg=u_deg, source="labels",
-        signed=any(value < 0 for value in vote.values), reasons=tuple(_reasons(vote)),
-    )  # fmt: skip
+        zero_deg=float(at % 360),
+        turn=vote.turn,
+        u_deg=u_deg,
+        source="labels",
+        signed=any(value < 0 for value in vote.values),
+        reasons=tuple(_reasons(vote)),
+    )
 
 
 def _snapped(grid, vote):

@@ -1,7 +1,7 @@
 """Small print that the text detector overlooks: groups of ink of a letter's size on the cleaned sheet.
 
-A detector made for lines of text misses a lone "-3". With grid lines and colours gone, what is left inside the chart
-is traces, which are long, and letters; groups of letter-sized pieces are proposed as lines of text.
+A detector made for lines of text misses a lone "-3". With grid lines and colours gone, what is left inside
+the chart is traces, which are long, and letters; groups of letter-sized pieces are proposed as lines of text.
 """
 
 import cv2
@@ -75,4 +75,6 @@ def _line_of(points, cap_px):
     if not TALL[0] < height / cap_px < TALL[1] or length > LONGEST * cap_px:
         return None
     pad = 2 * PAD * cap_px
-    return Line(x=float(cx), y=float(cy), length=float(length + pad), height=float(height + pad), turn_deg=float(turn))
+    return Line(
+        x=float(cx), y=float(cy), length=float(length + pad), height=float(height + pad), turn_deg=float(turn)
+    )

@@ -1,8 +1,8 @@
 """The picture as letters want it: dark on light, colours and grid lines faded.
 
-Letters are read in spite of a crossing line, but a spoke through a number looks like a minus sign and a ring like a 1
-or a bracket. A pixel on a grid line that is no darker than the line's usual tone is filled in from both sides across
-the line, so that a stroke which runs over the line stays whole.
+Letters are read in spite of a crossing line, but a spoke through a number looks like a minus sign and a ring
+like a 1 or a bracket. A pixel on a grid line that is no darker than the line's usual tone is filled in from
+both sides across the line, so that a stroke which runs over the line stays whole.
 """
 
 import cv2
@@ -20,8 +20,9 @@ OUTSIDE_RHO = 1.03
 def clean_gray(rgb, grid):
     """(h, w) uint8 twice: letters dark on white; first with the grid lines left in, then with them filled.
 
-    Inside the chart grey is the strongest of the three colours, so that coloured traces fade on white while dark
-    letters stay; on dark paper the weakest, inverted. Outside, where no trace runs, it is the usual luma.
+    Inside the chart grey is the strongest of the three colours, so that coloured traces fade on white while
+    dark letters stay; on dark paper the weakest, inverted. Outside, where no trace runs, it is the usual
+    luma.
     """
     dark_paper = np.median(rgb[::4, ::4]) < DARK_PAPER
     luma = cv2.cvtColor(rgb, cv2.COLOR_RGB2GRAY)
@@ -66,9 +67,13 @@ def _fill_line(gray, line):
     offsets = np.arange(-np.ceil(half), np.ceil(half) + 0.5, 0.5)
     px, py = x[None] + offsets[:, None] * nx[None], y[None] + offsets[:, None] * ny[None]
     tone = cv2.remap(gray, px.astype(np.float32), py.astype(np.float32), cv2.INTER_LINEAR)
-    usual = np.percentile(tone, 25, axis=1, keepdims=True)  # a dashed line is inked on half its length or less
+    usual = np.percentile(
+        tone, 25, axis=1, keepdims=True
+    )  # a dashed line is inked on half its length or less
     reach = np.ceil(half) + 0.5
-    beside = [((x + side * nx).astype(np.float32), (y + side * ny).astype(np.float32)) for side in (-reach, reach)]
+    beside = [
+        ((x + side * nx).astype(np.float32), (y + side * ny).astype(np.float32)) for side in (-reach, reach)
+    ]
     sides = [cv2.remap(gray, *place, cv2.INTER_LINEAR).ravel() for place in beside]
     share = (offsets[:, None] + reach) / (2 * reach)
     between = (1 - share) * sides[0][None] + share * sides[1][None]

@@ -20,7 +20,8 @@ NEAR_RHO = 1.12  # rotated labels stand inside the chart or just outside it
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Seen:
-    """A line as read: its box on the sheet, text with its mean odds, place in the plane; the numbers that it may be.
+    """A line as read: its box on the sheet, text with its mean odds, place in the plane; the numbers that it
+    may be.
 
     levels, bearings : tuples of `NumberOdds`, best first; which of them is meant hangs on the place
     """
@@ -50,7 +51,9 @@ def find_lines(sheet, engine):
     lines = [Line(x=x, y=y, length=w, height=h, turn_deg=_settled(w, h, turn)) for x, y, w, h, turn in boxes]
     lines = [line.turned(-line.turn_deg) if _is_square(line) else line for line in lines]
     seen = read_lines(sheet, engine, lines)
-    seen += read_lines(sheet, engine, blob_lines(sheet, _cap_px(sheet, seen), taken=[s.line for s in seen if _done(s)]))
+    seen += read_lines(
+        sheet, engine, blob_lines(sheet, _cap_px(sheet, seen), taken=[s.line for s in seen if _done(s)])
+    )
     again = [(k, turned) for k, item in enumerate(seen) for turned in _other_ways(item)]
     for (k, _), item in zip(again, read_lines(sheet, engine, [turned for _, turned in again])):
         if item.number_odds > max(0.3, seen[k].number_odds):
@@ -64,7 +67,9 @@ def _done(item):
 
 
 def _cap_px(sheet, seen):
-    """Height of a capital on the sheet, px, from the numbers detected; a usual share of the chart without any."""
+    """Height of a capital on the sheet, px, from the numbers detected; a usual share of the chart without
+    any.
+    """
     heights = [item.line.height for item in seen if item.number_odds > SURE]
     return CAP_SHARE * float(np.median(heights)) if heights else USUAL_CAP * sheet.grid.outer_px
 
@@ -74,7 +79,9 @@ def read_lines(sheet, engine, lines, *, cleaned=True):
     if not lines:
         return []
     odds = engine.read([sheet.line_picture(line, cleaned=cleaned) for line in lines])
-    rho, plane = sheet.grid.to_plane(np.array([line.x for line in lines]), np.array([line.y for line in lines]))
+    rho, plane = sheet.grid.to_plane(
+        np.array([line.x for line in lines]), np.array([line.y for line in lines])
+    )
     seen = []
     for line, columns, r, angle in zip(lines, odds, rho, plane):
         text, text_odds = plain_text(columns, engine.characters)
@@ -82,10 +89,15 @@ def read_lines(sheet, engine, lines, *, cleaned=True):
         bearings = tuple(engine.alphabet.numbers(columns, "bearing")) if r > BEARING_RHO else ()
         seen.append(
             Seen(
-                line=line, text=text, text_odds=text_odds, levels=levels, bearings=bearings,
-                rho=float(r), plane_deg=float(angle),
+                line=line,
+                text=text,
+                text_odds=text_odds,
+                levels=levels,
+                bearings=bearings,
+                rho=float(r),
+                plane_deg=float(angle),
             )
-        )  # fmt: skip
+        )
     return seen
 
 

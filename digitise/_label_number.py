@@ -1,8 +1,10 @@
-"""Numbers in a line of text, with their odds: what a recogniser's columns say about every number that a chart prints.
+"""Numbers in a line of text, with their odds: what a recogniser's columns say about every number that a chart
+prints.
 
-A prefix search over the columns (Graves et al., ICML 2006, section 3.2) keeps only prefixes that can still become a
-sign, digits and a unit. Characters that look alike in small print count for each other with a discount: the capital O
-for a zero, a long dash for a minus. The odds of all texts add to 1, so what is missing is the odds of "no number".
+A prefix search over the columns (Graves et al., ICML 2006, section 3.2) keeps only prefixes that can still
+become a sign, digits and a unit. Characters that look alike in small print count for each other with a
+discount: the capital O for a zero, a long dash for a minus. The odds of all texts add to 1, so what is
+missing is the odds of "no number".
 """
 
 import math
@@ -14,9 +16,25 @@ import numpy as np
 __all__ = ["Alphabet", "NumberOdds", "plain_text"]
 
 LOOKS_LIKE = {
-    "0": "OoØøΟο〇○", "1": "lI|i丨", "2": "Zz", "3": "", "4": "", "5": "Ss", "6": "Gb", "7": "", "8": "B", "9": "gq",
-    "-": "−–—_~－一ー﹣‐‑", "+": "十＋", ".": ",·。", "d": "oc4a6", "B": "8bRРВ", "i": "l1I!", "°": "º˚oO'\"", " ": "",
-}  # fmt: skip
+    "0": "OoØøΟο〇○",
+    "1": "lI|i丨",
+    "2": "Zz",
+    "3": "",
+    "4": "",
+    "5": "Ss",
+    "6": "Gb",
+    "7": "",
+    "8": "B",
+    "9": "gq",
+    "-": "−–—_~－一ー﹣‐‑",
+    "+": "十＋",
+    ".": ",·。",
+    "d": "oc4a6",
+    "B": "8bRРВ",
+    "i": "l1I!",
+    "°": "º˚oO'\"",
+    " ": "",
+}
 ALIKE = 0.5  # what a look-alike counts
 DEGREE_FROM_ZERO = 0.15  # a raised ring may be read as a zero
 WHOLE = {
@@ -48,20 +66,27 @@ class Alphabet:
         for k, character in enumerate(characters):
             place.setdefault(character, k)
         self.symbols = list(LOOKS_LIKE)
-        self._classes = [[(place[c], 1.0 if c == s else ALIKE) for c in s + LOOKS_LIKE[s] if c in place] for s in self.symbols]
+        self._classes = [
+            [(place[c], 1.0 if c == s else ALIKE) for c in s + LOOKS_LIKE[s] if c in place]
+            for s in self.symbols
+        ]
 
     def numbers(self, log_odds, kind):
         """The likeliest numbers of a line, best first: list of `NumberOdds`.
 
-        log_odds : (columns, classes); kind : "bearing" (three digits, degree sign) or "level" (two digits, one
-        decimal, dB)
+        log_odds : (columns, classes); kind : "bearing" (three digits, degree sign) or "level" (two digits,
+            one decimal, dB)
         """
         odds = np.exp(log_odds)
-        columns = np.stack([sum(odds[:, k] * weight for k, weight in classes) for classes in self._classes], axis=1)
+        columns = np.stack(
+            [sum(odds[:, k] * weight for k, weight in classes) for classes in self._classes], axis=1
+        )
         degree, zero = self.symbols.index("°"), self.symbols.index("0")
         columns[:, degree] += DEGREE_FROM_ZERO * columns[:, zero]
         columns = np.minimum(columns, 1.0)
-        blank = np.minimum(odds[:, 0] + columns[:, self.symbols.index(" ")], 1.0)  # spaces carry no meaning here
+        blank = np.minimum(
+            odds[:, 0] + columns[:, self.symbols.index(" ")], 1.0
+        )  # spaces carry no meaning here
         return _gather(_prefix_search(self.symbols, columns, blank, PREFIX[kind]), WHOLE[kind])
 
 

@@ -1,8 +1,8 @@
 """Where the ring labels stand: along one ray from the chart's centre, at the same offset from every ring.
 
-The numbers found inside the chart propose rays. A ray is a direction, the turn of its letters, and the offset of the
-label's middle or of one of its ends from the ring; the offset nearest to the rings is taken, since labels are printed
-beside the ring that they name.
+The numbers found inside the chart propose rays. A ray is a direction, the turn of its letters, and the offset
+of the label's middle or of one of its ends from the ring; the offset nearest to the rings is taken, since
+labels are printed beside the ring that they name.
 """
 
 from dataclasses import dataclass
@@ -61,9 +61,12 @@ class Ray:
         turn = np.radians(self.turn_deg)
         back = -0.5 * self.anchor * (length - 2 * END_SHARE * self.height)
         return Line(
-            x=float(x + back * np.cos(turn)), y=float(y + back * np.sin(turn)), length=length,
-            height=self.height, turn_deg=self.turn_deg,
-        )  # fmt: skip
+            x=float(x + back * np.cos(turn)),
+            y=float(y + back * np.sin(turn)),
+            length=length,
+            height=self.height,
+            turn_deg=self.turn_deg,
+        )
 
     def place_of(self, grid, line):
         """Radius of the ring that a line's label would name, and its distance off the row, both rho."""
@@ -88,7 +91,11 @@ def find_rays(grid, seen, *, rim=()):
     rows = [_gather(grid, seen, marks, points, a, b) for a, b in proposals]
     long = [k for k in inside if seen[k].line.length > LONG * seen[k].line.height]
     rows += [_from_long(grid, seen[k].line, k) for k in long]
-    rows += [_from_long(grid, _levelled(seen[k].line), k) for k in long if 0 < abs(seen[k].line.turn_deg) < TURN_SLACK_DEG]
+    rows += [
+        _from_long(grid, _levelled(seen[k].line), k)
+        for k in long
+        if 0 < abs(seen[k].line.turn_deg) < TURN_SLACK_DEG
+    ]
     best = []
     for ray in sorted((row for row in rows if row is not None), key=lambda row: -row.score):
         if all(np.degrees(np.arccos(np.clip(ray.along @ other.along, -1, 1))) > APART_DEG for other in best):
@@ -113,7 +120,9 @@ def _plane_point(grid, line, anchor):
 
 
 def _gather(grid, seen, marks, points, first, second):
-    """The ray along the line through two points, with every mark that lies on it; None when it misses the centre."""
+    """The ray along the line through two points, with every mark that lies on it; None when it misses the
+    centre.
+    """
     step = first - second
     if np.hypot(*step) < 0.03:
         return None
@@ -123,11 +132,15 @@ def _gather(grid, seen, marks, points, first, second):
     across = np.array([-along[1], along[0]])
     side = float(first @ across)
     heights = {k: seen[k].line.height / grid.outer_px for k in marks}
-    on = [k for k in marks if abs(points[k] @ across - side) < SPREAD * heights[k] and points[k] @ along > -0.02]
+    on = [
+        k for k in marks if abs(points[k] @ across - side) < SPREAD * heights[k] and points[k] @ along > -0.02
+    ]
     if not on:
         return None
     turn = _usual_turn([seen[k] for k in on])
-    height = float(np.median([seen[k].line.height for k in on if abs(seen[k].line.turn_deg - turn) < TURN_SLACK_DEG]))
+    height = float(
+        np.median([seen[k].line.height for k in on if abs(seen[k].line.turn_deg - turn) < TURN_SLACK_DEG])
+    )
     on = [k for k in on if _alike(seen[k].line, turn, height)]
     if not on or abs(side) > BESIDE * height / grid.outer_px:
         return None
@@ -135,9 +148,15 @@ def _gather(grid, seen, marks, points, first, second):
 
 
 def _usual_turn(items):
-    """The turn that most of the lines agree on, by the odds of their numbers; a short line's turn says less."""
-    weights = [item.level_odds * (1.0 if item.line.length > 1.5 * item.line.height else 0.5) for item in items]
-    weights = [weight * (1.0 if item.line.turn_deg == 0 else 0.7) for weight, item in zip(weights, items)]  # most print is level
+    """The turn that most of the lines agree on, by the odds of their numbers; a short line's turn says
+    less.
+    """
+    weights = [
+        item.level_odds * (1.0 if item.line.length > 1.5 * item.line.height else 0.5) for item in items
+    ]
+    weights = [
+        weight * (1.0 if item.line.turn_deg == 0 else 0.7) for weight, item in zip(weights, items)
+    ]  # most print is level
     turns = np.array([item.line.turn_deg for item in items])
     off = np.abs((turns[:, None] - turns[None, :] + 180) % 360 - 180)
     return float(turns[np.argmax((off < TURN_SLACK_DEG) @ np.array(weights))])
@@ -170,11 +189,19 @@ def _anchored(grid, seen, on, along, across, turn_deg):
     tall = [h for h, w in zip(heights, lengths) if w > 1.5 * h] or heights
     score = sum(max(seen[k].level_odds, UNREAD) for k in on)
     return Ray(
-        along=along, across=across, side=side, shift=float(shift), anchor=anchor, turn_deg=turn_deg,
-        height=float(np.median(tall)), length=float(max(*lengths, 2.0 * np.median(tall))),
-        safe=abs(shift) < SAFE_SHIFT * gap, members=tuple(on), score=float(score),
+        along=along,
+        across=across,
+        side=side,
+        shift=float(shift),
+        anchor=anchor,
+        turn_deg=turn_deg,
+        height=float(np.median(tall)),
+        length=float(max(*lengths, 2.0 * np.median(tall))),
+        safe=abs(shift) < SAFE_SHIFT * gap,
+        members=tuple(on),
+        score=float(score),
         middle=middle,
-    )  # fmt: skip
+    )
 
 
 def _levelled(line):
@@ -188,7 +215,13 @@ def _from_long(grid, line, index):
     """The ray along one long line that runs towards the centre: a row of labels detected as one."""
     turn = np.radians(line.turn_deg)
     ends = [
-        _plane_point(grid, Line(x=line.x + s * np.cos(turn), y=line.y + s * np.sin(turn), length=0.0, height=0.0, turn_deg=0.0), 0)
+        _plane_point(
+            grid,
+            Line(
+                x=line.x + s * np.cos(turn), y=line.y + s * np.sin(turn), length=0.0, height=0.0, turn_deg=0.0
+            ),
+            0,
+        )
         for s in (-line.length / 2, line.length / 2)
     ]
     inner, outer = sorted(ends, key=lambda p: float(np.hypot(*p)))
@@ -201,10 +234,19 @@ def _from_long(grid, line, index):
     if abs(side) > BESIDE * line.height / grid.outer_px or outer @ along < 0:
         return None
     return Ray(
-        along=along, across=across, side=side, shift=0.0, anchor=0, turn_deg=line.turn_deg, height=line.height,
-        length=2.6 * line.height, safe=True, members=(index,), score=0.6,
+        along=along,
+        across=across,
+        side=side,
+        shift=0.0,
+        anchor=0,
+        turn_deg=line.turn_deg,
+        height=line.height,
+        length=2.6 * line.height,
+        safe=True,
+        members=(index,),
+        score=0.6,
         middle=(side, 0.0),
-    )  # fmt: skip
+    )
 
 
 def _gap(grid):

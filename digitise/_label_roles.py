@@ -1,7 +1,8 @@
-"""What a line of text that is no number is for: a caption above or below the chart, a legend entry, or other print.
+"""What a line of text that is no number is for: a caption above or below the chart, a legend entry, or other
+print.
 
-A legend entry has a sample of its trace beside it: a short level run of ink, thin against the letters, left of the
-text (or right of it). A caption stands above or below the rim, within the chart's width.
+A legend entry has a sample of its trace beside it: a short level run of ink, thin against the letters, left
+of the text (or right of it). A caption stands above or below the rim, within the chart's width.
 """
 
 import numpy as np
@@ -17,7 +18,7 @@ CAPTION_WIDE = 1.1  # outer radii from the centre line
 
 
 def role_of_text(sheet, seen):
-    """ "legend", "caption" or "other" for a `Seen` that is neither a ring nor a rim label."""
+    """Return "legend", "caption" or "other" for a `Seen` that is neither a ring nor a rim label."""
     line, grid = seen.line, sheet.grid
     letters = sum(character.isalpha() and character.isascii() for character in seen.text)
     if letters < 2 or sum(character.isalnum() for character in seen.text) < 3 or seen.number_odds > 0.3:

@@ -1,4 +1,6 @@
-"""The region of one chart at a size that suits letters, cleaned, and the lines of text cut out of it upright."""
+"""The region of one chart at a size that suits letters, cleaned, and the lines of text cut out of it
+upright.
+"""
 
 from dataclasses import dataclass, replace
 
@@ -9,7 +11,9 @@ from ._label_clean import clean_gray
 
 __all__ = ["LabelSheet", "Line", "cut_label_sheet"]
 
-SMALL_OUTER_PX = 420.0  # charts below are enlarged, by MAX_ZOOM at most: letters of 6 px are unreadable as they are
+SMALL_OUTER_PX = (
+    420.0  # charts below are enlarged, by MAX_ZOOM at most: letters of 6 px are unreadable as they are
+)
 LARGE_OUTER_PX = 700.0  # charts above are reduced: their letters stay large enough
 MAX_ZOOM = 2.5
 SHARPEN, SHARPEN_PX = 1.2, 2.0  # amount and radius of the unsharp mask, sheet px
@@ -38,8 +42,9 @@ class Line:
 class LabelSheet:
     """Working pictures of one chart's region.
 
-    clean : (h, w) uint8, letters dark on white, grid lines and colours faded; plain : (h, w) uint8, the same with
-    the lines left in; grid : the `Grid` in sheet px; x0, y0, zoom : sheet px = (picture px - x0 + 0.5) zoom - 0.5
+    clean : (h, w) uint8, letters dark on white, grid lines and colours faded; plain : (h, w) uint8, the same
+        with the lines left in; grid : the `Grid` in sheet px; x0, y0, zoom : sheet px = (picture px - x0 +
+        0.5) zoom - 0.5
     """
 
     clean: np.ndarray
@@ -58,7 +63,10 @@ class LabelSheet:
         scale = LINE_PX / max(line.height, 2.0)
         width = int(np.clip(round(line.length * scale), 8, 40 * LINE_PX))
         turn = np.radians(line.turn_deg)
-        along, down = np.array([np.cos(turn), np.sin(turn)]) / scale, np.array([-np.sin(turn), np.cos(turn)]) / scale
+        along, down = (
+            np.array([np.cos(turn), np.sin(turn)]) / scale,
+            np.array([-np.sin(turn), np.cos(turn)]) / scale,
+        )
         start = np.array([line.x, line.y]) - along * (width - 1) / 2 - down * (LINE_PX - 1) / 2
         to_sheet = np.array([[along[0], down[0], start[0]], [along[1], down[1], start[1]]])
         source = self.clean if cleaned else self.plain
@@ -71,7 +79,9 @@ def cut_label_sheet(picture, box, grid):
     """Cut the `LabelSheet` of the chart at `box`."""
     rgb = np.ascontiguousarray(picture.rgb[box.y : box.y + box.h, box.x : box.x + box.w])
     outer = max(grid.outer_px, 1.0)
-    zoom = min(MAX_ZOOM, SMALL_OUTER_PX / outer) if outer < SMALL_OUTER_PX else min(1.0, LARGE_OUTER_PX / outer)
+    zoom = (
+        min(MAX_ZOOM, SMALL_OUTER_PX / outer) if outer < SMALL_OUTER_PX else min(1.0, LARGE_OUTER_PX / outer)
+    )
     size = max(32, round(rgb.shape[1] * zoom)), max(32, round(rgb.shape[0] * zoom))
     if size != rgb.shape[1::-1]:
         rgb = cv2.resize(rgb, size, interpolation=cv2.INTER_AREA if zoom < 1 else cv2.INTER_CUBIC)

@@ -1,7 +1,8 @@
-"""Ring labels printed end to end along a ray: the whole row is read as one line and cut by columns at the rings.
+"""Ring labels printed end to end along a ray: the whole row is read as one line and cut by columns at the
+rings.
 
-A recogniser gives odds column by column, so every character has a place. Where labels stand closer than their own
-length, a crop of one holds pieces of its neighbours; the columns about each ring do not.
+A recogniser gives odds column by column, so every character has a place. Where labels stand closer than their
+own length, a crop of one holds pieces of its neighbours; the columns about each ring do not.
 """
 
 from dataclasses import replace
@@ -31,7 +32,9 @@ def strip_numbers(sheet, engine, ray, rings):
     Returns a list, one a trial shift, of (shift in rho, {ring: tuple of NumberOdds}), the plain one first.
     """
     grid = sheet.grid
-    places = np.array([(line.x, line.y) for line in (ray.line_at(grid, grid.ring_rho[ring]) for ring in rings)])
+    places = np.array(
+        [(line.x, line.y) for line in (ray.line_at(grid, grid.ring_rho[ring]) for ring in rings)]
+    )
     turn = np.radians(ray.turn_deg)
     along = places @ [np.cos(turn), np.sin(turn)]
     gap = float(np.median(np.abs(np.diff(along)))) if len(along) > 1 else ray.length
@@ -61,7 +64,13 @@ def _read_row(sheet, engine, ray, places, along, gap):
         off = start + (k + 0.5) * span - along.mean()
         base = ray.line_at(sheet.grid, 0.5)
         lines.append(
-            replace(base, x=middle[0] + off * np.cos(turn), y=middle[1] + off * np.sin(turn), length=span, height=1.1 * ray.height)
+            replace(
+                base,
+                x=middle[0] + off * np.cos(turn),
+                y=middle[1] + off * np.sin(turn),
+                length=span,
+                height=1.1 * ray.height,
+            )
         )
     odds = engine.read([sheet.line_picture(line) for line in lines])
     centres, kept = [], []

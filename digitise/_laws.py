@@ -1,8 +1,9 @@
 """The radial laws of polar charts: level against radius, and their weighted fit to rings of known level.
 
-Level here is in dB, rho is the radius with the outermost ring at 1. The logarithmic laws differ in one number, the dB
-per factor e of radius: field 20 log10(e), power 10 log10(e), log-periodic 2 / ln(1 / 0.89) (the grid of the amateur
-handbooks, whose lines are "spaced according to the logarithm of 0.89 times the value of the signal voltage").
+Level here is in dB, rho is the radius with the outermost ring at 1. The logarithmic laws differ in one
+number, the dB per factor e of radius: field 20 log10(e), power 10 log10(e), log-periodic 2 / ln(1 / 0.89)
+(the grid of the amateur handbooks, whose lines are "spaced according to the logarithm of 0.89 times the value
+of the signal voltage").
 """
 
 from dataclasses import dataclass
@@ -43,11 +44,12 @@ class LawFit:
 def fit_law(law, rho, rho_u, level_db):
     """Weighted least squares of radius on level: a `LawFit`.
 
-    rho, rho_u, level_db : (n,) radii, their standard uncertainties (> 0) and levels; n >= 2 for even, 1 for the others
+    rho, rho_u, level_db : (n,) radii, their standard uncertainties (> 0) and levels; n >= 2 for even, 1 for
+        the others
 
-    Radii are what is uncertain, levels are exact, so the radius is the dependent variable. The covariance is that of
-    the stated radius errors, raised to what the residuals show when these are larger (Bevington & Robinson, Data
-    Reduction and Error Analysis, ch. 6: reduced chi-squared).
+    Radii are what is uncertain, levels are exact, so the radius is the dependent variable. The covariance is
+    that of the stated radius errors, raised to what the residuals show when these are larger (Bevington &
+    Robinson, Data Reduction and Error Analysis, ch. 6: reduced chi-squared).
     """
     rho, rho_u, level_db = (np.asarray(value, float) for value in (rho, rho_u, level_db))
     weight = rho_u**-2.0
@@ -60,7 +62,9 @@ def fit_law(law, rho, rho_u, level_db):
     misfit = rho - rho_ref * shape
     covariance = np.zeros((2, 2))
     covariance[1, 1] = _spread(misfit, weight, 1) / norm
-    return LawFit(law=law, parameters=np.array([level_db[top], rho_ref]), covariance=covariance, misfit_rho=misfit)
+    return LawFit(
+        law=law, parameters=np.array([level_db[top], rho_ref]), covariance=covariance, misfit_rho=misfit
+    )
 
 
 def fit_laws(laws, rho, rho_u, level_db):
@@ -151,7 +155,9 @@ class Monotone:
 
     def _end_slope(self, outside):
         """Slope of the straight ends: the curve's own where it has one, else that of the last piece."""
-        ends = [d if d > 0.05 * s else s for d, s in ((self.d[0], self.secant[0]), (self.d[-1], self.secant[-1]))]
+        ends = [
+            d if d > 0.05 * s else s for d, s in ((self.d[0], self.secant[0]), (self.d[-1], self.secant[-1]))
+        ]
         return np.where(np.asarray(outside) < 0, ends[0], ends[1])
 
 

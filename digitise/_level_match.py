@@ -1,8 +1,8 @@
 """Ring levels given in a list against rings found, when their numbers differ: which ring is which.
 
-A faint ring may be missing from the grid, or an extra one in it. Under a law, the outermost level on the outermost
-ring and any other level on any other ring fix the scale; the pairing that puts every ring on a listed level is right,
-when it is the only one.
+A faint ring may be missing from the grid, or an extra one in it. Under a law, the outermost level on the
+outermost ring and any other level on any other ring fix the scale; the pairing that puts every ring on a
+listed level is right, when it is the only one.
 """
 
 import numpy as np

@@ -1,10 +1,10 @@
 """Which law and which levels the rings have: the ring labels vote.
 
-Every pair of readings proposes an even scale, every single reading a logarithmic one. A proposal is worth the odds of
-all readings that stand where it says, so one wrong label cannot win over two right ones; a reading whose minus sign
-was lost counts a little for its negative. Habits of the trade (whole dB, steps of 1, 2, 3, 5, 6, 10 or 20 dB, 0 or a
-multiple of the step at the rim) rank proposals that the labels alone do not tell apart; what rests on them is told
-from `support` and `margin`.
+Every pair of readings proposes an even scale, every single reading a logarithmic one. A proposal is worth the
+odds of all readings that stand where it says, so one wrong label cannot win over two right ones; a reading
+whose minus sign was lost counts a little for its negative. Habits of the trade (whole dB, steps of 1, 2, 3,
+5, 6, 10 or 20 dB, 0 or a multiple of the step at the rim) rank proposals that the labels alone do not tell
+apart; what rests on them is told from `support` and `margin`.
 """
 
 from dataclasses import dataclass
@@ -16,7 +16,10 @@ from ._laws import LOG_DB
 __all__ = ["LevelReading", "LevelVote", "vote_levels"]
 
 SIGN_LOST = 0.12  # share of a reading that counts for its negative: minus signs are thin
-ALL_LOST, ALL_LOST_COST = 0.8, 2.0  # the same where a whole chart's minus signs were lost, and the log odds of that
+ALL_LOST, ALL_LOST_COST = (
+    0.8,
+    2.0,
+)  # the same where a whole chart's minus signs were lost, and the log odds of that
 SIGN_MADE = 0.03  # and of a negative one for its positive: a grid line may look like a minus
 FLOOR = 0.02  # odds left to a label that is read wrong with confidence
 UNREAD = 0.2  # worth of the odds of "no number"
@@ -31,7 +34,8 @@ MAX_SPAN_DB = 150.0
 
 @dataclass(frozen=True, kw_only=True)
 class LevelReading:
-    """What a ring may say: its index (None where a label stands at no ring that was found), radius, (level, odds) pairs.
+    """What a ring may say: its index (None where a label stands at no ring that was found), radius, (level,
+    odds) pairs.
 
     rho_u : how far the radius may be off, rho
     """
@@ -97,14 +101,24 @@ def vote_levels(readings, *, ring_rho, outer_px, laws=("even", *LOG_DB)):
     others = [s for s, *kind in best[1:] if np.abs(_levels(*kind, probe) - mine).max() > SAME_DB]
     support, signed, against = _count(readings, law, outer, slope, slack)
     return LevelVote(
-        law=law, outer_db=outer, slope=slope, support=support, signed=signed, against=against, score=score,
+        law=law,
+        outer_db=outer,
+        slope=slope,
+        support=support,
+        signed=signed,
+        against=against,
+        score=score,
         margin=score - max(others, default=score - 99.0),
-    )  # fmt: skip
+    )
 
 
 def _flatten(readings, lost):
     """Radius, level, odds and index of every option of every reading, either sign of it."""
-    rows = [(r.rho, level, odds, k) for k, r in enumerate(readings) for level, odds in _with_signs(r.options, lost)]
+    rows = [
+        (r.rho, level, odds, k)
+        for k, r in enumerate(readings)
+        for level, odds in _with_signs(r.options, lost)
+    ]
     return tuple(np.array(column, float) for column in zip(*rows)) if rows else (np.zeros(0),) * 4
 
 
@@ -124,8 +138,15 @@ def _proposals(law, rho, level, owner):
         outer = level - LOG_DB[law] * np.log(rho)
         return outer, np.full(len(outer), np.nan)
     apart = np.abs(rho[:, None] - rho[None, :])
-    slope = np.divide(level[:, None] - level[None, :], rho[:, None] - rho[None, :], out=np.zeros(apart.shape), where=apart > 1e-6)
-    good = np.triu((owner[:, None] != owner[None, :]) & (apart > 0.02) & (slope > 2) & (slope < MAX_SPAN_DB), 1)
+    slope = np.divide(
+        level[:, None] - level[None, :],
+        rho[:, None] - rho[None, :],
+        out=np.zeros(apart.shape),
+        where=apart > 1e-6,
+    )
+    good = np.triu(
+        (owner[:, None] != owner[None, :]) & (apart > 0.02) & (slope > 2) & (slope < MAX_SPAN_DB), 1
+    )
     i, j = np.nonzero(good)
     return level[i] + slope[i, j] * (1 - rho[i]), slope[i, j]
 
@@ -156,7 +177,9 @@ def _agreement(law, outer, slope, options, slack):
 
 
 def _habit(law, outer, slope, ring_rho, tolerance):
-    """Log of how usual the proposals are (proposals,): whole levels on the rings, a usual step, a usual rim."""
+    """Log of how usual the proposals are (proposals,): whole levels on the rings, a usual step, a usual
+    rim.
+    """
     rings = ring_rho[ring_rho > 0.1]
     levels = np.stack([_levels(law, outer, slope, np.full(len(outer), r)) for r in rings], axis=1)
     per_rho = slope[:, None] if law == "even" else LOG_DB[law] / rings[None, :]
@@ -165,7 +188,10 @@ def _habit(law, outer, slope, ring_rho, tolerance):
     if law == "even" and len(rings) > 1:
         step = slope * np.median(-np.diff(rings))
         slack = slope * tolerance
-        near = [np.min(np.abs(step[:, None] - np.array(steps)), axis=1) < slack for steps in (USUAL_STEPS, RARE_STEPS)]
+        near = [
+            np.min(np.abs(step[:, None] - np.array(steps)), axis=1) < slack
+            for steps in (USUAL_STEPS, RARE_STEPS)
+        ]
         habit = habit - np.where(near[0], 0.0, np.where(near[1], 1.0, 2.0))
         off_step = np.abs(levels[:, 0] / step - np.round(levels[:, 0] / step)) * step
         habit = habit - np.where(np.abs(levels[:, 0]) < slack, 0.0, np.where(off_step < slack, 0.4, 1.2))

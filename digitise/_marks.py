@@ -1,4 +1,6 @@
-"""What the user says of levels (marks, ring levels, outer and centre) as rings of known level, or a clear refusal."""
+"""What the user says of levels (marks, ring levels, outer and centre) as rings of known level, or a clear
+refusal.
+"""
 
 from dataclasses import dataclass
 
@@ -62,14 +64,17 @@ def check_fall(anchors, option):
     for k, step in enumerate(np.diff(anchors.level_db)):
         if step >= 0:
             raise UsageError(
-                f"{option} levels do not fall inward: {anchors.level_db[k]:g} dB, then {anchors.level_db[k + 1]:g} dB",
+                f"{option} levels do not fall inward: {anchors.level_db[k]:g} dB, "
+                f"then {anchors.level_db[k + 1]:g} dB",
                 remedy="write attenuations with a minus sign, and check each level",
                 stage="scale",
             )
 
 
 def anchors_from_ring_levels(grid, ring_levels):
-    """`Anchors` of levels given ring by ring, outermost first; raises `UsageError` when their number differs."""
+    """`Anchors` of levels given ring by ring, outermost first; raises `UsageError` when their number
+    differs.
+    """
     n = len(grid.ring_rho)
     if len(ring_levels) != n:
         radii = ", ".join(f"{rho * grid.outer_px:.0f}" for rho in grid.ring_rho)
@@ -94,7 +99,8 @@ def _ring_of(grid, mark):
         radius = np.hypot(mark.x_px - x0, mark.y_px - y0)
         ring_radius = np.hypot(x[ring] - x0, y[ring] - y0)
         raise UsageError(
-            f"mark {_said(mark)} lies {radius:.0f} px from the centre, but the nearest ring at {ring_radius:.0f} px",
+            f"mark {_said(mark)} lies {radius:.0f} px from the centre, "
+            f"but the nearest ring at {ring_radius:.0f} px",
             remedy="put the mark on a drawn ring",
             stage="scale",
         )

@@ -1,9 +1,10 @@
 """Text detection and recognition by the models of an optional package, on this machine alone.
 
-The package named in the extra `labels` ships two small networks in its wheel: one marks where text is (Liao et al.,
-Real-time scene text detection with differentiable binarization, AAAI 2020), one reads a line of it and gives, for
-every column, the odds of every character (Graves et al., Connectionist temporal classification, ICML 2006). They are
-run directly, because the odds are needed: a ring label is known to be a number, so the reading is chosen among numbers.
+The package named in the extra `labels` ships two small networks in its wheel: one marks where text is (Liao
+et al., Real-time scene text detection with differentiable binarization, AAAI 2020), one reads a line of it
+and gives, for every column, the odds of every character (Graves et al., Connectionist temporal
+classification, ICML 2006). They are run directly, because the odds are needed: a ring label is known to be a
+number, so the reading is chosen among numbers.
 """
 
 import os
@@ -24,7 +25,15 @@ GROW = 1.6  # the map marks shrunken text; a box grows by this times area over p
 LINE_PX = 48  # height that the recogniser reads
 MIN_SIDE_PX = 3
 BATCH = 12
-WIDTHS = (64, 96, 128, 192, 320, 480, 768)  # px of a batch; few of them, so that the runtime reuses its memory
+WIDTHS = (
+    64,
+    96,
+    128,
+    192,
+    320,
+    480,
+    768,
+)  # px of a batch; few of them, so that the runtime reuses its memory
 CHUNK = 32  # detector sizes are multiples of this
 COLUMN_PX = 8  # px of a line, LINE_PX high, to a column of odds
 
@@ -56,7 +65,9 @@ def _make_engine():
     from importlib import util
 
     folder = os.path.join(os.path.dirname(util.find_spec(PACKAGE).origin), "models")
-    names = sorted(name for name in (os.listdir(folder) if os.path.isdir(folder) else ()) if name.endswith(".onnx"))
+    names = sorted(
+        name for name in (os.listdir(folder) if os.path.isdir(folder) else ()) if name.endswith(".onnx")
+    )
     detector = [name for name in names if "_det_" in name]
     reader = [name for name in names if "_rec_" in name]
     if not detector or not reader:
@@ -73,7 +84,9 @@ class Engine:
         import onnxruntime
 
         options = onnxruntime.SessionOptions()
-        options.intra_op_num_threads = options.inter_op_num_threads = 1  # one core a chart; batches run in parallel
+        options.intra_op_num_threads = options.inter_op_num_threads = (
+            1  # one core a chart; batches run in parallel
+        )
         options.log_severity_level = 3
 
         def load(path):
@@ -85,7 +98,8 @@ class Engine:
         self.alphabet = Alphabet(self.characters)
 
     def detect(self, rgb, *, zoom=1.0):
-        """Boxes of text on a picture: (n, 5) centre x, centre y, length, height (px) and turn (degrees clockwise).
+        """Boxes of text on a picture: (n, 5) centre x, centre y, length, height (px) and turn (degrees
+        clockwise).
 
         zoom : the picture is enlarged (or reduced) so much first
         """
@@ -117,7 +131,9 @@ class Engine:
             for row, k in zip(batch, chosen):
                 width = min(widths[k], wide)
                 smooth = cv2.INTER_AREA if lines[k].shape[0] > LINE_PX else cv2.INTER_CUBIC
-                row[:, :width] = np.clip(cv2.resize(lines[k].astype(np.float32), (width, LINE_PX), interpolation=smooth), 0, 255)
+                row[:, :width] = np.clip(
+                    cv2.resize(lines[k].astype(np.float32), (width, LINE_PX), interpolation=smooth), 0, 255
+                )
             for k, odds in zip(chosen, self._run(self._reader, batch)):
                 out[k] = np.log(np.maximum(odds, 1e-9))
         return out

@@ -1,8 +1,9 @@
 """Where 0 is printed and which way bearings grow: the rim labels vote.
 
-Under a supposed zero and turn every label should stand at its own value. Each label votes with the odds of its
-readings; the best zero and turn win when another turn or zero would leave clearly more labels unexplained. Labels that
-read the same both ways (0, 90, 180, 90) explain both turns equally well, and that is said.
+Under a supposed zero and turn every label should stand at its own value. Each label votes with the odds of
+its readings; the best zero and turn win when another turn or zero would leave clearly more labels
+unexplained. Labels that read the same both ways (0, 90, 180, 90) explain both turns equally well, and that is
+said.
 """
 
 from dataclasses import dataclass
@@ -21,8 +22,8 @@ class RimVote:
     """The winning zero (plane angle, degrees) and turn.
 
     members : indices of the labels that agree; values : the bearing that each of them is read as
-    score, rival_score : sum of odds for this zero and turn, and for the best other one; mirror_score : for the best
-    with the other turn; spread_deg : rms of the members' places about their bearings
+    score, rival_score : sum of odds for this zero and turn, and for the best other one; mirror_score : for
+        the best with the other turn; spread_deg : rms of the members' places about their bearings
     """
 
     zero_deg: float
@@ -60,10 +61,15 @@ def vote_rim(plane_deg, options, *, zero_deg=None, turn=None):
     rivals = [s for s, t, _, z in scored if t != turn or abs(_wrap(z - zero)) > OTHER_DEG]
     mirrors = [s for s, t, _, _ in scored if t != turn]
     return RimVote(
-        zero_deg=float(zero % 360), turn=turn, members=tuple(int(k) for k in owner[member]),
-        values=tuple(float(v) for v in value[member]), score=float(score), rival_score=float(max(rivals, default=0.0)),
-        mirror_score=float(max(mirrors, default=0.0)), spread_deg=float(np.sqrt(np.mean(off[member] ** 2))) if member.any() else np.nan,
-    )  # fmt: skip
+        zero_deg=float(zero % 360),
+        turn=turn,
+        members=tuple(int(k) for k in owner[member]),
+        values=tuple(float(v) for v in value[member]),
+        score=float(score),
+        rival_score=float(max(rivals, default=0.0)),
+        mirror_score=float(max(mirrors, default=0.0)),
+        spread_deg=float(np.sqrt(np.mean(off[member] ** 2))) if member.any() else np.nan,
+    )
 
 
 def _zeros(offsets):

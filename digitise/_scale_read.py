@@ -1,8 +1,9 @@
 """The scale from the printed ring labels, with what the user told laid on top.
 
-The labels vote for a law and levels (`_level_vote`); the rings that they name, and the other drawn rings that stand at
-whole steps of the same scale, then fix it by least squares. How sure that is shows in how many labels agree, whether
-any as sure disagrees, and how far the best other scale is behind; below the bounds here the scale carries a reason.
+The labels vote for a law and levels (`_level_vote`); the rings that they name, and the other drawn rings that
+stand at whole steps of the same scale, then fix it by least squares. How sure that is shows in how many
+labels agree, whether any as sure disagrees, and how far the best other scale is behind; below the bounds here
+the scale carries a reason.
 """
 
 import numpy as np
@@ -18,6 +19,7 @@ __all__ = ["scale_from_labels"]
 
 ENOUGH = 3  # labels that agree, with which habits of the trade are not needed
 SURE_MARGIN = 3.0  # log odds by which the next scale must be behind, with ENOUGH labels
+CLEAR_MARGIN = 5.0  # with which up to half as many may disagree
 PAIR_MARGIN = 3.5  # and with two
 ALONE_MARGIN = 3.0  # and with one label, to go on at all
 ON_STEP_PX = 0.5  # a drawn ring this near to a whole step of the scale is taken to stand on it
@@ -31,9 +33,16 @@ def scale_from_labels(grid, *, settings, labels):
     laws = (settings.law,) if settings.law in ("even", *LOG_DB) else ("even", *LOG_DB)
     if settings.centre_db is not None:
         laws = ("even",)
-    vote = vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px, laws=laws) if readings else None
+    vote = (
+        vote_levels(readings, ring_rho=grid.ring_rho, outer_px=grid.outer_px, laws=laws) if readings else None
+    )
     n_read = sum(1 for item in readings if item.options[0][1] >= 0.5 and item.ring not in told)
-    if vote is None or not n_read or not vote.support or (len(vote.support) < 2 and vote.margin < ALONE_MARGIN):
+    if (
+        vote is None
+        or not n_read
+        or not vote.support
+        or (len(vote.support) < 2 and vote.margin < ALONE_MARGIN)
+    ):
         raise _refusal(settings, labels, n_read)
     anchors = _anchors(grid, vote, told)
     fit = fit_law(vote.law, anchors.rho, anchors.rho_u, anchors.level_db)
@@ -66,7 +75,9 @@ def _readings(grid, labels, told):
         if not options:
             continue
         if label.ring_rho_u > 0:
-            lone.append(LevelReading(ring=None, rho=label.ring_rho, rho_u=label.ring_rho_u, options=tuple(options)))
+            lone.append(
+                LevelReading(ring=None, rho=label.ring_rho, rho_u=label.ring_rho_u, options=tuple(options))
+            )
             continue
         rho = label.ring_rho if np.isfinite(label.ring_rho) else label.rho
         ring = int(np.argmin(np.abs(grid.ring_rho - rho)))
@@ -78,7 +89,9 @@ def _readings(grid, labels, told):
 
 
 def _anchors(grid, vote, told):
-    """Rings of known level: those whose labels agree, and the others that stand at whole steps of the same scale."""
+    """Rings of known level: those whose labels agree, and the others that stand at whole steps of the same
+    scale.
+    """
     level = {**{ring: value for ring, value in vote.support if ring is not None}, **told}
     values = np.array(sorted({value for _, value in vote.support} | set(told.values())))
     scale_level = vote.level(grid.ring_rho)
@@ -95,7 +108,8 @@ def _anchors(grid, vote, told):
 
 def _reasons(vote, labels, n_read, off_px):
     n, detail = len(vote.support), f"law {vote.law}, outermost ring {vote.outer_db:.3g} dB"
-    enough = n >= ENOUGH and vote.margin >= SURE_MARGIN and vote.against <= n / 3
+    few_against = vote.against <= n / 3 or (vote.against <= n / 2 and vote.margin >= CLEAR_MARGIN)
+    enough = n >= ENOUGH and vote.margin >= SURE_MARGIN and few_against
     pair = n == vote.signed == 2 and vote.margin >= PAIR_MARGIN and vote.against == 0 and vote.law == "even"
     if not (enough or pair):
         yield reason("levels-guessed", n, detail)
@@ -113,7 +127,10 @@ def _refusal(settings, labels, n_read=0):
     if labels is None or not labels.engine:
         lacking += [] if settings.zero_deg is not None else ["--zero"]
         lacking += [] if settings.turn is not None else ["--turn"]
-        cause, also = "the ring levels are not told and labels are not read here", ', or install "digitise[labels]"'
+        cause, also = (
+            "the ring levels are not told and labels are not read here",
+            ', or install "digitise[labels]"',
+        )
     else:
         cause = "no ring labels were found" if n_read == 0 else f"the {n_read} ring labels read fit no scale"
         lacking += [] if settings.law else ["--law"]

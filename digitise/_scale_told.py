@@ -40,7 +40,9 @@ def scale_from_told(grid, *, settings, labels=None):
         return None
     if law in LOG_DB:
         anchors = Anchors.of(grid, [0], [settings.outer_db])
-        return to_scale(grid, fit_law(law, anchors.rho, anchors.rho_u, anchors.level_db), anchors, unit, "outer-centre")
+        return to_scale(
+            grid, fit_law(law, anchors.rho, anchors.rho_u, anchors.level_db), anchors, unit, "outer-centre"
+        )
     if settings.centre_db is None:
         return None
     return _from_outer_centre(grid, settings.outer_db, settings.centre_db, unit)
@@ -64,7 +66,9 @@ def to_scale(grid, fit, anchors, unit, source, reasons=()):
 
 def unit_of(labels):
     """The unit that most labels print, "" when none does."""
-    units = [label.unit for label in labels.found if label.unit.startswith("dB")] if labels is not None else []
+    units = (
+        [label.unit for label in labels.found if label.unit.startswith("dB")] if labels is not None else []
+    )
     return max(sorted(set(units)), key=units.count) if units else ""
 
 
@@ -77,7 +81,9 @@ def _from_outer_centre(grid, outer_db, centre_db, unit):
         )
     anchors = Anchors.of(grid, [0, -1], [outer_db, centre_db])
     rho_u = np.array([anchors.rho_u[0], MIN_RING_U_PX / grid.outer_px])
-    return to_scale(grid, fit_law("even", anchors.rho, rho_u, anchors.level_db), anchors, unit, "outer-centre")
+    return to_scale(
+        grid, fit_law("even", anchors.rho, rho_u, anchors.level_db), anchors, unit, "outer-centre"
+    )
 
 
 def _from_marks(grid, marks, law, unit):
@@ -93,7 +99,8 @@ def _from_marks(grid, marks, law, unit):
     if off_px > REFUSE_PX:
         odd = fit.worst
         raise UsageError(
-            f"the marks fit no {'law' if law is None else f'--law {law}'} (best {fit.law}, {off_px:.1f} px off at "
+            f"the marks fit no {'law' if law is None else f'--law {law}'} "
+            f"(best {fit.law}, {off_px:.1f} px off at "
             f"{anchors.level_db[odd]:g} dB, radius {anchors.rho[odd] * grid.outer_px:.0f} px)",
             remedy="check the levels, or give them ring by ring with --law rings --ring-levels",
             stage="scale",
@@ -110,7 +117,8 @@ def _from_ring_levels(grid, anchors, law, unit):
         return _through_rings(anchors, unit)
     if off_px > REFUSE_PX:
         raise UsageError(
-            f"the ring levels fit --law {law} only to {off_px:.1f} px (worst at {anchors.level_db[fit.worst]:g} dB)",
+            f"the ring levels fit --law {law} only to {off_px:.1f} px "
+            f"(worst at {anchors.level_db[fit.worst]:g} dB)",
             remedy="check the levels, or use --law rings",
             stage="scale",
         )
@@ -143,7 +151,9 @@ def _fit(grid, anchors, law):
     fit, *others = fit_laws(laws, *data)
     reasons = _doubt(grid, fit)
     if not reasons and any(np.abs(other.misfit_rho).max() * grid.outer_px < FIT_PX for other in others):
-        reasons = [reason("law-doubtful", fit.rms_rho * grid.outer_px, f"{fit.law} (and the {others[0].law})")]
+        reasons = [
+            reason("law-doubtful", fit.rms_rho * grid.outer_px, f"{fit.law} (and the {others[0].law})")
+        ]
     return fit, reasons
 
 
@@ -155,13 +165,17 @@ def _doubt(grid, fit):
 def _even_or_round(grid, data):
     """The law for two known rings: even, unless the rings between them speak for another.
 
-    Two rings fit any law. The other drawn rings decide: under the right law they are evenly spaced, or stand at whole
-    dB. When that holds for no law, the even one carries a reason.
+    Two rings fit any law. The other drawn rings decide: under the right law they are evenly spaced, or stand
+    at whole dB. When that holds for no law, the even one carries a reason.
     """
     fits = {law: fit_law(law, *data) for law in (("even",) if data[0][-1] == 0 else ("even", *LOG_DB))}
     rho = grid.ring_rho[(grid.ring_rho < data[0].max() - 1e-6) & (grid.ring_rho > data[0].min() + 1e-6)]
     off = {law: whole_db_misfit(fit, rho, grid.outer_px) for law, fit in fits.items()}
-    if not len(rho) or evenly_spaced(np.concatenate([data[0], rho]), grid.outer_px) or off["even"][0] < FIT_PX:
+    if (
+        not len(rho)
+        or evenly_spaced(np.concatenate([data[0], rho]), grid.outer_px)
+        or off["even"][0] < FIT_PX
+    ):
         return fits["even"], []
     law = min(off, key=lambda name: off[name][0])
     worst_px, chance = off[law]
@@ -175,9 +189,15 @@ def whole_db_misfit(fit, rho, outer_px):
     if not len(rho):
         return 0.0, 1.0
     scale = Scale(
-        law=fit.law, parameters=fit.parameters, covariance=fit.covariance, anchor_rho=rho, anchor_db=rho, unit="",
-        residual_px=0.0, source="",
-    )  # fmt: skip
+        law=fit.law,
+        parameters=fit.parameters,
+        covariance=fit.covariance,
+        anchor_rho=rho,
+        anchor_db=rho,
+        unit="",
+        residual_px=0.0,
+        source="",
+    )
     off_px = np.abs(scale.rho(np.round(scale.level(rho))) - rho) * outer_px
     px_per_db = outer_px / scale.slope(rho)
     return float(off_px.max()), float(np.prod(np.minimum(1.0, 2 * np.maximum(off_px, 0.3) / px_per_db)))
@@ -187,4 +207,6 @@ def evenly_spaced(rho, outer_px):
     """Whether radii are whole multiples of one step (one ring may be missing or extra at either end)."""
     gaps = -np.diff(np.unique(np.round(rho * outer_px, 3))[::-1])
     step = np.median(gaps)
-    return bool(np.all(np.abs(gaps / step - np.round(gaps / step)) * step < FIT_PX) and np.all(gaps > step / 2))
+    return bool(
+        np.all(np.abs(gaps / step - np.round(gaps / step)) * step < FIT_PX) and np.all(gaps > step / 2)
+    )

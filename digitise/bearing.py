@@ -1,7 +1,7 @@
 """The bearing: where 0 degrees is printed and which way angles grow.
 
-What the user told wins; the rim labels give the rest. Where neither tells, 0 at the top and clockwise is assumed and
-the bearing carries a review reason.
+What the user told wins; the rim labels give the rest. Where neither tells, 0 at the top and clockwise is
+assumed and the bearing carries a review reason.
 """
 
 from dataclasses import dataclass
@@ -57,7 +57,8 @@ def make_bearing(grid, *, settings, labels=None):
     if labels is None or not labels.engine:
         lacking = [name for name, told in (("--zero", zero_deg), ("--turn", settings.turn)) if told is None]
         raise NotReadError(
-            "where the chart prints 0 degrees and which way angles grow is not told, and labels are not read here",
+            "where the chart prints 0 degrees and which way angles grow is not told, "
+            "and labels are not read here",
             remedy=f'give {" and ".join(lacking)}, or install "digitise[labels]"',
             stage="bearing",
         )
@@ -69,8 +70,8 @@ def make_bearing(grid, *, settings, labels=None):
 def _told_zero(grid, page_deg):
     """Plane angle of a told zero.
 
-    A word, or an angle that spokes stand at, means the chart's own direction: a skewed chart has its 0 at its own top.
-    Any other angle was measured on the picture, so it is carried through the grid.
+    A word, or an angle that spokes stand at, means the chart's own direction: a skewed chart has its 0 at its
+    own top. Any other angle was measured on the picture, so it is carried through the grid.
     """
     step = grid.spoke_step_deg if np.isfinite(grid.spoke_step_deg) else RIGHT_ANGLE_DEG
     for unit in (RIGHT_ANGLE_DEG, step):

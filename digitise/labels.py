@@ -1,9 +1,10 @@
 """Printed ring levels, units, bearings, captions and legends, read with an optional OCR engine.
 
-The region of the chart is brought to a size that suits letters and its grid lines are filled in (`_label_sheet`);
-lines of text are detected and read as text and as numbers (`_label_lines`); numbers outside the rim vote for the
-bearing (`_rim_vote`); numbers inside propose rays on which the ring labels stand, and there one crop a ring is read
-again (`_label_rings`). What the numbers mean together is left to the stages scale and bearing.
+The region of the chart is brought to a size that suits letters and its grid lines are filled in
+(`_label_sheet`); lines of text are detected and read as text and as numbers (`_label_lines`); numbers outside
+the rim vote for the bearing (`_rim_vote`); numbers inside propose rays on which the ring labels stand, and
+there one crop a ring is read again (`_label_rings`). What the numbers mean together is left to the stages
+scale and bearing.
 """
 
 from dataclasses import dataclass
@@ -29,8 +30,8 @@ class Label:
     rho, plane_deg : centre in the chart plane; confidence : 0 to 1
     role : "ring", "rim", "caption", "legend", "other"
     readings : ((value, odds), ...) best first, for ring and rim labels
-    ring_rho, ring_rho_u : radius of the ring that a ring label names, NaN for others, and how far it may be off (0 for
-        a ring that the grid holds)
+    ring_rho, ring_rho_u : radius of the ring that a ring label names, NaN for others, and how far it may be
+        off (0 for a ring that the grid holds)
     """
 
     text: str
@@ -52,7 +53,8 @@ class Label:
 
 @dataclass(frozen=True, kw_only=True)
 class Labels:
-    """All text found near one chart: tuple of `Label`; engine is the OCR engine's name, "" when none is installed.
+    """All text found near one chart: tuple of `Label`; engine is the OCR engine's name, "" when none is
+    installed.
 
     ring_safe : whether the ring labels stand at their rings, not midway between two
     """
@@ -87,7 +89,11 @@ def read_labels(picture, box, grid):
     found = [_ring_label(sheet, text) for text in texts]
     used = {id(text.seen) for text in texts}
     for k, item in enumerate(seen):
-        if not item.text.strip() or id(item) in used or any(_overlap(item.line, text.seen.line) for text in texts):
+        if (
+            not item.text.strip()
+            or id(item) in used
+            or any(_overlap(item.line, text.seen.line) for text in texts)
+        ):
             continue
         if k in rim or item.text_odds > TEXT_ODDS:
             found.append(_rim_label(sheet, item, rim[k]) if k in rim else _text_label(sheet, item))
@@ -110,7 +116,9 @@ def _rim_members(seen):
     near = [
         k
         for k, item in enumerate(seen)
-        if RIM_FROM < item.rho < RIM_TO and item.number_odds > RIM_ODDS and abs(item.line.turn_deg) < RIM_TURN_DEG
+        if RIM_FROM < item.rho < RIM_TO
+        and item.number_odds > RIM_ODDS
+        and abs(item.line.turn_deg) < RIM_TURN_DEG
     ]
     vote = vote_rim([seen[k].plane_deg for k in near], [bearing_options(seen[k]) for k in near])
     return {near[k]: value for k, value in zip(vote.members, vote.values)} if vote else {}
@@ -118,31 +126,48 @@ def _rim_members(seen):
 
 def _overlap(line, other):
     """Whether two lines are the same print."""
-    return np.hypot(line.x - other.x, line.y - other.y) < 0.5 * max(line.height, 0.6 * min(line.length, other.length))
+    return np.hypot(line.x - other.x, line.y - other.y) < 0.5 * max(
+        line.height, 0.6 * min(line.length, other.length)
+    )
 
 
 def _label(sheet, seen, **fields):
     x, y = sheet.to_picture(seen.line.x, seen.line.y)
     return Label(
-        text=seen.text, x_px=float(x), y_px=float(y), w_px=seen.line.length / sheet.zoom,
-        h_px=seen.line.height / sheet.zoom, angle_deg=seen.line.turn_deg, rho=seen.rho, plane_deg=seen.plane_deg, **fields,
-    )  # fmt: skip
+        text=seen.text,
+        x_px=float(x),
+        y_px=float(y),
+        w_px=seen.line.length / sheet.zoom,
+        h_px=seen.line.height / sheet.zoom,
+        angle_deg=seen.line.turn_deg,
+        rho=seen.rho,
+        plane_deg=seen.plane_deg,
+        **fields,
+    )
 
 
 def _ring_label(sheet, text):
     best = text.numbers[0]
     return _label(
-        sheet, text.seen, value=best.value, unit=best.unit, confidence=best.odds, role="ring",
+        sheet,
+        text.seen,
+        value=best.value,
+        unit=best.unit,
+        confidence=best.odds,
+        role="ring",
         readings=tuple((number.value, number.odds) for number in text.numbers),
-        ring_rho=text.rho, ring_rho_u=text.rho_u,
-    )  # fmt: skip
+        ring_rho=text.rho,
+        ring_rho_u=text.rho_u,
+    )
 
 
 def _rim_label(sheet, seen, bearing):
     options = bearing_options(seen)
     odds = dict(options).get(bearing, 0.0)
     unit = "deg" if any(number.unit == "deg" for number in seen.bearings[:1]) else ""
-    return _label(sheet, seen, value=bearing, unit=unit, confidence=min(1.0, odds), role="rim", readings=options)
+    return _label(
+        sheet, seen, value=bearing, unit=unit, confidence=min(1.0, odds), role="rim", readings=options
+    )
 
 
 def _text_label(sheet, seen):
@@ -151,6 +176,10 @@ def _text_label(sheet, seen):
     number = max((*seen.levels[:1], *seen.bearings[:1]), key=lambda item: item.odds, default=None)
     number = number if number is not None and number.odds > 0.5 else None
     return _label(
-        sheet, seen, value=number.value if number else None, unit=number.unit if number else "",
-        confidence=seen.text_odds, role=role_of_text(sheet, seen),
-    )  # fmt: skip
+        sheet,
+        seen,
+        value=number.value if number else None,
+        unit=number.unit if number else "",
+        confidence=seen.text_odds,
+        role=role_of_text(sheet, seen),
+    )

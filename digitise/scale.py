@@ -1,7 +1,7 @@
 """The scale: how radius becomes level, from the user's values, marks, ring levels or the printed labels.
 
-What the user told wins; labels fill in what was not told. A law is taken as recognised when the rings of known level
-fit it to a pixel and no other law fits about as well; in doubt the scale carries a review reason.
+What the user told wins; labels fill in what was not told. A law is taken as recognised when the rings of
+known level fit it to a pixel and no other law fits about as well; in doubt the scale carries a review reason.
 """
 
 from dataclasses import dataclass
@@ -13,7 +13,9 @@ from .frozen import lock_arrays
 
 __all__ = ["Scale", "make_scale"]
 
-RING_U_RHO = 1e-3  # standard uncertainty of a ring's radius where none was kept: 0.3 px at an outer radius of 300 px
+RING_U_RHO = (
+    1e-3  # standard uncertainty of a ring's radius where none was kept: 0.3 px at an outer radius of 300 px
+)
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -55,10 +57,14 @@ class Scale:
             return self.parameters[0] + self.parameters[1] * (rho - 1.0)
         above = rho > 0
         safe = np.where(above, rho, 1.0)
-        return np.where(above, self.parameters[0] + LOG_DB[self.law] * np.log(safe / self.parameters[1]), -np.inf)
+        return np.where(
+            above, self.parameters[0] + LOG_DB[self.law] * np.log(safe / self.parameters[1]), -np.inf
+        )
 
     def slope(self, rho):
-        """d level / d rho, dB per unit rho (array, positive); inf at or below the centre of a logarithmic law."""
+        """d level / d rho, dB per unit rho (array, positive); inf at or below the centre of a logarithmic
+        law.
+        """
         rho = np.asarray(rho, float)
         if self.law == "rings":
             return self._curve().slope(rho)
@@ -81,12 +87,18 @@ class Scale:
         rho = np.asarray(rho, float)
         if self.law == "rings":
             rising = slice(None, None, -1)  # anchors are kept outermost first
-            known = self.anchor_rho_u if self.anchor_rho_u is not None else np.full(len(self.anchor_rho), RING_U_RHO)
+            known = (
+                self.anchor_rho_u
+                if self.anchor_rho_u is not None
+                else np.full(len(self.anchor_rho), RING_U_RHO)
+            )
             return self.slope(rho) * np.interp(rho, self.anchor_rho[rising], known[rising])
         if self.law == "even":
             gradient = np.stack([np.ones_like(rho), rho - 1.0], axis=-1)
         else:
-            gradient = np.stack([np.ones_like(rho), np.full_like(rho, -LOG_DB[self.law] / self.parameters[1])], axis=-1)
+            gradient = np.stack(
+                [np.ones_like(rho), np.full_like(rho, -LOG_DB[self.law] / self.parameters[1])], axis=-1
+            )
         return np.sqrt(np.maximum(np.einsum("...i,ij,...j->...", gradient, self.covariance, gradient), 0.0))
 
     @property

@@ -15,8 +15,10 @@ RINGS = [1.0, 0.5]
 @pytest.mark.parametrize("skew_deg", [-7.0, 0.0, 3.0])
 @pytest.mark.parametrize("zero_deg", [0.0, 90.0, 180.0, 270.0, 30.0, 330.0])
 def test_a_told_direction_is_the_charts_own(zero_deg, skew_deg):
-    """"top" on a skewed chart is the chart's own top; its error is the skew's."""
-    bearing = make_bearing(plane_grid(RINGS, skew_deg=skew_deg), settings=Settings(zero_deg=zero_deg, turn="ccw"))
+    """ "top" on a skewed chart is the chart's own top; its error is the skew's."""
+    bearing = make_bearing(
+        plane_grid(RINGS, skew_deg=skew_deg), settings=Settings(zero_deg=zero_deg, turn="ccw")
+    )
 
     assert (bearing.zero_deg, bearing.turn, bearing.source) == (zero_deg, "ccw", "told")
     assert bearing.u_deg == pytest.approx(0.02)

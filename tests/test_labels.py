@@ -1,4 +1,6 @@
-"""Labels: numbers from a recogniser's odds, the votes for levels and bearings, and whole charts where the extra is in."""
+"""Labels: numbers from a recogniser's odds, the votes for levels and bearings, and whole charts where the
+extra is in.
+"""
 
 import numpy as np
 import pytest
@@ -34,18 +36,39 @@ def ring_label(rho, readings, unit="dB"):
     """A ring label read with (value, odds) alternatives."""
     value, odds = readings[0]
     return Label(
-        text=f"{value:g}", value=value, unit=unit, x_px=0.0, y_px=0.0, w_px=20.0, h_px=12.0, rho=rho, plane_deg=80.0,
-        confidence=odds, role="ring", readings=tuple(readings), ring_rho=rho,
-    )  # fmt: skip
+        text=f"{value:g}",
+        value=value,
+        unit=unit,
+        x_px=0.0,
+        y_px=0.0,
+        w_px=20.0,
+        h_px=12.0,
+        rho=rho,
+        plane_deg=80.0,
+        confidence=odds,
+        role="ring",
+        readings=tuple(readings),
+        ring_rho=rho,
+    )
 
 
 def rim_label(plane_deg, readings):
     """A rim label read with (value, odds) alternatives."""
     value, odds = readings[0]
     return Label(
-        text=f"{value:g}", value=value, unit="", x_px=0.0, y_px=0.0, w_px=20.0, h_px=12.0, rho=1.1,
-        plane_deg=plane_deg, confidence=odds, role="rim", readings=tuple(readings),
-    )  # fmt: skip
+        text=f"{value:g}",
+        value=value,
+        unit="",
+        x_px=0.0,
+        y_px=0.0,
+        w_px=20.0,
+        h_px=12.0,
+        rho=1.1,
+        plane_deg=plane_deg,
+        confidence=odds,
+        role="rim",
+        readings=tuple(readings),
+    )
 
 
 def labels_of(*found):
@@ -55,7 +78,15 @@ def labels_of(*found):
 
 @pytest.mark.parametrize(
     ("text", "value", "unit"),
-    [("-10", -10, ""), ("0", 0, ""), ("+5", 5, ""), ("−5", -5, ""), ("-3 dB", -3, "dB"), ("12dBi", 12, "dBi"), ("-2.5", -2.5, "")],
+    [
+        ("-10", -10, ""),
+        ("0", 0, ""),
+        ("+5", 5, ""),
+        ("−5", -5, ""),
+        ("-3 dB", -3, "dB"),
+        ("12dBi", 12, "dBi"),
+        ("-2.5", -2.5, ""),
+    ],
 )
 def test_a_level_is_read_from_odds(text, value, unit):
     """Signs of either kind, a decimal and the unit are understood."""
@@ -104,9 +135,11 @@ def test_three_labels_tell_the_law(law):
 def test_one_wrong_label_does_not_win_over_two_right_ones():
     """-10 read as 40 with confidence changes nothing but the count of labels."""
     labels = labels_of(
-        ring_label(1.0, [(0.0, 0.9)]), ring_label(0.75, [(40.0, 0.95)]), ring_label(0.5, [(-20.0, 0.9)]),
+        ring_label(1.0, [(0.0, 0.9)]),
+        ring_label(0.75, [(40.0, 0.95)]),
+        ring_label(0.5, [(-20.0, 0.9)]),
         ring_label(0.25, [(-30.0, 0.9)]),
-    )  # fmt: skip
+    )
     scale = make_scale(plane_grid(RINGS), settings=Settings(), labels=labels)
 
     np.testing.assert_allclose(scale.level(np.array(RINGS)), [0, -10, -20, -30], atol=1e-9)
@@ -123,7 +156,9 @@ def test_lost_minus_signs_show_as_a_reversed_step():
 def test_one_label_alone_is_flagged_or_refused():
     """What rests on habits of the trade says so."""
     try:
-        scale = make_scale(plane_grid(RINGS), settings=Settings(), labels=labels_of(ring_label(0.5, [(-20.0, 0.95)])))
+        scale = make_scale(
+            plane_grid(RINGS), settings=Settings(), labels=labels_of(ring_label(0.5, [(-20.0, 0.95)]))
+        )
     except NotReadError as error:
         assert "--outer" in str(error)
     else:
@@ -154,7 +189,10 @@ def test_told_values_win_over_labels():
 def test_nothing_to_vote_on():
     """No reading proposes no scale, no label no bearing."""
     assert vote_levels([], ring_rho=np.array(RINGS), outer_px=250.0) is None
-    assert vote_levels([LevelReading(ring=0, rho=1.0, options=())], ring_rho=np.array(RINGS), outer_px=250.0) is None
+    assert (
+        vote_levels([LevelReading(ring=0, rho=1.0, options=())], ring_rho=np.array(RINGS), outer_px=250.0)
+        is None
+    )
     assert vote_rim([], []) is None
 
 
@@ -178,12 +216,16 @@ def test_rim_labels_tell_zero_and_turn(turn, zero, signed):
 
 def test_symmetric_rim_labels_are_flagged():
     """0, 90, 180, 90 read the same both ways."""
-    labels = labels_of(*(rim_label(p, [(v, 0.95)]) for p, v in ((0, 0.0), (90, 90.0), (180, 180.0), (270, 90.0))))
+    labels = labels_of(
+        *(rim_label(p, [(v, 0.95)]) for p, v in ((0, 0.0), (90, 90.0), (180, 180.0), (270, 90.0)))
+    )
     bearing = make_bearing(plane_grid(RINGS), settings=Settings(), labels=labels)
 
     assert bearing.zero_deg == 0
     assert [item.code for item in bearing.reasons] == ["bearing-mirrored"]
-    assert not make_bearing(plane_grid(RINGS), settings=Settings(turn="ccw", zero_deg=0.0), labels=labels).reasons
+    assert not make_bearing(
+        plane_grid(RINGS), settings=Settings(turn="ccw", zero_deg=0.0), labels=labels
+    ).reasons
 
 
 def test_no_rim_label_is_an_assumption():
@@ -200,7 +242,9 @@ def test_without_the_extra_nothing_is_read(monkeypatch):
     labels = read_labels(None, None, None)
 
     assert (labels.found, labels.engine) == ((), "")
-    with pytest.raises(NotReadError, match=r'give --outer, --centre, --zero and --turn, or install "digitise\[labels\]"'):
+    with pytest.raises(
+        NotReadError, match=r'give --outer, --centre, --zero and --turn, or install "digitise\[labels\]"'
+    ):
         make_scale(plane_grid(RINGS), settings=Settings(), labels=labels)
 
 
@@ -213,7 +257,9 @@ def test_a_drawn_chart_is_read_whole(tmp_path):
     from tests.draw import Chart, Page, Trace, paint, patterns, write_case
 
     angle = np.arange(0, 360, 0.25)
-    chart = Chart(traces=(Trace(db=patterns.first_order(angle - 40)),), zero="right", turn="ccw", outer_px=230.0)
+    chart = Chart(
+        traces=(Trace(db=patterns.first_order(angle - 40)),), zero="right", turn="ccw", outer_px=230.0
+    )
     page = Page(charts=(chart,), width=640, height=640)
     path = write_case(tmp_path, "chart", paint(page, renderer="matplotlib"), [])
     picture = open_picture(path)

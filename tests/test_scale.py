@@ -23,7 +23,11 @@ def mark_at(grid, rho, level_db, bearing=37.0, off_px=(0.0, 0.0)):
 
 def law_rho(law, level_db):
     """Ring radii of levels below 0 dB, from the published definitions of the laws."""
-    return {"field": 10 ** (level_db / 20), "power": 10 ** (level_db / 10), "log-periodic": 0.89 ** (-level_db / 2)}[law]
+    return {
+        "field": 10 ** (level_db / 20),
+        "power": 10 ** (level_db / 10),
+        "log-periodic": 0.89 ** (-level_db / 2),
+    }[law]
 
 
 def test_outer_and_centre_give_the_even_law():
@@ -40,8 +44,8 @@ def test_outer_and_centre_give_the_even_law():
 @pytest.mark.parametrize(
     ("law", "published"),
     [
-        # radius over outer radius at -3, -10, -20, -30 dB: 10^(dB/20), 10^(dB/10) (definitions of field and power
-        # ratio), and 0.89^(-dB/2) as quoted from the 2018 ARRL Handbook's description of its polar grid
+        # radius over outer radius at -3, -10, -20, -30 dB: 10^(dB/20), 10^(dB/10) (definitions of field and
+        # power ratio), and 0.89^(-dB/2) as quoted from the 2018 ARRL Handbook's description of its polar grid
         ("field", [0.7079, 0.3162, 0.1000, 0.0316]),
         ("power", [0.5012, 0.1000, 0.0100, 0.0010]),
         ("log-periodic", [0.8396, 0.5584, 0.3118, 0.1741]),
@@ -97,7 +101,9 @@ def test_rings_law_agrees_with_a_general_library():
     scale = make_scale(plane_grid(rho), settings=Settings(ring_levels=levels, law="rings"))
     inside = np.linspace(0.1, 1.0, 301)
 
-    np.testing.assert_allclose(scale.level(inside), PchipInterpolator(rho[::-1], levels[::-1])(inside), atol=1e-9)
+    np.testing.assert_allclose(
+        scale.level(inside), PchipInterpolator(rho[::-1], levels[::-1])(inside), atol=1e-9
+    )
     np.testing.assert_allclose(scale.level(rho), levels, atol=1e-12)
 
 
@@ -181,7 +187,9 @@ def test_contradictory_marks_are_refused():
     with pytest.raises(UsageError, match="fit no law"):
         make_scale(
             grid,
-            settings=Settings(marks=(top, mark_at(grid, 0.75, -10.0), mark_at(grid, 0.5, -12.0), mark_at(grid, 0.25, -30.0))),
+            settings=Settings(
+                marks=(top, mark_at(grid, 0.75, -10.0), mark_at(grid, 0.5, -12.0), mark_at(grid, 0.25, -30.0))
+            ),
         )
 
 
@@ -203,14 +211,18 @@ def test_ring_levels_reach_past_a_ring_that_was_not_found(law, missing):
     """Five levels, four rings found: the law says which ring is missing, or the user is asked."""
     levels = np.array([0.0, -3, -6, -10, -15])
     rings = 1 + levels / 20 if law == "even" else law_rho(law, levels)
-    scale = make_scale(plane_grid(np.delete(rings, missing)), settings=Settings(ring_levels=tuple(levels), law=law))
+    scale = make_scale(
+        plane_grid(np.delete(rings, missing)), settings=Settings(ring_levels=tuple(levels), law=law)
+    )
 
     assert scale.law == law
     np.testing.assert_allclose(scale.level(rings), levels, atol=1e-6)
 
 
 def test_what_is_lacking_is_named():
-    """Without labels the refusal names what to give; a centre above the rim or under a logarithmic law is refused."""
+    """Without labels the refusal names what to give; a centre above the rim or under a logarithmic law is
+    refused.
+    """
     grid = plane_grid(EVEN_40)
 
     with pytest.raises(NotReadError, match="give --outer, --centre, --zero and --turn"):
@@ -236,7 +248,9 @@ def test_stated_error_is_the_scatter(law):
         grid = plane_grid(true + rng.normal(0, ring_u_px / OUTER_PX, len(true)), ring_u_px=ring_u_px)
         scale = make_scale(grid, settings=Settings(ring_levels=levels, law=law))
         read.append(scale.level(rho))
-    stated = make_scale(plane_grid(true, ring_u_px=ring_u_px), settings=Settings(ring_levels=levels, law=law)).level_u(rho)
+    stated = make_scale(
+        plane_grid(true, ring_u_px=ring_u_px), settings=Settings(ring_levels=levels, law=law)
+    ).level_u(rho)
 
     np.testing.assert_allclose(np.std(read, axis=0), stated, rtol=0.25 if law != "rings" else 0.45)
 

@@ -1,10 +1,11 @@
 #!/usr/bin/env python3
 """How well printed labels are read, by class: right and wrong labels, seconds, and what comes of them.
 
-Charts are painted by lot (tests/draw) with known ring levels and bearings. For every class the script prints, of the
-ring and rim labels printed: read right, read wrong (with odds above one half), and lost minus signs; the processor
-seconds a chart; and of the charts: scale and bearing right, right with a review reason, refused, WRONG and silent.
-What engines were tried and why this one is used stands in LABELS.md beside this file.
+Charts are painted by lot (tests/draw) with known ring levels and bearings. For every class the script prints,
+of the ring and rim labels printed: read right, read wrong (with odds above one half), and lost minus signs;
+the processor seconds a chart; and of the charts: scale and bearing right, right with a review reason,
+refused, WRONG and silent. What engines were tried and why this one is used stands in LABELS.md beside this
+file.
 """
 
 import argparse
@@ -111,8 +112,12 @@ def _bearing_outcome(chart, grid, labels):
 
 def main(argv=None):
     """Print the table; the exit status is 1 when a chart is wrong and silent."""
-    parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
-    parser.add_argument("classes", nargs="*", metavar="CLASS", help=f"of {', '.join(CLASSES)}; all by default")
+    parser = argparse.ArgumentParser(
+        description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter
+    )
+    parser.add_argument(
+        "classes", nargs="*", metavar="CLASS", help=f"of {', '.join(CLASSES)}; all by default"
+    )
     parser.add_argument("-n", type=int, default=6, help="charts a class (6)")
     options = parser.parse_args(argv)
     unknown = set(options.classes) - set(CLASSES)
@@ -120,13 +125,20 @@ def main(argv=None):
         parser.error(f"no class {', '.join(sorted(unknown))}")
     columns = ("scale right", "scale right flagged", "scale refused", "scale WRONG flagged", "scale WRONG")
     columns += ("bearing right", "bearing right flagged", "bearing WRONG flagged", "bearing WRONG")
-    print("| class | charts | ring right | ring wrong | sign lost | rim right | rim wrong | s | " + " | ".join(columns) + " |")
+    print(
+        "| class | charts | ring right | ring wrong | sign lost | rim right | rim wrong | s | "
+        + " | ".join(columns)
+        + " |"
+    )
     print("|---" * (8 + len(columns)) + "|")
     silent = 0
     with tempfile.TemporaryDirectory() as folder:
         read_case(folder, "clean", 0)  # loads the engine
         for name in options.classes or CLASSES:
-            total = sum((read_case(folder, name, k) or collections.Counter() for k in range(options.n)), collections.Counter())
+            total = sum(
+                (read_case(folder, name, k) or collections.Counter() for k in range(options.n)),
+                collections.Counter(),
+            )
             n, printed = max(1, total["charts"]), max(1, total["ring printed"])
             shares = [f"{total[key] / printed:.2f}" for key in ("ring right", "ring wrong", "ring sign lost")]
             cells = [name, str(total["charts"]), *shares, str(total["rim right"]), str(total["rim wrong"])]
